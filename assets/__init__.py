@@ -1,0 +1,1 @@
+"""Icons and other files that are not code."""

@@ -1,0 +1,1 @@
+"""The crystal and the part: unit cell, directions, axes conventions, orientations."""

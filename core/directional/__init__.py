@@ -1,0 +1,1 @@
+"""Everything that depends on a direction: moduli, waves, extremes, surfaces."""

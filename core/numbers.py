@@ -1,0 +1,85 @@
+"""Numbers as people write and read them: parsing what was typed, writing what is shown."""
+
+from __future__ import annotations
+
+import math
+import re
+
+from core.errors import InputError
+
+MINUS = "\N{MINUS SIGN}"
+_MINUSES = str.maketrans({MINUS: "-", "\N{EN DASH}": "-", "\N{NON-BREAKING HYPHEN}": "-"})
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eEdD][+-]?\d+)?")
+_GROUPED = re.compile(r"[+-]?[1-9]\d{0,2}(,\d{3})+(\.\d*)?")
+_DECIMAL_COMMA = re.compile(r"[+-]?\d*,\d+([eEdD][+-]?\d+)?")
+
+
+def parse_number(text: str, where: str = "") -> float:
+    """Return the number that a field or a table cell holds.
+
+    A Unicode minus, a Fortran exponent (1.5D+02) and spaces inside a number grouped by
+    threes are understood. A decimal comma is read only where no thousands reading is possible.
+
+    Raises
+    ------
+    InputError
+        For anything else, for NaN, and for numbers too large for a computer.
+    """
+    plain = text.strip().translate(_MINUSES)
+    if not plain:
+        raise InputError("The cell is empty; a number was expected.", where=where)
+    if "," in plain:
+        plain = _without_comma(plain, where)
+    if not _NUMBER.fullmatch(plain):
+        raise InputError(f"“{shortened(text)}” is not a number.", where=where)
+    value = float(re.sub("[dD]", "e", plain))
+    if not math.isfinite(value):
+        raise InputError(f"“{shortened(text)}” is too large to be a number here.", where=where)
+    return value
+
+
+def _without_comma(plain: str, where: str) -> str:
+    if _GROUPED.fullmatch(plain):
+        raise InputError(
+            f"“{plain}” may mean thousands or a decimal comma.",
+            "Write it with a decimal point and without grouping.",
+            where,
+        )
+    if _DECIMAL_COMMA.fullmatch(plain):
+        return plain.replace(",", ".")
+    raise InputError(f"“{shortened(plain)}” is not a number.", where=where)
+
+
+def shortened(text: str, length: int = 24) -> str:
+    """Return the text on one line and no longer than `length`, for use in a sentence."""
+    line = " ".join(text.split())
+    return line if len(line) <= length else line[: length - 1] + "…"
+
+
+def significant(value: float | None, digits: int = 4) -> str:
+    """Return a number for the screen with `digits` significant digits and a true minus.
+
+    Large and small magnitudes go to powers of ten; undefined values are an en dash.
+    """
+    if value is None or not math.isfinite(value):
+        return "\N{EN DASH}"
+    if value == 0.0:
+        return "0"
+    rounded = float(f"{value:.{digits - 1}e}")
+    exponent = math.floor(math.log10(abs(rounded)))
+    if exponent >= 6 or exponent < -4:
+        mantissa, power = f"{rounded:.{digits - 1}e}".split("e")
+        return f"{mantissa}×10^{int(power)}".replace("-", MINUS)
+    decimals = max(digits - 1 - exponent, 0)
+    return f"{rounded:.{decimals}f}".replace("-", MINUS)
+
+
+def signed(value: float | None, digits: int = 4) -> str:
+    """Return a number like `significant`, with a plus where it is positive."""
+    text = significant(value, digits)
+    return f"+{text}" if value is not None and math.isfinite(value) and value > 0 else text
+
+
+def full_precision(value: float | None) -> str:
+    """Return the shortest text that reads back to the same float, for files and copying."""
+    return "" if value is None or not math.isfinite(value) else repr(float(value))

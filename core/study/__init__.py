@@ -1,0 +1,1 @@
+"""Questions asked of a crystal: what a cutting error costs."""

@@ -1,0 +1,235 @@
+"""Everything about one specimen as plain dicts: what the command line and the report print.
+
+Keys carry their units; the README lists them. What is not defined is None.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import asdict
+from typing import Any
+
+import numpy as np
+
+from core.arrays import FloatArray
+from core.crystal.directions import Direction, parse_direction
+from core.crystal.orientation import misorientation, parse_orientation, turned
+from core.directional.debye import debye_speed
+from core.directional.extremes import Extreme, extremes
+from core.directional.medium import Medium
+from core.directional.moduli import compressibility, poisson_extremes, shear_extremes, young
+from core.directional.sphere import directions
+from core.directional.waves import focusing, group_velocities, longitudinality, modes, power_flow
+from core.state import OrientationChoice, Specimen
+from core.study.part import (
+    SHEAR_NAMES,
+    EngineeringConstants,
+    engineering_constants,
+    part_table,
+)
+from core.study.verdict import judge
+from core.task import Ticker
+from core.tensor.averages import Averages, Bounds, anisotropy, averages, hashin_shtrikman
+from core.tensor.notation import reorder, rows_text
+from core.tensor.stability import assess
+from core.tensor.stiffness import Stiffness
+from core.tensor.symmetry import CrystalClass, crystal_class, distance
+
+_EXTREME_KEYS = {
+    "young": "young_gpa",
+    "compressibility": "linear_compressibility_per_tpa",
+    "shear": "shear_gpa",
+    "poisson": "poisson",
+    "fast": "fast_km_s",
+    "middle": "middle_km_s",
+    "slow": "slow_km_s",
+}
+
+
+def medium_of(specimen: Specimen, rotation: FloatArray | None = None) -> Medium:
+    """Return what the kernels need of a specimen, in crystal axes or turned into part axes."""
+    stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
+    if rotation is not None:
+        stiffness = stiffness.rotate(rotation)
+    return Medium(stiffness, specimen.density)
+
+
+def class_of(specimen: Specimen) -> CrystalClass:
+    """Return the crystal class that a specimen claims."""
+    return crystal_class(specimen.crystal_class, specimen.unique_axis)
+
+
+def rotation_of(choice: OrientationChoice, specimen: Specimen) -> FloatArray:
+    """Return R, shape (3, 3), v_part = R v_crystal, of an orientation said for a specimen."""
+    rotation = parse_orientation(choice.text, specimen.frame).rotation
+    return turned(rotation, choice.turn)
+
+
+def summarise(specimen: Specimen, ticker: Ticker | None = None) -> dict[str, Any]:
+    """Return the whole summary of a specimen. See the README for the keys."""
+    medium = medium_of(specimen)
+    stiffness = medium.stiffness
+    claimed = class_of(specimen)
+    std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
+    verdict = judge(stiffness, claimed, std)
+    stability = assess(stiffness)
+    debye = None if specimen.density is None else debye_speed(medium).speed
+    return {
+        "name": specimen.name,
+        "stable": bool(stability.stable),
+        "verdict": verdict.sentence,
+        "eigenstiffness_gpa": [float(x) for x in stability.eigenstiffness],
+        "averages": _averages(averages(stiffness), hashin_shtrikman(stiffness)),
+        "anisotropy": {
+            key: _number(value)
+            for key, value in asdict(anisotropy(stiffness, claimed.key == "cubic")).items()
+        },
+        "symmetry": {
+            "declared": claimed.key,
+            "as_entered_percent": 100 * distance(stiffness.voigt, claimed),
+            "nearest": None,
+        },
+        "density_kg_m3": specimen.density,
+        "debye_speed_km_s": _number(debye),
+        "extremes": _extremes(extremes(medium, ticker or Ticker())),
+    }
+
+
+def along(specimen: Specimen, text: str) -> dict[str, Any]:
+    """Return every quantity along one direction, said in the crystal's own words."""
+    return along_direction(medium_of(specimen), parse_direction(text, specimen.frame))
+
+
+def along_direction(medium: Medium, direction: Direction) -> dict[str, Any]:
+    """Return every quantity along a direction (crystal axes)."""
+    one = directions(np.array(direction.vector).reshape(3, 1))
+    least_shear, greatest_shear = shear_extremes(medium, one)
+    least_poisson, greatest_poisson = poisson_extremes(medium, one)
+    return {
+        "direction": list(direction.vector),
+        "young_gpa": _number(young(medium, one)[0]),
+        "linear_compressibility_per_tpa": _number(compressibility(medium, one)[0]),
+        "shear_min_gpa": _number(least_shear[0]),
+        "shear_max_gpa": _number(greatest_shear[0]),
+        "poisson_min": _number(least_poisson[0]),
+        "poisson_max": _number(greatest_poisson[0]),
+        "sheets": None if medium.density is None else _sheets(medium, one.n),
+    }
+
+
+def _sheets(medium: Medium, n: FloatArray) -> list[dict[str, Any]]:
+    one = directions(n)
+    wave = modes(medium, one)
+    rays = group_velocities(medium, one)
+    along_n = longitudinality(medium, one)
+    flow = power_flow(medium, one)
+    focus = focusing(medium, one)
+    return [
+        {
+            "speed_km_s": _number(wave.speed[sheet, 0]),
+            "slowness_s_km": _number(1 / wave.speed[sheet, 0]),
+            "polarisation": [float(x) for x in wave.polarisation[sheet, :, 0]],
+            "longitudinality": _number(along_n[sheet, 0]),
+            "group_km_s": [_number(x) for x in rays.velocity[sheet, :, 0]],
+            "power_flow_deg": _number(flow[sheet, 0]),
+            "focusing": _number(focus[sheet, 0]),
+            "degenerate": bool(wave.degenerate[sheet, 0]),
+        }
+        for sheet in range(3)
+    ]
+
+
+def rotate(
+    specimen: Specimen, choice: OrientationChoice, rows: tuple[int, ...], engineering: bool
+) -> dict[str, Any]:
+    """Return the 6×6 in part axes, its rows in the order wanted, and what the part shows."""
+    rotation = rotation_of(choice, specimen)
+    stiffness = medium_of(specimen, rotation).stiffness
+    data: dict[str, Any] = {
+        "rotation": rotation.tolist(),
+        "stiffness_gpa": reorder(stiffness.voigt, rows).tolist(),
+        "compliance_per_gpa": reorder(stiffness.compliance, rows).tolist(),
+        "rows": rows_text(rows).split(),
+    }
+    if engineering:
+        data["engineering"] = engineering_dict(engineering_constants(stiffness))
+    return data
+
+
+def compare(
+    first: Specimen, choice_a: OrientationChoice,
+    second: Specimen, choice_b: OrientationChoice,
+) -> dict[str, Any]:
+    """Return A, B and B − A of the part table of two orientations or two crystals."""
+    rotation_a, rotation_b = rotation_of(choice_a, first), rotation_of(choice_b, second)
+    table_a = part_table(medium_of(first, rotation_a))
+    table_b = {row.key: row for row in part_table(medium_of(second, rotation_b))}
+    return {
+        "a": {"name": first.name, "orientation": choice_a.text, "rotation": rotation_a.tolist()},
+        "b": {"name": second.name, "orientation": choice_b.text, "rotation": rotation_b.tolist()},
+        "misorientation_deg": misorientation(rotation_a, rotation_b).angle_deg,
+        "rows": [
+            {
+                "key": row.key,
+                "label": row.label,
+                "unit": row.unit,
+                "a": _number(row.value),
+                "b": _number(table_b[row.key].value),
+                "difference": _number(table_b[row.key].value - row.value),
+            }
+            for row in table_a if row.key in table_b
+        ],
+    }
+
+
+def engineering_dict(constants: EngineeringConstants) -> dict[str, Any]:
+    """Return engineering constants with the keys of the command line."""
+    return {
+        "young_gpa": [_number(x) for x in constants.young],
+        "poisson": [[_number(x) for x in row] for row in constants.poisson],
+        "shear_gpa": {name: _number(x)
+                      for name, x in zip(SHEAR_NAMES, constants.shear, strict=True)},
+        "coupling": {name: _number(x) for name, x in constants.coupling.items()},
+    }
+
+
+def _averages(means: Averages, bounds: Bounds) -> dict[str, Any]:
+    data: dict[str, Any] = {
+        name: {
+            "bulk_gpa": _number(mean.bulk),
+            "shear_gpa": _number(mean.shear),
+            "young_gpa": _number(mean.young),
+            "poisson": _number(mean.poisson),
+        }
+        for name, mean in (("voigt", means.voigt), ("reuss", means.reuss), ("hill", means.hill))
+    }
+    data["hashin_shtrikman"] = {
+        f"{key}_gpa": _number(value) for key, value in asdict(bounds).items()
+    }
+    return data
+
+
+def _extremes(found: dict[str, tuple[Extreme | None, Extreme | None]]) -> dict[str, Any]:
+    return {
+        name: {
+            "min": _extreme(found[key][0]) if key in found else None,
+            "max": _extreme(found[key][1]) if key in found else None,
+        }
+        for key, name in _EXTREME_KEYS.items()
+    }
+
+
+def _extreme(found: Extreme | None) -> dict[str, Any] | None:
+    if found is None:
+        return None
+    return {
+        "value": found.value,
+        "direction": list(found.direction),
+        "transverse": None if found.transverse is None else list(found.transverse),
+        "set": found.where,
+    }
+
+
+def _number(value: float | None) -> float | None:
+    """Return a plain float, or None where it is not defined (JSON has no NaN)."""
+    return None if value is None or not math.isfinite(value) else float(value)

@@ -1,0 +1,1 @@
+"""Invented specimens of one invented scenario; see the README in this folder."""

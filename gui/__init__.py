@@ -1,0 +1,1 @@
+"""The window of Tricline: Qt, OpenGL and nothing of physics."""

@@ -1,0 +1,224 @@
+"""The composition root: builds the bench, the window and everything between, nothing else does."""
+
+from __future__ import annotations
+
+import faulthandler
+import logging
+import os
+import signal
+import sys
+import traceback
+from dataclasses import dataclass
+from functools import partial
+from importlib import resources
+from pathlib import Path
+from types import TracebackType
+
+# One BLAS thread: the live kernels are too small for two, and the drawing wants the other core.
+for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
+    os.environ.setdefault(_variable, "1")
+
+from PySide6.QtCore import QSettings, Qt, QTimer  # noqa: E402 - after the threads are set
+from PySide6.QtGui import QIcon  # noqa: E402
+from PySide6.QtWidgets import QApplication, QMessageBox  # noqa: E402
+
+from core.errors import InputError  # noqa: E402
+from core.files.opening import open_file  # noqa: E402
+from core.state import BenchState  # noqa: E402
+from gui.actions import Entry, MenuBar, Menus  # noqa: E402
+from gui.bench import Bench  # noqa: E402
+from gui.cameras import Cameras  # noqa: E402
+from gui.commands import Commands  # noqa: E402
+from gui.documents import FIRST_DEMO, Documents, first_state, open_demo  # noqa: E402
+from gui.dressing import Dressing  # noqa: E402
+from gui.help import HelpDialog  # noqa: E402
+from gui.intents import DeckIntents, LedgerIntents, StageIntents  # noqa: E402
+from gui.pace import Pace  # noqa: E402
+from gui.presenter import Presenter  # noqa: E402
+from gui.scheduler import Scheduler  # noqa: E402
+from gui.stage.composition import Renderer  # noqa: E402
+from gui.stage.gl_probe import GlReport, probe  # noqa: E402
+from gui.stage.renderer import make_renderer  # noqa: E402
+from gui.window import Window, build_views  # noqa: E402
+
+NO_SCREEN = ("tricline: there is no screen to open a window on (DISPLAY and WAYLAND_DISPLAY are "
+             "not set). The headless verbs work: try “tricline summary FILE”, or set "
+             "QT_QPA_PLATFORM=offscreen.")
+log = logging.getLogger("tricline")
+
+
+@dataclass(eq=False)
+class Application:
+    """Everything that a running window consists of."""
+
+    bench: Bench
+    scheduler: Scheduler
+    pace: Pace
+    window: Window
+    presenter: Presenter
+    documents: Documents
+    cameras: Cameras
+    dressing: Dressing
+    renderer: Renderer
+    menu_bar: MenuBar
+    help: HelpDialog
+    ledger: LedgerIntents
+    stage: StageIntents
+    deck: DeckIntents
+
+    def close(self) -> None:
+        """Stop timers and workers and give back what the drawing holds."""
+        self.pace.stop()
+        self.scheduler.close()
+        self.help.close()
+        for pane in self.window.views.panes.values():
+            pane.close()
+        self.renderer.close()
+
+
+def build(application: QApplication, state: BenchState, settings: QSettings,
+          force_sync: bool = False) -> Application:
+    """Return a whole bench with its window, not yet shown."""
+    report = probe()
+    renderer = make_renderer(report)
+    bench = Bench(state)
+    views = build_views(renderer)
+    window = Window(views)
+    scheduler, pace = Scheduler(window, force_sync), Pace(window)
+    presenter = Presenter(bench, scheduler, pace, window, window)
+    documents = Documents(bench, window, settings)
+    cameras = Cameras(views.panes, window)
+    dressing = Dressing(application, window, settings)
+    ledger = LedgerIntents(bench, views, window)
+    stage = StageIntents(bench, views, window)
+    deck = DeckIntents(bench, views, stage, window)
+    commands = Commands(bench, window, documents, ledger, stage, cameras, dressing)
+    help_dialog, menu_bar = _menus(window, commands, drawing_words(report))
+    built = Application(bench, scheduler, pace, window, presenter, documents, cameras, dressing,
+                        renderer, menu_bar, help_dialog, ledger, stage, deck)
+    _connect(built)
+    if not report.ok:
+        window.show_note("drawn without OpenGL")
+    dressing.put_on()
+    window.restore_layout(settings)
+    presenter.show_all()
+    return built
+
+
+def _menus(window: Window, commands: Commands, words: str) -> tuple[HelpDialog, MenuBar]:
+    """Return Help and the menu bar; each reads the other's table of keys or leaves."""
+    plain: Menus = commands.menus(())
+    dialog = HelpDialog(plain, words)
+    entries = tuple(
+        Entry(title, partial(dialog.open_leaf, leaf), keys)
+        for title, leaf, keys in (
+            ("&Quantities and formulas", "Quantities", "F1"), ("&Conventions", "Conventions", ""),
+            ("&Keys", "Keys", ""), ("Ca&utions", "Cautions", ""), ("&About", "About", "")))
+    return dialog, MenuBar(window, commands.menus(entries))
+
+
+def drawing_words(report: GlReport) -> str:
+    """Return which drawing is in use, for the about leaf."""
+    if report.ok:
+        return f"OpenGL {report.version}, {report.renderer}"
+    return f"without OpenGL ({report.reason})"
+
+
+def _connect(app: Application) -> None:
+    """Join what belongs to no single part."""
+    window, history = app.window, app.bench.history
+    title = partial(_set_title, app)
+    app.bench.changed.connect(title)
+    app.documents.named.connect(title)
+    history.cleanChanged.connect(title)
+    app.window.cancel_asked.connect(app.scheduler.cancel)
+    bar = window.views.toolbar
+    bar.linked_toggled.connect(app.cameras.set_linked)
+    bar.linked_toggled.connect(app.presenter.set_linked)
+    bar.look_from.connect(app.cameras.look_from)
+    undo, redo = app.menu_bar.actions["Undo"], app.menu_bar.actions["Redo"]
+    for action, can, text_changed, can_changed, word in (
+        (undo, history.canUndo(), history.undoTextChanged, history.canUndoChanged, "&Undo"),
+        (redo, history.canRedo(), history.redoTextChanged, history.canRedoChanged, "&Redo"),
+    ):
+        action.setEnabled(can)
+        can_changed.connect(action.setEnabled)
+        text_changed.connect(partial(_name_step, action, word))
+    _set_title(app)
+
+
+def _name_step(action: object, word: str, text: str) -> None:
+    words = f"{word}: {text[0].lower()}{text[1:]}" if text else word
+    action.setText(words)  # type: ignore[attr-defined]
+
+
+def _set_title(app: Application, *_ignored: object) -> None:
+    path = app.documents.path
+    name = app.bench.state.specimen.name
+    app.window.setWindowTitle(f"{name}{f' ({path.name})' if path else ''}[*] · Tricline")
+    app.window.setWindowModified(not app.bench.history.isClean())
+
+
+# ------------------------------------------------------------------ running
+def has_screen() -> bool:
+    """Return whether Qt will find something to draw on."""
+    if sys.platform != "linux" or os.environ.get("QT_QPA_PLATFORM"):
+        return True
+    return bool(os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY"))
+
+
+def run(words: list[str]) -> int:
+    """Open the window, on a file or on the first demo specimen, and stay until it is closed."""
+    if not has_screen():
+        print(NO_SCREEN, file=sys.stderr)  # noqa: T201 - said before there is a window
+        return 2
+    try:
+        state = first_state(open_file(Path(words[0])) if words else open_demo(FIRST_DEMO))
+    except InputError as error:
+        print(f"tricline: {error}", file=sys.stderr)  # noqa: T201 - likewise
+        return 2
+    faulthandler.enable()
+    QApplication.setAttribute(Qt.ApplicationAttribute.AA_ShareOpenGLContexts)
+    application = QApplication(["tricline"])
+    application.setApplicationName("Tricline")
+    application.setApplicationDisplayName("")
+    application.setStyle("Fusion")
+    with resources.as_file(resources.files("assets") / "tricline.svg") as path:
+        application.setWindowIcon(QIcon(path.as_posix()))
+    settings = QSettings("Tricline", "Tricline")
+    built = build(application, state, settings)
+    built.documents.path = Path(words[0]) if words else None
+    _set_title(built)
+    sys.excepthook = partial(_report, built.window)
+    _obey_interrupts(application)
+    built.window.show()
+    status = application.exec()
+    built.window.save_layout(settings)
+    built.close()
+    return status
+
+
+def _obey_interrupts(application: QApplication) -> None:
+    """Let Ctrl+C in the terminal close the window: Python needs a moment now and then."""
+    signal.signal(signal.SIGINT, lambda *_: application.closeAllWindows())
+    timer = QTimer(application, interval=250)
+    timer.timeout.connect(_breathe)
+    timer.start()
+
+
+def _breathe() -> None:
+    """Do nothing: reaching Python is enough for a waiting signal to be seen."""
+
+
+def _report(window: Window, kind: type[BaseException], error: BaseException,
+            trace: TracebackType | None) -> None:
+    """Log a defect of the program and say so; the state on the bench is untouched."""
+    text = "".join(traceback.format_exception(kind, error, trace))
+    log.error("%s", text)
+    box = QMessageBox(window)
+    box.setIcon(QMessageBox.Icon.Critical)
+    box.setWindowTitle("Tricline")
+    box.setText("Something in the program went wrong. Your work is as it was; saving it now is "
+                "a good idea.")
+    box.setDetailedText(text)
+    box.exec()

@@ -1,0 +1,221 @@
+"""Files of the window: open, save, recent, dropped, and the question before work is lost."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from importlib import resources
+from pathlib import Path
+
+from PySide6.QtCore import QObject, QSettings, Signal
+from PySide6.QtGui import QCloseEvent
+from PySide6.QtWidgets import QFileDialog, QMessageBox
+
+from core import live
+from core.directional.quantities import quantity
+from core.errors import InputError
+from core.files.bench import SUFFIX, write_bench
+from core.files.opening import Opened, open_file
+from core.files.specimen import write_specimen
+from core.state import BenchState, OrientationChoice
+from gui.bench import Bench
+from gui.window import Window
+
+FIRST_DEMO = "blank_lm7_triclinic.json"
+_FILTERS = ("Everything Tricline reads (*.tricline *.json *.txt *.csv *.dat *.tsv);;"
+            "All files (*)")
+_BENCH_FILTER = f"Bench, with orientations and view (*{SUFFIX})"
+_SPECIMEN_FILTER = "Specimen only (*.json)"
+_MOST_RECENT = 8
+
+
+def demo_files() -> list[tuple[str, str]]:
+    """Return (file name, specimen name) of the demo materials."""
+    folder = resources.files("demo_materials")
+    names = sorted(entry.name for entry in folder.iterdir() if entry.name.endswith(".json"))
+    with resources.as_file(folder) as path:
+        found = [(name, open_file(path / name).specimen.name) for name in names]
+    return sorted(found, key=lambda pair: pair[0] != FIRST_DEMO)
+
+
+def open_demo(name: str) -> Opened:
+    """Return one demo material."""
+    with resources.as_file(resources.files("demo_materials") / name) as path:
+        return open_file(path)
+
+
+def first_state(opened: Opened) -> BenchState:
+    """Return the bench that a file opens to; a bench file that cannot be shown is refused."""
+    if opened.bench is None:
+        return BenchState(opened.specimen)
+    state = opened.bench
+    quantity(state.quantity)
+    for side in "AB":
+        live.rotation(state.orientation_of(side), state.specimen_of(side))
+    return state
+
+
+class Documents(QObject):
+    """Which file the bench came from and goes to.
+
+    Signals
+    -------
+    named()
+        The file's name or the list of recent files has changed.
+    """
+
+    named = Signal()
+
+    def __init__(self, bench: Bench, window: Window, settings: QSettings) -> None:
+        super().__init__(window)
+        self._bench, self._window, self._settings = bench, window, settings
+        self.path: Path | None = None
+        window.files_dropped.connect(self._open_dropped)
+        window.close_asked.connect(self._on_close)
+
+    @property
+    def recent(self) -> list[str]:
+        """Paths of the files used last, the newest first."""
+        stored = self._settings.value("recent", [])
+        paths = [stored] if isinstance(stored, str) else list(stored or [])  # type: ignore[call-overload]
+        return [str(path) for path in paths]
+
+    # -------------------------------------------------------------- opening
+    def ask_open(self) -> None:
+        """Let the user choose a file, and open it."""
+        path, _ = QFileDialog.getOpenFileName(self._window, "Open", self._folder(), _FILTERS)
+        if path:
+            self.open(Path(path))
+
+    def open(self, path: Path) -> bool:
+        """Open a file in place of what is on the bench; say so when it cannot be done."""
+        if not self.may_discard():
+            return False
+        try:
+            opened = open_file(path)
+            state = first_state(opened)
+        except InputError as error:
+            self.complain("The file was not opened", str(error))
+            return False
+        self._take(state, path, opened.guesses)
+        return True
+
+    def open_demo(self, name: str) -> None:
+        """Open a demo material; it has no file to be saved over."""
+        if self.may_discard():
+            self._take(first_state(open_demo(name)), None)
+
+    def ask_other(self) -> None:
+        """Let the user choose another crystal for B."""
+        path, _ = QFileDialog.getOpenFileName(self._window, "Another crystal for B",
+                                              self._folder(), _FILTERS)
+        if path:
+            try:
+                self.use_other(open_file(Path(path)))
+            except InputError as error:
+                self.complain("The file was not opened", str(error))
+
+    def use_other(self, opened: Opened) -> None:
+        """Show another crystal in B, in its own crystal axes."""
+        state = self._bench.state
+        display = replace(state.display, layout="AB")
+        self._bench.edit("Show another crystal in B", replace(
+            state, other=opened.specimen, orientation_b=OrientationChoice(), display=display))
+
+    def _take(self, state: BenchState, path: Path | None, guesses: tuple[str, ...] = ()) -> None:
+        self.path = path if not guesses else None
+        self._bench.load(state)
+        if path is not None:
+            self._remember(path)
+        said = "; ".join(guesses)
+        self._window.show_message(f"Read with guesses: {said}" if said else
+                                  f"Opened {state.specimen.name}")
+        self.named.emit()
+
+    def _open_dropped(self, paths: list[str]) -> None:
+        self.open(Path(paths[0]))
+        if len(paths) > 1:
+            self._window.show_message("One file at a time: the first was opened.")
+
+    # -------------------------------------------------------------- saving
+    def save(self) -> bool:
+        """Save to the file the bench came from, or ask for one."""
+        if self.path is None or self.path.suffix not in (SUFFIX, ".json"):
+            return self.ask_save()
+        return self._write(self.path)
+
+    def ask_save(self) -> bool:
+        """Let the user choose where to save a bench or a specimen."""
+        stem = self.path.stem if self.path else _file_stem(self._bench.state.specimen.name)
+        path, kind = QFileDialog.getSaveFileName(
+            self._window, "Save as", str(Path(self._folder()) / f"{stem}{SUFFIX}"),
+            f"{_BENCH_FILTER};;{_SPECIMEN_FILTER}")
+        if not path:
+            return False
+        chosen = Path(path)
+        if chosen.suffix not in (SUFFIX, ".json"):
+            suffix = ".json" if kind == _SPECIMEN_FILTER else SUFFIX
+            chosen = chosen.with_name(chosen.name + suffix)
+        return self._write(chosen)
+
+    def _write(self, path: Path) -> bool:
+        state = self._bench.state
+        try:
+            if path.suffix == ".json":
+                write_specimen(path, state.specimen)
+            else:
+                write_bench(path, state)
+        except InputError as error:
+            self.complain("The file was not saved", str(error))
+            return False
+        self.path = path
+        self._bench.history.setClean()
+        self._remember(path)
+        part = " (the specimen only; a bench file keeps orientations and view)" if (
+            path.suffix == ".json" and state != BenchState(state.specimen)) else ""
+        self._window.show_message(f"Saved {path.name}{part}")
+        self.named.emit()
+        return True
+
+    # -------------------------------------------------------------- questions
+    def may_discard(self) -> bool:
+        """Return whether the present work may go: it is saved, or the user says so."""
+        if self._bench.history.isClean():
+            return True
+        box = QMessageBox(self._window)
+        box.setIcon(QMessageBox.Icon.Question)
+        box.setWindowTitle("Tricline")
+        box.setText(f"{self._bench.state.specimen.name} has changes that are not saved.")
+        box.setInformativeText("Save them before going on?")
+        buttons = QMessageBox.StandardButton
+        box.setStandardButtons(buttons.Save | buttons.Discard | buttons.Cancel)
+        box.setDefaultButton(buttons.Save)
+        answer = box.exec()
+        if answer == buttons.Save:
+            return self.save()
+        return bool(answer == buttons.Discard)
+
+    def complain(self, title: str, message: str) -> None:
+        """Show why a file could not be used; everything else stays as it was."""
+        QMessageBox.warning(self._window, title, message)
+
+    def _on_close(self, event: QCloseEvent) -> None:
+        if self.may_discard():
+            event.accept()
+        else:
+            event.ignore()
+
+    def _folder(self) -> str:
+        return str(self.path.parent) if self.path else str(
+            self._settings.value("folder", str(Path.home())))
+
+    def _remember(self, path: Path) -> None:
+        whole = str(path.resolve())
+        others = [entry for entry in self.recent if entry != whole]
+        self._settings.setValue("recent", [whole, *others][:_MOST_RECENT])
+        self._settings.setValue("folder", str(path.resolve().parent))
+
+
+def _file_stem(name: str) -> str:
+    """Return a name that every file system takes."""
+    kept = "".join(c if c.isalnum() or c in "-_" else "_" for c in name).strip("_")
+    return kept or "bench"

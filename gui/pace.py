@@ -1,0 +1,60 @@
+"""How fine to draw: the coarse mesh while something moves, the fine one once it rests."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QObject, QTimer, Signal
+
+REST_MS = 150
+FRAME_BUDGET_MS = 16.0
+_MEMORY = 0.7  # weight of the past in the running mean of frame times
+
+
+class Pace(QObject):
+    """Decides the mesh level from what the last frames took, not from a setting.
+
+    Signals
+    -------
+    rested()
+        Nothing has moved for a moment: time for the fine mesh.
+    """
+
+    rested = Signal()
+
+    def __init__(self, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._fine_frame_ms: float | None = None
+        self._moving = False
+        self._timer = QTimer(self, singleShot=True, interval=REST_MS)
+        self._timer.timeout.connect(self._rest)
+
+    @property
+    def is_fine(self) -> bool:
+        """Whether to use the fine mesh now."""
+        fast = self._fine_frame_ms is not None and self._fine_frame_ms < FRAME_BUDGET_MS
+        return not self._moving or fast
+
+    @property
+    def is_moving(self) -> bool:
+        """Whether a change came within the last moment."""
+        return self._moving
+
+    def move(self) -> None:
+        """Note that something changes right now."""
+        self._moving = True
+        self._timer.start()
+
+    def frame(self, milliseconds: float, fine: bool) -> None:
+        """Learn what a frame took, from the state's change to the painted picture."""
+        if not fine:
+            return
+        past = self._fine_frame_ms
+        self._fine_frame_ms = milliseconds if past is None else (
+            _MEMORY * past + (1 - _MEMORY) * milliseconds)
+
+    def stop(self) -> None:
+        """Let no timer run on."""
+        self._timer.stop()
+
+    def _rest(self) -> None:
+        self._moving = False
+        self.rested.emit()

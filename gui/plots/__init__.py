@@ -1,0 +1,1 @@
+"""Section, hemisphere, sweep and colour bar."""

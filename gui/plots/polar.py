@@ -1,0 +1,236 @@
+"""The polar ground: where a plane goes on the paper, its rings, axes and rim labels."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtGui import QFont, QFontMetricsF, QPainter, QPen
+
+from core.arrays import FloatArray
+from gui.plots.grid import MINUS
+from gui.plots.lettering import Placement, lettering, text_rect
+from gui.theme import Theme
+
+# Rays along which the texts of the rings may stand, degrees, the best liked first.
+_TEXT_RAYS = (68.0, 22.0, 112.0, 158.0, -22.0, -68.0, 45.0, 135.0, -45.0, -112.0, 75.0,
+              15.0, 52.0, 38.0, 105.0, 165.0, -15.0, -75.0, 128.0, 142.0)  # fmt: skip
+_CLEARANCE = 2.0  # pixels from a ring's text to the nearest curve
+_RIM_GAP = 6.0  # pixels from the rim to its labels
+_SPOKES_DEG = (30.0, 60.0, 120.0, 150.0)
+
+
+@dataclass(frozen=True)
+class PolarGround:
+    """Where a plane lies on the paper: first axis to the right, second axis up.
+
+    Attributes
+    ----------
+    centre : QPointF
+    rim : float
+        Pixels of the outermost ring.
+    radius : float
+        The same in the unit of the drawing.
+    """
+
+    centre: QPointF
+    rim: float
+    radius: float
+
+    @property
+    def per_unit(self) -> float:
+        """Pixels per unit."""
+        return self.rim / self.radius if self.radius > 0.0 else 0.0
+
+    def place(self, points: FloatArray) -> FloatArray:
+        """Return points of the plane, shape (2, ...), in pixels."""
+        x = self.centre.x() + points[0] * self.per_unit
+        y = self.centre.y() - points[1] * self.per_unit
+        return np.stack([x, y])
+
+    def at(self, angle: float, pixels: float) -> QPointF:
+        """Return the point so many pixels from the centre, at an angle from the right."""
+        return self.centre + QPointF(pixels * math.cos(angle), -pixels * math.sin(angle))
+
+    def angle_of(self, point: QPointF) -> float:
+        """Return the angle of a point of the paper, radians in (−π, π], from the right."""
+        away = point - self.centre
+        return math.atan2(-away.y(), away.x())
+
+
+@dataclass(frozen=True)
+class Rim:
+    """What is written on a polar ground."""
+
+    rings: Sequence[tuple[float, str]]
+    axis_labels: tuple[str, str]
+    directions: Sequence[tuple[float, str]] = ()
+    unit: str = ""
+
+
+def polar_ground(
+    rect: QRectF, radius: float, rim: Rim, theme: Theme, scale: float = 1.0
+) -> PolarGround:
+    """Return the largest ground that leaves room in `rect` for the labels round its rim."""
+    metrics = QFontMetricsF(lettering(theme, "small", scale))
+    texts = [MINUS + rim.axis_labels[0], *(text for _, text in rim.directions)]
+    widest = max(metrics.horizontalAdvance(text) for text in texts)
+    across = rect.width() / 2 - widest - (_RIM_GAP + 4) * scale
+    down = rect.height() / 2 - metrics.height() - _RIM_GAP * scale
+    return PolarGround(rect.center(), max(min(across, down), 8.0 * scale), radius)
+
+
+def draw_ground(
+    painter: QPainter, ground: PolarGround, rim: Rim, theme: Theme, scale: float = 1.0
+) -> Placement:
+    """Draw rings, spokes, axes and everything written round the rim; return what is taken."""
+    painter.setBrush(Qt.BrushStyle.NoBrush)
+    painter.setPen(QPen(theme.colour("hairline"), scale))
+    for radius, _ in rim.rings:
+        painter.drawEllipse(ground.centre, radius * ground.per_unit, radius * ground.per_unit)
+    painter.setPen(QPen(theme.colour("hairline", 0.6), 0.8 * scale))
+    for degrees in _SPOKES_DEG:
+        angle = math.radians(degrees)
+        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
+    painter.setPen(QPen(theme.colour("faint"), scale))
+    for angle in (0.0, math.pi / 2):
+        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
+    placement = Placement(2.0 * scale)
+    _draw_axis_letters(painter, ground, rim, placement, theme, scale)
+    _draw_directions(painter, ground, rim, placement, theme, scale)
+    return placement
+
+
+def draw_ring_texts(
+    painter: QPainter,
+    ground: PolarGround,
+    rim: Rim,
+    curves: Sequence[FloatArray],
+    placement: Placement,
+    theme: Theme,
+    scale: float = 1.0,
+) -> None:
+    """Write the rings' texts along the ray where most of them are free, the best liked first.
+
+    `curves` are (2, N) in pixels; the outermost text says the unit; others that would lie on a
+    curve are left out.
+    """
+    painter.setFont(lettering(theme, "small", scale))
+    rings = sorted(
+        (radius * ground.per_unit, text) for radius, text in rim.rings if radius > 0.0
+    )
+    if not rings:
+        return
+    if rim.unit:
+        rings[-1] = (rings[-1][0], f"{rings[-1][1]} {rim.unit}")
+    rays = [_ring_boxes(ground, painter.font(), rings, degrees) for degrees in _TEXT_RAYS]
+    cloud = _cloud(curves)
+    clear = [[_is_clear(box, cloud, placement, scale) for box in boxes] for boxes in rays]
+    best = max(range(len(rays)), key=lambda ray: (clear[ray][-1], sum(clear[ray])))
+    for index, (box, (_, text)) in enumerate(zip(rays[best], rings, strict=True)):
+        # The outermost ring always says how large it is; the others are evenly spaced.
+        if clear[best][index] or index == len(rings) - 1:
+            pad = 2.5 * scale
+            painter.fillRect(box.adjusted(-pad, -pad, pad, pad), theme.colour("panel"))
+            painter.setPen(theme.colour("secondary"))
+            painter.drawText(box.bottomLeft(), text)
+
+
+def draw_axis_ends(
+    painter: QPainter,
+    ground: PolarGround,
+    labels: tuple[str, str],
+    placement: Placement,
+    theme: Theme,
+    scale: float = 1.0,
+) -> None:
+    """Write the two axis letters at the right and the top of a rim."""
+    painter.setFont(lettering(theme, "small", scale, bold=True))
+    painter.setPen(theme.colour("ink"))
+    for label, angle in zip(labels, (0.0, math.pi / 2), strict=True):
+        placement.block(_draw_outside(painter, ground, angle, label, _RIM_GAP * scale))
+
+
+def rim_text_box(
+    ground: PolarGround, font: QFont, angle: float, text: str, gap: float
+) -> QRectF:
+    """Return the box of a text that stands outside the rim and faces it."""
+    across, down = 0.5 - 0.5 * math.cos(angle), 0.5 + 0.5 * math.sin(angle)
+    return text_rect(font, ground.at(angle, ground.rim + gap), text, across, down)
+
+
+def _draw_outside(
+    painter: QPainter, ground: PolarGround, angle: float, text: str, gap: float
+) -> QRectF:
+    """Write a text outside the rim and return its box."""
+    box = rim_text_box(ground, painter.font(), angle, text, gap)
+    painter.drawText(box.bottomLeft(), text)
+    return box
+
+
+def _draw_axis_letters(
+    painter: QPainter,
+    ground: PolarGround,
+    rim: Rim,
+    placement: Placement,
+    theme: Theme,
+    scale: float,
+) -> None:
+    """Write the axis letters at the ends of the axes, the negative ends more quietly."""
+    draw_axis_ends(painter, ground, rim.axis_labels, placement, theme, scale)
+    painter.setFont(lettering(theme, "small", scale))
+    painter.setPen(theme.colour("faint"))
+    for label, angle in zip(rim.axis_labels, (math.pi, -math.pi / 2), strict=True):
+        box = _draw_outside(painter, ground, angle, MINUS + label, _RIM_GAP * scale)
+        placement.block(box)
+
+
+def _draw_directions(
+    painter: QPainter,
+    ground: PolarGround,
+    rim: Rim,
+    placement: Placement,
+    theme: Theme,
+    scale: float,
+) -> None:
+    """Mark low-index directions on the rim, and name those whose label finds room."""
+    font = lettering(theme, "small", scale)
+    painter.setFont(font)
+    tick, gap = 3.5 * scale, (_RIM_GAP + 2.0) * scale
+    for angle, text in rim.directions:
+        painter.setPen(QPen(theme.colour("secondary"), scale))
+        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle, ground.rim + tick))
+        box = rim_text_box(ground, font, angle, text, gap)
+        if text and placement.claim(box):
+            painter.drawText(box.bottomLeft(), text)
+
+
+def _ring_boxes(
+    ground: PolarGround, font: QFont, rings: Sequence[tuple[float, str]], degrees: float
+) -> list[QRectF]:
+    """Return the boxes of the rings' texts along a ray, each centred on its ring."""
+    angle = math.radians(degrees)
+    return [text_rect(font, ground.at(angle, pixels), text, 0.5, 0.5) for pixels, text in rings]
+
+
+def _cloud(curves: Sequence[FloatArray]) -> FloatArray:
+    """Return some points of all curves, shape (2, M), none of them NaN."""
+    points = np.concatenate([curve[:, ::8] for curve in curves] or [np.empty((2, 0))], axis=1)
+    return points[:, np.isfinite(points).all(axis=0)]
+
+
+def _is_clear(box: QRectF, cloud: FloatArray, placement: Placement, scale: float) -> bool:
+    """Tell whether neither a curve nor a label comes near a box."""
+    return placement.is_free(box) and _clearance(box, cloud) >= _CLEARANCE * scale
+
+
+def _clearance(box: QRectF, cloud: FloatArray) -> float:
+    """Return the pixels between a box and the nearest of some points; zero inside."""
+    if not cloud.size:
+        return math.inf
+    beside = np.maximum(np.abs(cloud[0] - box.center().x()) - box.width() / 2, 0.0)
+    above = np.maximum(np.abs(cloud[1] - box.center().y()) - box.height() / 2, 0.0)
+    return float(np.hypot(beside, above).min())

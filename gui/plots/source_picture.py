@@ -1,0 +1,190 @@
+"""The source picture: where the pulse of a point source has come to after a given time."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+from PySide6.QtCore import QPointF, QRectF, QSignalBlocker, Signal
+from PySide6.QtGui import QColor, QPainter, QPen
+from PySide6.QtWidgets import QAbstractSpinBox, QDoubleSpinBox, QWidget
+
+from gui.plots.frame import PlotFrame
+from gui.plots.grid import MINUS, number_text
+from gui.plots.legend import draw_strip, split_strip
+from gui.plots.lettering import draw_chip, draw_notice, draw_title, draw_top_note
+from gui.plots.polar import PolarGround, Rim, draw_ground, draw_ring_texts, polar_ground
+from gui.plots.strokes import draw_signed_curve, side_pen
+from gui.theme import Theme
+from gui.viewdata import SourceView
+
+_UNIT = "mm"
+_NOTE = "dotted: the energy leaves the plane"
+_FAINT = 0.7
+_LONGEST_US, _SHORTEST_US = 10_000.0, 0.01
+
+
+# ---------------------------------------------------------------- drawing
+def draw_source(
+    painter: QPainter,
+    rect: QRectF,
+    view: SourceView,
+    theme: Theme,
+    scale: float = 1.0,
+    titled: bool = False,
+) -> None:
+    """Draw the wavefronts of a point source.
+
+    Parameters
+    ----------
+    painter : QPainter
+        Of the screen, a picture, an SVG or a PDF; the ground behind is not filled.
+    rect : QRectF
+        Pixels of the painter.
+    view : SourceView
+    theme : Theme
+    scale : float
+        Size of text and strokes; 1 on the screen.
+    titled : bool
+        Write title and time at the top: for pictures that stand alone.
+    """
+    painter.save()
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    if titled:
+        words = f"{view.title} · after {number_text(view.time_us)} µs"
+        rect = draw_title(painter, rect, words, theme, scale)
+    if view.curves and _radius(view) > 0.0:
+        _draw_body(painter, rect, view, theme, scale)
+    else:
+        draw_notice(painter, rect, view.notice, theme, scale)
+    painter.restore()
+
+
+def source_ground(
+    rect: QRectF, view: SourceView, theme: Theme, scale: float = 1.0
+) -> PolarGround:
+    """Return where `draw_source` places the plane in `rect` when it writes no title."""
+    area, _ = split_strip(rect, True, theme, scale)
+    return polar_ground(area, _radius(view), _rim(view), theme, scale)
+
+
+def _radius(view: SourceView) -> float:
+    """Return the radius of the outermost ring, mm."""
+    return max((radius for radius, _ in view.rings), default=0.0)
+
+
+def _rim(view: SourceView) -> Rim:
+    """Return what is written on the ground."""
+    return Rim(view.rings, view.axis_labels, unit=_UNIT)
+
+
+def _draw_body(
+    painter: QPainter, rect: QRectF, view: SourceView, theme: Theme, scale: float
+) -> None:
+    """Draw the ground, the wavefronts, the source and the strip under them."""
+    ground, rim = source_ground(rect, view, theme, scale), _rim(view)
+    placed = [ground.place(points) for _, _, points, _ in view.curves]
+    placement = draw_ground(painter, ground, rim, theme, scale)
+    draw_ring_texts(painter, ground, rim, placed, placement, theme, scale)
+    order = sorted(range(len(placed)), key=lambda i: view.curves[i][:2])
+    for index in reversed(order):
+        side, sheet, _, leaves = view.curves[index]
+        faint = side_pen(theme, side, sheet, scale, negative=True)
+        faint.setColor(theme.side(side, _FAINT))
+        pens = (side_pen(theme, side, sheet, scale), faint)
+        draw_signed_curve(painter, placed[index], leaves, pens, scale)
+    painter.setPen(QPen(theme.colour("panel"), 1.2 * scale))
+    painter.setBrush(theme.colour("ink"))
+    painter.drawEllipse(ground.centre, 3.5 * scale, 3.5 * scale)
+    _, strip = split_strip(rect, True, theme, scale)
+    entries = [(side, "") for side in sorted({curve[0] for curve in view.curves})]
+    has_leaving = any(leaves.any() for _, _, _, leaves in view.curves)
+    draw_strip(painter, strip, entries, [_NOTE] if has_leaving else [], theme, scale)
+    draw_top_note(painter, rect, view.notice, theme, scale)
+
+
+# ---------------------------------------------------------------- widget
+class SourcePicture(PlotFrame):
+    """The source picture with its time.
+
+    Signals
+    -------
+    time_chosen(float)
+        Microseconds.
+    """
+
+    time_chosen = Signal(float)
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__("Point source", parent)
+        self._view: SourceView | None = None
+        self.time = QDoubleSpinBox(self)
+        self.time.setAccessibleName("Time since the pulse, microseconds")
+        self.time.setToolTip("Time since the pulse, µs")
+        self.time.setSuffix(" µs")
+        self.time.setDecimals(2)
+        self.time.setRange(_SHORTEST_US, _LONGEST_US)
+        self.time.setButtonSymbols(QAbstractSpinBox.ButtonSymbols.NoButtons)
+        self.time.setStepType(QAbstractSpinBox.StepType.AdaptiveDecimalStepType)
+        self.time.setKeyboardTracking(False)
+        self.time.valueChanged.connect(self.time_chosen)
+        self.header.addWidget(self.time)
+
+    def show_view(self, view: SourceView) -> None:
+        """Draw this."""
+        self._view = view
+        self.title.set_whole(view.title)
+        with QSignalBlocker(self.time):
+            self.time.setValue(view.time_us)
+        self.canvas.update()
+
+    def readout(self, angle: float, distance_mm: float) -> list[tuple[str, QColor]]:
+        """Return the lines of the card beside the mouse: how far from the source, and where."""
+        view = self._view
+        if view is None:
+            return []
+        right, up = view.axis_labels
+        degrees = f"{math.degrees(angle):.1f}°".replace("-", MINUS)
+        lines = [(f"{degrees} from {right} to {up}", self.theme.colour("secondary"))]
+        lines.append((f"{number_text(distance_mm)} {_UNIT}", self.theme.colour("ink")))
+        speed = number_text(distance_mm / view.time_us)
+        lines.append((f"reached by {speed} km/s", self.theme.colour("secondary")))
+        return lines
+
+    # ------------------------------------------------------------ as a frame asks
+    def draw(self, painter: QPainter, rect: QRectF, theme: Theme, scale: float) -> None:
+        """Draw the wavefronts as on the screen."""
+        if self._view is not None:
+            draw_source(painter, rect, self._view, theme, scale)
+
+    def draw_titled(self, painter: QPainter, rect: QRectF, theme: Theme, scale: float) -> None:
+        """Draw the wavefronts with title and time."""
+        if self._view is not None:
+            draw_source(painter, rect, self._view, theme, scale, titled=True)
+
+    def draw_hover(self, painter: QPainter, rect: QRectF) -> None:
+        """Draw a ray to the mouse and the card of the place under it."""
+        view = self._view
+        if self.hover is None or view is None or not view.curves or not _radius(view):
+            return
+        ground = source_ground(rect, view, self.theme)
+        away = self.hover - ground.centre
+        pixels = math.hypot(away.x(), away.y())
+        if pixels > ground.rim:
+            return
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        painter.setPen(QPen(self.theme.colour("ink", 0.35), 1.0))
+        painter.drawLine(ground.centre, QPointF(self.hover))
+        lines = self.readout(ground.angle_of(self.hover), pixels / ground.per_unit)
+        draw_chip(painter, self.hover, lines, rect, self.theme)
+
+    def copy_text(self) -> str:
+        """Return the wavefronts as tab-separated rows: side, sheet, x, y, leaves the plane."""
+        if self._view is None or not self._view.curves:
+            return ""
+        right, up = self._view.axis_labels
+        rows = [f"side\tsheet\t{right}, mm\t{up}, mm\tleaves the plane"]
+        for side, sheet, points, leaves in self._view.curves:
+            for (x, y), out in zip(points.T.tolist(), np.asarray(leaves).tolist(), strict=True):
+                rows.append(f"{side}\t{sheet + 1}\t{x!r}\t{y!r}\t{'yes' if out else 'no'}")
+        return "\n".join(rows)

@@ -1,0 +1,398 @@
+"""View data of the deck: the section, the hemisphere, the sweep and the source picture."""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+import numpy as np
+
+from core import live
+from core.arrays import FloatArray, IntArray
+from core.crystal.directions import nearest_indices
+from core.directional.medium import Medium
+from core.directional.quantities import Quantity, quantity
+from core.directional.sphere import plane_axes, sphere_mesh
+from core.directional.waves import modes
+from core.numbers import significant
+from core.state import BenchState, Vector3
+from core.study.tolerance import cost_map
+from gui.plots.grid import nice_ticks, tick_texts
+from gui.presenting.stage import (
+    NO_DENSITY,
+    PLANES,
+    SHEET_NAMES,
+    ColourOf,
+    plane_choices,
+    plane_key,
+    point_axes,
+    quantity_title,
+    scale_view,
+    sides,
+    unit_vector,
+)
+from gui.viewdata import Curve, HemisphereView, SectionView, SourceView, SweepView
+
+_ON_PLANE = 0.02  # |n·pin| below which the pin is drawn on the section
+_SECTION_CLIP = {"focusing": 20.0}  # infinite on caustics: the plot stops here
+_TICK_STEP = 24  # every so many points of a section carry a polarisation tick
+_COST_LEVEL = 5
+
+
+def shown_sides(state: BenchState) -> tuple[str, ...]:
+    """Return the sides whose quantity can be computed."""
+    shown = quantity(state.quantity)
+    return tuple(side for side in sides(state)
+                 if not shown.wave or state.specimen_of(side).density is not None)
+
+
+def _medium(state: BenchState, side: str) -> Medium:
+    return live.part_medium(state.specimen_of(side), state.orientation_of(side))
+
+
+# ------------------------------------------------------------------ section
+def section_view(state: BenchState) -> SectionView:
+    """Return the polar section of A and B."""
+    shown = quantity(state.quantity)
+    curves = [curve for side in shown_sides(state) for curve in _curves(state, shown, side)]
+    radius = max((float(np.nanmax(np.hypot(*curve.points), initial=0.0)) for curve in curves),
+                 default=0.0)
+    ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
+    across, up = plane_axes(np.array(state.section))
+    negative = any(curve.negative is not None and curve.negative.any() for curve in curves)
+    return SectionView(
+        title=quantity_title(shown),
+        curves=tuple(curves), radius=radius,
+        rings=tuple(zip(ticks, tick_texts(ticks), strict=True)),
+        axis_labels=(axis_label(across), axis_label(up)), unit=shown.unit,
+        pin_angle=_pin_angle(state, across, up),
+        negative_note=_dotted_note(shown, negative),
+        notice="" if curves else NO_DENSITY,
+        legend=tuple((side, side) for side in shown_sides(state)),
+        directions=_rim_directions(state, across, up),
+        ticks=_section_ticks(state, shown, across, up),
+        plane=plane_key(state.section), planes=plane_choices(state))
+
+
+def _curves(state: BenchState, shown: Quantity, side: str) -> list[Curve]:
+    found = live.section(_medium(state, side), state.quantity, state.section)
+    limit = _SECTION_CLIP.get(shown.key)
+    curves = []
+    for sheet, (points, values) in enumerate(zip(found.points, found.values, strict=True)):
+        if shown.sheets == 3 and not state.display.sheets[sheet]:
+            continue
+        drawn = points
+        if limit is not None:
+            with np.errstate(invalid="ignore"):
+                drawn = np.where(np.abs(values) > limit, np.nan, points)
+        negative = values < 0 if shown.signed else None
+        label = SHEET_NAMES[sheet] if shown.sheets == 3 else ""
+        faint = found.out_of_plane[sheet] if shown.shape == "wave" else None
+        curves.append(Curve(drawn, side, sheet, label, negative=negative if faint is None
+                            else faint))
+    return curves
+
+
+def _dotted_note(shown: Quantity, dotted: bool) -> str:
+    if not dotted:
+        return ""
+    return "dotted where the ray leaves the plane" if shown.shape == "wave" else (
+        "dotted where negative")
+
+
+def axis_label(vector: FloatArray) -> str:
+    """Return "X" for a part axis, or the components of another direction."""
+    for name, axis in zip("XYZ", np.eye(3), strict=True):
+        if abs(vector @ axis) > 1 - 1e-9:
+            return name if vector @ axis > 0 else f"−{name}"
+    return " ".join(significant(round(float(x), 2), 2) for x in vector)
+
+
+def _pin_angle(state: BenchState, across: FloatArray, up: FloatArray) -> float | None:
+    pin = np.array(state.pin)
+    if abs(pin @ np.array(state.section)) > _ON_PLANE:
+        return None
+    return float(np.arctan2(pin @ up, pin @ across))
+
+
+def section_direction(state: BenchState, angle: float) -> Vector3:
+    """Return the direction at an angle of the section, part axes."""
+    across, up = plane_axes(np.array(state.section))
+    return unit_vector(np.cos(angle) * across + np.sin(angle) * up)
+
+
+def _rim_directions(state: BenchState, across: FloatArray,
+                    up: FloatArray) -> tuple[tuple[float, str], ...]:
+    """Return the simplest lattice directions of A's crystal that lie in the plane."""
+    side = sides(state)[0]
+    specimen = state.specimen_of(side)
+    if not specimen.frame.has_basis or state.display.layout == "AB":
+        return ()
+    turn = live.rotation(state.orientation_of(side), specimen)
+    marks, seen = [], set()
+    for degrees in range(0, 180, 5):
+        angle = np.deg2rad(degrees)
+        vector = turn.T @ (np.cos(angle) * across + np.sin(angle) * up)
+        near = nearest_indices(vector, specimen.frame, largest=2)
+        named = turn @ np.array(near.vector)
+        off = abs(named @ np.cross(across, up))
+        if off > 1e-6 or near.text in seen:
+            continue
+        seen.add(near.text)
+        where = float(np.arctan2(named @ up, named @ across))
+        marks.append((where, near.text.replace("-", "−")))
+    return tuple(marks[:8])
+
+
+def _section_ticks(state: BenchState, shown: Quantity, across: FloatArray,
+                   up: FloatArray) -> FloatArray | None:
+    """Return polarisation ticks on the curves of the first side, shape (2, 2, M)."""
+    if not state.display.ticks or shown.sheets == 1 or not shown_sides(state):
+        return None
+    medium = _medium(state, shown_sides(state)[0])
+    found = live.section(medium, state.quantity, state.section)
+    circle = live.section_circle(state.section)
+    polarisation = modes(medium, circle).polarisation
+    size = 0.03 * float(np.nanmax(np.abs(found.points), initial=1.0))
+    lines = []
+    for sheet, visible in enumerate(state.display.sheets):
+        if visible:
+            points = found.points[sheet][:, ::_TICK_STEP]
+            p = polarisation[sheet][:, ::_TICK_STEP]
+            flat = size * np.stack([across @ p, up @ p])
+            lines.append(np.stack([points - flat, points + flat], axis=1).transpose(1, 0, 2))
+    return np.concatenate(lines, axis=2) if lines else None
+
+
+def plane_normal(state: BenchState, key: str) -> Vector3 | None:
+    """Return the normal of a plane of the combo; None for one that is typed."""
+    if key in PLANES:
+        return PLANES[key]
+    if key == "pin":
+        pin = np.array(state.pin)
+        normal = np.cross(pin, (1.0, 0.0, 0.0))
+        if np.linalg.norm(normal) < 1e-9:
+            normal = np.array((0.0, 1.0, 0.0))
+        return unit_vector(normal)
+    return state.section if key == "other" else None
+
+
+# ------------------------------------------------------------------ hemisphere
+_SHOWN = {"A": "A", "B": "B", "difference": "B − A", "cost": "cutting error"}
+
+
+def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
+    """Return the hemisphere of A, of B, of their difference, or of what a cutting error costs.
+
+    While something moves it has fewer pixels and no contours.
+    """
+    size = live.DISC_SIZE if fine else live.COARSE_DISC_SIZE
+    shown = quantity(state.quantity)
+    known = shown_sides(state)
+    choice = _hemisphere_choice(state, known)
+    projection = state.display.projection
+    sheet = min(state.display.hemisphere_sheet, shown.sheets - 1)
+    title = quantity_title(shown)
+    if not known:
+        picture = np.full((2, 2), np.nan)
+        about = ColourOf(title)
+    else:
+        picture, about = _hemisphere_picture(state, shown, choice, sheet, size)
+    low = float(np.nanmin(picture)) if np.isfinite(picture).any() else 0.0
+    high = float(np.nanmax(picture)) if np.isfinite(picture).any() else 1.0
+    scale = scale_view(about, low, high)
+    levels = [value for value, _ in scale.ticks]
+    return HemisphereView(
+        title=about.title, picture=picture, scale=scale,
+        contours=_contour_lines(picture, levels) if known and fine else (),
+        marks=_hemisphere_marks(state, choice), projection=projection,  # type: ignore[arg-type]
+        shown=choice, choices=_hemisphere_choices(state), sheet=sheet,
+        sheets=tuple(enumerate(SHEET_NAMES)) if shown.sheets == 3 else (),
+        notice="" if known else NO_DENSITY)
+
+
+def _hemisphere_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
+    both = len(sides(state)) == 2
+    keys = ("A", "B", "difference", "cost") if both else (sides(state)[0], "cost")
+    return tuple((key, _SHOWN[key]) for key in keys)
+
+
+def _hemisphere_choice(state: BenchState, known: tuple[str, ...]) -> str:
+    choice = state.display.hemisphere
+    offered = [key for key, _ in _hemisphere_choices(state)]
+    if choice not in offered or (choice == "difference" and len(known) < 2):
+        return offered[0]
+    return choice
+
+
+def _hemisphere_picture(state: BenchState, shown: Quantity, choice: str, sheet: int,
+                        size: int) -> tuple[FloatArray, ColourOf]:
+    projection = state.display.projection
+    known = shown_sides(state)
+    title = quantity_title(shown)
+    if choice == "difference":
+        a, b = (live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
+                for side in ("A", "B"))
+        return b - a, ColourOf(f"B − A: {title}", diverging=True)
+    side = choice if choice in known else known[0]
+    if choice == "cost":
+        picture = _cost_picture(_medium(state, side), shown.key, projection,
+                                state.cutting_error_deg, size)[sheet]
+        return picture, ColourOf(
+            f"change of {title} within ±{state.cutting_error_deg:g}° ({side})")
+    picture = live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
+    return picture, ColourOf(title, shown.signed, shown.logarithmic)
+
+
+@lru_cache(maxsize=4)
+def _cost_picture(medium: Medium, key: str, projection: str, delta: float,
+                  size: int) -> FloatArray:
+    """Return the cost of a cutting error on the disc: the mesh's values at the nearest vertex."""
+    mesh = sphere_mesh(_COST_LEVEL)
+    costs = cost_map(medium, mesh, delta, key)
+    inside = live.disc(projection, size)[1]
+    nearest = _nearest_vertices(projection, size)
+    picture = np.full((len(costs), *inside.shape), np.nan)
+    picture[:, inside] = costs[:, nearest]
+    return picture
+
+
+@lru_cache(maxsize=4)
+def _nearest_vertices(projection: str, size: int) -> IntArray:
+    """Return, for every pixel of the disc, the nearest evaluated direction of the mesh."""
+    from scipy.spatial import cKDTree
+
+    half = sphere_mesh(_COST_LEVEL).half.n
+    both = np.concatenate([half, -half], axis=1).T
+    _, index = cKDTree(both).query(live.disc(projection, size)[0].n.T)
+    return np.asarray(index % half.shape[1])
+
+
+def _contour_lines(picture: FloatArray, levels: list[float]) -> tuple[
+        tuple[float, FloatArray], ...]:
+    """Return contour lines of the picture in disc coordinates."""
+    import pyqtgraph as pg
+
+    size = picture.shape[0]
+    lines = []
+    for level in levels:
+        for line in pg.functions.isocurve(picture, level, connected=True):
+            points = np.array(line).T
+            x = (points[1] + 0.5) / size * 2.0 - 1.0
+            y = 1.0 - (points[0] + 0.5) / size * 2.0
+            lines.append((level, np.stack([x, y])))
+    return tuple(lines)
+
+
+def _hemisphere_marks(state: BenchState, choice: str) -> tuple[
+        tuple[float, float, str, str], ...]:
+    """Return the pin, the low-index directions and the acoustic axes on the disc."""
+    projection = state.display.projection
+    side = choice if choice in ("A", "B") else sides(state)[0]
+    specimen = state.specimen_of(side)
+    marks = [(*_on_disc(state.pin, projection), "", "pin")]
+    if specimen.frame.has_basis:
+        turn = live.rotation(state.orientation_of(side), specimen)
+        marks += [(*_on_disc(unit_vector(turn @ vector), projection), text, "direction")
+                  for text, vector in low_directions(state, side)]
+    if state.display.marks and specimen.density is not None and (
+            quantity(state.quantity).wave):
+        marks += [(*_on_disc(axis.direction, projection), "", "axis")
+                  for axis in point_axes(_medium(state, side))]
+    return tuple(marks)
+
+
+def low_directions(state: BenchState, side: str) -> list[tuple[str, FloatArray]]:
+    """Return the simplest lattice directions of a side's crystal, crystal axes."""
+    frame = state.specimen_of(side).frame
+    basis = frame.basis()
+    found: dict[str, FloatArray] = {}
+    for steps in _SIMPLE_STEPS:
+        vector = basis @ np.array(steps, dtype=float)
+        vector /= np.linalg.norm(vector)
+        near = nearest_indices(vector, frame, largest=1)
+        if near.angle_deg < 1e-6:
+            found.setdefault(near.text.replace("-", "−"), np.array(near.vector))
+    return list(found.items())
+
+
+_SIMPLE_STEPS = tuple(
+    (i, j, k) for i in (-1, 0, 1) for j in (-1, 0, 1) for k in (-1, 0, 1)
+    if (i, j, k) != (0, 0, 0))
+
+
+def _on_disc(direction: Vector3, projection: str) -> tuple[float, float]:
+    x, y = live.to_disc(np.array(direction).reshape(3, 1), projection)[:, 0].tolist()
+    return x, y
+
+
+def disc_direction(state: BenchState, x: float, y: float) -> Vector3:
+    """Return the direction behind a point of the hemisphere, part axes."""
+    return unit_vector(live.from_disc(np.array([[x], [y]]), state.display.projection)[:, 0])
+
+
+# ------------------------------------------------------------------ sweep
+_SWEEP = np.linspace(-90.0, 90.0, 361)
+_SWEEP_AXES: dict[str, Vector3] = {"X": (1.0, 0.0, 0.0), "Y": (0.0, 1.0, 0.0),
+                                   "Z": (0.0, 0.0, 1.0)}
+
+
+def sweep_axis(state: BenchState) -> Vector3:
+    """Return the axis about which the sweep turns the pin, part axes."""
+    return state.display.sweep_about or state.section
+
+
+def sweep_choice(key: str) -> Vector3 | None:
+    """Return the axis of a choice of the combo; None stands for the section's normal."""
+    return _SWEEP_AXES.get(key)
+
+
+def sweep_view(state: BenchState) -> SweepView:
+    """Return the quantity against the angle from the pin."""
+    shown = quantity(state.quantity)
+    axis = sweep_axis(state)
+    dirs = live.arc(state.pin, axis, _SWEEP)
+    curves = []
+    for side in shown_sides(state):
+        values = quantity(shown.key).values(_medium(state, side), dirs)
+        curves += [(side, sheet, row) for sheet, row in enumerate(values)
+                   if shown.sheets == 1 or state.display.sheets[sheet]]
+    chosen = next((key for key, vector in _SWEEP_AXES.items()
+                   if state.display.sweep_about == vector), "normal")
+    parallel = abs(np.dot(axis, state.pin)) > 1 - 1e-9
+    notice = "The pin lies on this axis: turning about it moves nothing." if parallel else ""
+    return SweepView(
+        title=f"{shown.name} away from the pin", angles=_SWEEP, curves=tuple(curves),
+        axis=f"turned about {axis_label(np.array(axis))}",
+        choices=(("normal", "about the section's normal"),
+                 *((key, f"about part {key}") for key in _SWEEP_AXES)),
+        chosen=chosen, value_label=f"{shown.symbol}{', ' if shown.unit else ''}{shown.unit}",
+        notice=notice if curves else NO_DENSITY)
+
+
+def sweep_direction(state: BenchState, degrees: float) -> Vector3:
+    """Return the direction that far along the sweep from the pin, part axes."""
+    found = live.arc(state.pin, sweep_axis(state), np.array([degrees]))
+    return unit_vector(found.n[:, 0])
+
+
+# ------------------------------------------------------------------ source picture
+def source_view(state: BenchState, time_us: float) -> SourceView:
+    """Return the wavefronts from a point source after a time, in the section plane."""
+    across, up = plane_axes(np.array(state.section))
+    curves = []
+    for side in sides(state):
+        if state.specimen_of(side).density is None:
+            continue
+        found = live.section(_medium(state, side), "wave", state.section)
+        curves += [(side, sheet, found.points[sheet] * time_us, found.out_of_plane[sheet])
+                   for sheet in range(3) if state.display.sheets[sheet]]
+    radius = max((float(np.nanmax(np.hypot(*points), initial=0.0))
+                  for _, _, points, _ in curves), default=0.0)
+    rings = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
+    return SourceView(
+        title="Wavefronts from a point source", curves=tuple(curves), time_us=time_us,
+        radius=radius, rings=tuple(zip(rings, tick_texts(rings), strict=True)),
+        axis_labels=(axis_label(across), axis_label(up)),
+        notice="" if curves else NO_DENSITY)
+
+

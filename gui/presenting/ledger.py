@@ -1,0 +1,245 @@
+"""View data of the verdict band and the ledger."""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+import numpy as np
+
+from core import live
+from core.crystal.cell import AXES_CONVENTIONS, axes_note, axes_text, axes_words, cell_mismatch
+from core.crystal.directions import nearest_indices
+from core.crystal.orientation import WAYS, misorientation, orientation_texts, parse_orientation
+from core.edits import FITS, claimed_class
+from core.errors import InputError
+from core.numbers import full_precision, significant
+from core.state import BenchState, Specimen
+from core.study.verdict import Verdict, judge
+from core.tensor.notation import constant_name
+from core.tensor.stability import assess
+from core.tensor.stiffness import Stiffness
+from core.tensor.symmetry import (
+    CLASS_KEYS,
+    CrystalClass,
+    complete,
+    crystal_class,
+    dependence_text,
+    distance,
+    laue_rotations,
+)
+from gui.viewdata import (
+    CellFormView,
+    CellView,
+    ConstantsView,
+    OrientationView,
+    SpecimenView,
+    SpectrumBar,
+    SpectrumView,
+    VerdictView,
+)
+
+UNITS = {"stiffness": "GPa", "compliance": "1/TPa", "uncertainty": "GPa"}
+NAMES = {"stiffness": "Stiffness", "compliance": "Compliance", "uncertainty": "Uncertainty"}
+_OFF_PATTERN = 1e-6  # of the largest constant: a cell this far from its class says so
+
+
+def ledger_specimen(state: BenchState) -> Specimen:
+    """Return the crystal that the ledger shows."""
+    return state.specimen_of(state.display.ledger)
+
+
+@lru_cache(maxsize=8)
+def verdict_of(specimen: Specimen) -> Verdict:
+    """Return the verdict on a specimen."""
+    std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
+    stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
+    return judge(stiffness, claimed_class(specimen), std)
+
+
+def verdict_view(specimen: Specimen) -> VerdictView:
+    """Return the band above everything."""
+    verdict = verdict_of(specimen)
+    facts = verdict.facts
+    if specimen.density is None:
+        facts = (*facts, "no density: waves are off")
+    return VerdictView(verdict.mark, verdict.headline, facts, verdict.detail)
+
+
+def window_title(specimen: Specimen) -> str:
+    """Return the specimen's part of the window title."""
+    return specimen.name
+
+
+# ------------------------------------------------------------------ constants
+def constants_view(specimen: Specimen, face: str) -> ConstantsView:
+    """Return one face of the 6×6 grid."""
+    claimed = claimed_class(specimen)
+    table, note = _face_table(specimen, face)
+    expected = _expected(specimen, claimed) if face == "stiffness" else table
+    slack = _OFF_PATTERN * float(np.abs(np.array(specimen.stiffness)).max())
+    cells = tuple(
+        tuple(_cell(face, claimed, table, expected, slack, i, j) for j in range(6))
+        for i in range(6))
+    known_face = face if face in UNITS else "stiffness"
+    return ConstantsView(known_face, UNITS[known_face], cells, not note, note)  # type: ignore[arg-type]
+
+
+def _face_table(specimen: Specimen, face: str) -> tuple[np.ndarray, str]:
+    stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
+    if face == "uncertainty":
+        known = specimen.stiffness_std
+        return (np.zeros((6, 6)) if known is None else np.array(known)), ""
+    if face == "compliance":
+        try:
+            return np.array(stiffness.compliance) * 1e3, ""
+        except InputError as error:
+            return np.full((6, 6), np.nan), str(error)
+    return np.array(stiffness.voigt), ""
+
+
+def _expected(specimen: Specimen, claimed: CrystalClass) -> np.ndarray:
+    return complete(np.array(specimen.stiffness), claimed)
+
+
+def _cell(face: str, claimed: CrystalClass, table: np.ndarray, expected: np.ndarray,
+          slack: float, row: int, column: int) -> CellView:
+    """Return one cell; a number that breaks the class's pattern shows as a free one."""
+    i, j = sorted((row, column))
+    kind = claimed.kinds[i][j]
+    value = float(table[row, column])
+    letter = "S" if face == "compliance" else "C"
+    tooltip = f"{letter}{i + 1}{j + 1}"
+    if kind != "independent":
+        tooltip = dependence_text(claimed, i, j) if face != "compliance" else (
+            f"{tooltip}: follows from the {claimed.name} class")
+        if abs(table[i, j] - expected[i, j]) > slack:
+            kind = "independent"
+            tooltip = f"{tooltip}, but the table has {significant(value)}"
+    elif row > column:
+        kind = "dependent"
+        tooltip = f"equal to {letter}{i + 1}{j + 1}"
+    if kind == "zero":
+        return CellView("·", "zero", "0.0", f"{letter}{i + 1}{j + 1}: zero by symmetry")
+    text = "·" if face == "uncertainty" and value == 0.0 else significant(value)
+    return CellView(text, kind, full_precision(value), tooltip)  # type: ignore[arg-type]
+
+
+def edit_label(face: str, row: int, column: int) -> str:
+    """Return the name of the step that changes a cell."""
+    i, j = sorted((row, column))
+    name = constant_name(i, j)
+    return {
+        "stiffness": f"Change {name}",
+        "compliance": f"Change {name.replace('C', 'S')}",
+        "uncertainty": f"Change the uncertainty of {name}",
+    }[face]
+
+
+def spectrum_view(specimen: Specimen) -> SpectrumView:
+    """Return the six bars of the strain spectrum."""
+    stability = assess(Stiffness.from_voigt(np.array(specimen.stiffness)))
+    bars = tuple(
+        SpectrumBar(
+            float(value), significant(float(value), 3), words,
+            f"{significant(float(value), 6)} GPa: {words}. An eigenvalue of the stiffness in "
+            "Kelvin form; the crystal is stable when all six are positive.")
+        for value, words in zip(stability.eigenstiffness, stability.descriptions, strict=True))
+    count = int((stability.eigenstiffness <= 0).sum())
+    note = "" if stability.stable else (
+        f"{count} of 6 strains release energy instead of storing it")
+    return SpectrumView(bars, note)
+
+
+# ------------------------------------------------------------------ forms
+@lru_cache(maxsize=1)
+def class_choices() -> tuple[tuple[str, str], ...]:
+    """Return the crystal classes with the number of their constants, for a combo box."""
+    named = ((key, crystal_class(key)) for key in CLASS_KEYS)
+    return tuple((key, f"{entry.name} · {len(entry.independent)}") for key, entry in named)
+
+
+def specimen_view(state: BenchState) -> SpecimenView:
+    """Return the specimen form."""
+    specimen = ledger_specimen(state)
+    claimed = claimed_class(specimen)
+    off = distance(np.array(specimen.stiffness), claimed)
+    note = "" if off < FITS else (
+        f"The table is {significant(100 * off, 2)} % away from {claimed.name} in these axes.")
+    choices = () if state.other is None else (
+        ("A", state.specimen.name), ("B", state.other.name))
+    temperature = specimen.temperature_c
+    return SpecimenView(
+        name=specimen.name, source=specimen.source, notes=specimen.notes,
+        density="" if specimen.density is None else significant(specimen.density, 6),
+        temperature="" if temperature is None else f"{temperature:g}".replace("-", "−"),
+        crystal_class=specimen.crystal_class, classes=class_choices(),
+        unique_axis=specimen.unique_axis,
+        has_unique_axis=specimen.crystal_class == "monoclinic",
+        class_note=note, sides="A and B" if state.other is None else state.display.ledger,
+        choices=choices, chosen=state.display.ledger)
+
+
+def cell_form_view(specimen: Specimen) -> CellFormView:
+    """Return the form of the unit cell and the axes."""
+    cell = specimen.cell
+    conventions = tuple(AXES_CONVENTIONS.items())
+    if specimen.crystal_axes not in AXES_CONVENTIONS:
+        conventions = (*conventions, (specimen.crystal_axes, axes_words(specimen.crystal_axes)))
+    if cell is None:
+        note = ("No cell: indices follow the unit cube." if specimen.frame.has_basis else
+                "No cell: [u v w] and (h k l) cannot be read.")
+        return CellFormView(("",) * 3, ("",) * 3, axes_text(specimen.crystal_axes),  # type: ignore[arg-type]
+                            conventions, note)
+    mismatch = cell_mismatch(cell, specimen.crystal_class, specimen.unique_axis)
+    notes = (f"volume {significant(cell.volume)} Å³", mismatch,
+             axes_note(cell, specimen.crystal_axes))
+    return CellFormView(
+        (f"{cell.a:g}", f"{cell.b:g}", f"{cell.c:g}"),
+        (f"{cell.alpha:g}", f"{cell.beta:g}", f"{cell.gamma:g}"),
+        axes_text(specimen.crystal_axes), conventions,
+        " · ".join(note for note in notes if note))
+
+
+def orientation_view(state: BenchState, side: str) -> OrientationView:
+    """Return the form of one orientation."""
+    specimen, choice = state.specimen_of(side), state.orientation_of(side)
+    said = parse_orientation(choice.text, specimen.frame)
+    turned = live.rotation(choice, specimen)
+    others = tuple(
+        (WAYS[way], text) for way, text in orientation_texts(turned, specimen.frame).items())
+    axes = (axis_words(turned[0], specimen), axis_words(turned[1], specimen),
+            axis_words(turned[2], specimen))
+    note = _misorientation_note(state) if side == "B" else ""
+    return OrientationView(side, choice.text, said.way, tuple(WAYS.items()), choice.turn,
+                           others, axes, note)
+
+
+def axis_words(vector: np.ndarray, specimen: Specimen) -> str:
+    """Return the low-index direction nearest to a vector (crystal axes), with how far off."""
+    frame = specimen.frame
+    if not frame.has_basis:
+        return "  ".join(significant(round(float(x), 4), 3) for x in vector)
+    near = nearest_indices(vector, frame)
+    plane = nearest_indices(vector, frame, plane=True)
+    best = plane if plane.angle_deg < near.angle_deg - 1e-6 else near
+    off = "" if best.angle_deg < 5e-3 else f" {significant(best.angle_deg, 2)}° off"
+    return best.text.replace("-", "−") + off
+
+
+def _misorientation_note(state: BenchState) -> str:
+    """Return how far B is turned from A, as it stands and by the crystal's own symmetry."""
+    rotations = tuple(
+        live.rotation(state.orientation_of(side), state.specimen_of(side)) for side in "AB")
+    plain = misorientation(*rotations)
+    if plain.angle_deg < 1e-9:
+        return "the same orientation as A"
+    text = f"{significant(plain.angle_deg, 4)}° from A"
+    claimed = claimed_class(state.specimen)
+    if state.other is not None or claimed.key in ("triclinic", "isotropic"):
+        return text
+    least = misorientation(*rotations, laue_rotations(claimed))
+    if least.angle_deg < plain.angle_deg - 1e-9:
+        text += f", {significant(least.angle_deg, 4)}° by the crystal's symmetry"
+    return text
+
+

@@ -1,0 +1,297 @@
+"""View data of the reading: the pin, extremes, cutting error, aggregates, the part table."""
+
+from __future__ import annotations
+
+from functools import lru_cache
+from typing import Any
+
+import numpy as np
+
+from core import live
+from core.crystal.directions import nearest_indices
+from core.directional import waves
+from core.directional.debye import debye_speed
+from core.directional.extremes import Extreme
+from core.directional.medium import Medium
+from core.directional.quantities import QUANTITIES, Quantity, quantity
+from core.directional.sphere import Directions, directions
+from core.edits import claimed_class
+from core.numbers import full_precision, significant, signed
+from core.state import BenchState, Specimen, Vector3
+from core.study.part import PartRow, part_table
+from core.study.tolerance import cone_extremes
+from core.tensor.averages import anisotropy, averages, hashin_shtrikman
+from core.tensor.stiffness import Stiffness
+from gui.presenting.stage import SHEET_NAMES, sides
+from gui.viewdata import ExtremeRow, ExtremesView, ReadingRow, ReadingView, TableView
+
+Row = tuple[str, str, str, float, str, str]  # key, label, unit, value, tooltip, group
+
+
+# ------------------------------------------------------------------ the pin
+def reading_view(state: BenchState) -> ReadingView:
+    """Return the table at the pin for A and B."""
+    values = {side: pin_rows(_medium(state, side), state.pin) for side in sides(state)}
+    a, b = values.get("A"), values.get("B")
+    first = a or b or ()
+    second = {row[1]: row[3] for row in b} if a and b else {}
+    rows = tuple(_reading_row(row, second.get(row[1])) for row in first)
+    missing = [side for side in sides(state) if state.specimen_of(side).density is None]
+    notice = "Waves want a density: enter it in the ledger." if missing else ""
+    return ReadingView(pin_words(state.pin), _near_words(state, "A"), _near_words(state, "B"),
+                       rows, bool(a and b), notice)
+
+
+def _medium(state: BenchState, side: str) -> Medium:
+    return live.part_medium(state.specimen_of(side), state.orientation_of(side))
+
+
+def pin_words(pin: Vector3) -> str:
+    """Return the polar angles of the pin in part axes."""
+    x, y, z = pin
+    theta = np.degrees(np.arctan2(np.hypot(x, y), z))
+    phi = np.degrees(np.arctan2(y, x)) if np.hypot(x, y) > 1e-12 else 0.0
+    return f"θ {theta:.1f}°  φ {phi:.1f}° in part axes".replace("-", "−")
+
+
+def _near_words(state: BenchState, side: str) -> str:
+    specimen = state.specimen_of(side)
+    vector = live.rotation(state.orientation_of(side), specimen).T @ np.array(state.pin)
+    return near_words(vector, specimen)
+
+
+def near_words(vector: np.ndarray, specimen: Specimen) -> str:
+    """Return "near [1 0 2], 1.3° off" for a vector in crystal axes."""
+    if not specimen.frame.has_basis:
+        return "x y z  " + "  ".join(significant(round(float(x), 4), 3) for x in vector)
+    direction = nearest_indices(vector, specimen.frame)
+    plane = nearest_indices(vector, specimen.frame, plane=True)
+    near = plane if plane.angle_deg < direction.angle_deg - 1e-6 else direction
+    text = near.text.replace("-", "−")
+    return f"along {text}" if near.angle_deg < 5e-3 else (
+        f"near {text}, {significant(near.angle_deg, 2)}° off")
+
+
+@lru_cache(maxsize=4)
+def pin_rows(medium: Medium, pin: Vector3) -> tuple[Row, ...]:
+    """Return every quantity at the pin: key, label, unit, value, tooltip, group."""
+    one = directions(np.array(pin).reshape(3, 1))
+    rows: list[Row] = []
+    for key, entry in QUANTITIES.items():
+        if entry.wave:
+            continue
+        value = float(entry.values(medium, one)[0, 0])
+        rows.append((key, _label(entry), entry.unit, value, entry.definition, "stiffness"))
+    if medium.density is not None:
+        rows += _wave_rows(medium, one)
+    return tuple(rows)
+
+
+def _label(entry: Quantity) -> str:
+    return entry.name[0].lower() + entry.name[1:] if not entry.name.startswith(
+        ("Young", "Poisson")) else entry.name
+
+
+_WAVE_KEYS = ("phase", "slowness", "wave", "power_flow", "polarisation", "focusing")
+_WAVE_LABELS = {"phase": "phase speed", "slowness": "slowness", "wave": "group speed",
+                "power_flow": "power flow off by", "polarisation": "polarisation off by",
+                "focusing": "focusing"}
+
+
+def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
+    """Return the waves at the pin, sheet by sheet."""
+    rows: list[Row] = []
+    values = {key: quantity(key).values(medium, one)[:, 0] for key in _WAVE_KEYS}
+    along = waves.longitudinality(medium, one)[:, 0]
+    impedance = waves.impedance(medium, one)[:, 0]
+    for sheet, name in enumerate(SHEET_NAMES):
+        group = f"{name} wave"
+        for key in _WAVE_KEYS:
+            entry = quantity(key)
+            rows.append((key, f"{name}: {_WAVE_LABELS[key]}", entry.unit,
+                         float(values[key][sheet]), entry.definition, group))
+        rows.append(("phase", f"{name}: how longitudinal", "", float(along[sheet]),
+                     "|p·n|: 1 for a purely longitudinal wave, 0 for a pure shear wave.", group))
+        rows.append(("phase", f"{name}: impedance", "MRayl", float(impedance[sheet]),
+                     "Z = ρ v, the acoustic impedance of a plane wave.", group))
+    splitting = float(waves.shear_splitting(medium, one)[0])
+    rows.append(("slowness", "shear splitting", "ns/mm", splitting,
+                 "Difference of travel time between the middle and the slowest wave.",
+                 "splitting"))
+    return rows
+
+
+def _reading_row(row: Row, other: float | None) -> ReadingRow:
+    key, label, unit, value, tooltip, group = row
+    second = "" if other is None else significant(other)
+    difference = None if other is None else other - value
+    return ReadingRow(
+        label, unit, significant(value), second,
+        "" if difference is None else signed(difference, 3),
+        (full_precision(value), full_precision(other), full_precision(difference)),
+        tooltip, key, group)
+
+
+# ------------------------------------------------------------------ extremes
+_EXTREMES = (
+    ("young", "E", "GPa"),
+    ("compressibility", "β", "1/TPa"),
+    ("shear", "G", "GPa"),
+    ("poisson", "ν", ""),
+    ("fast", "fastest wave", "km/s"),
+    ("middle", "middle wave", "km/s"),
+    ("slow", "slowest wave", "km/s"),
+)
+Extremes = dict[str, tuple[Extreme | None, Extreme | None]]
+
+
+def extremes_view(specimen: Specimen, turn: np.ndarray, found: Extremes | None,
+                  pending: bool) -> ExtremesView:
+    """Return the extremes over all directions.
+
+    Parameters
+    ----------
+    specimen : Specimen
+    turn : ndarray, shape (3, 3)
+        v_part = turn v_crystal, to say go-links in part axes.
+    found : dict or None
+        Crystal axes; None while nothing has been computed yet.
+    pending : bool
+        Whether a newer result is on its way.
+    """
+    rows = [] if found is None else [
+        _extreme_row(specimen, turn, f"{label} {word}", unit, pair[which])
+        for key, label, unit in _EXTREMES if (pair := found.get(key)) is not None
+        for which, word in ((0, "least"), (1, "greatest"))
+        if not (pair[0] is None and pair[1] is None)
+    ]
+    return ExtremesView("Extremes", tuple(rows), pending,
+                        "being found …" if found is None else "")
+
+
+def _extreme_row(specimen: Specimen, turn: np.ndarray, label: str, unit: str,
+                 extreme: Extreme | None) -> ExtremeRow:
+    name = f"{label}{', ' if unit else ''}{unit}"
+    if extreme is None:
+        return ExtremeRow(name, "–", "not defined", None,
+                          "Not defined: the table is unstable.", "")
+    crystal = np.array(extreme.direction)
+    place = {"all": "every direction", "ring": f"ring through {_place(crystal, specimen)}"}.get(
+        extreme.where, _place(crystal, specimen))
+    tooltip = f"{extreme.value!r} along {extreme.direction} in crystal axes"
+    if extreme.transverse is not None:
+        tooltip += f", transverse direction {extreme.transverse}"
+    x, y, z = (turn @ crystal).tolist()
+    return ExtremeRow(name, significant(extreme.value), place, (x, y, z), tooltip,
+                      full_precision(extreme.value))
+
+
+def _place(vector: np.ndarray, specimen: Specimen) -> str:
+    if not specimen.frame.has_basis:
+        return "  ".join(significant(round(float(x), 3), 2) for x in vector)
+    near = nearest_indices(vector, specimen.frame)
+    text = near.text.replace("-", "−")
+    return text if near.angle_deg < 0.05 else f"{text} {significant(near.angle_deg, 2)}° off"
+
+
+# ------------------------------------------------------------------ cutting error
+def cutting_error_view(state: BenchState) -> TableView:
+    """Return the least and the greatest of the shown quantity within the cone about the pin."""
+    rows, full = [], []
+    delta = state.cutting_error_deg
+    for side in sides(state):
+        medium = _medium(state, side)
+        for key in _cone_keys(state, medium):
+            entry = quantity(key)
+            for sheet, cone in enumerate(cone_extremes(medium, np.array(state.pin), delta, key)):
+                label = entry.symbol if entry.sheets == 1 else (
+                    f"{SHEET_NAMES[sheet]} {entry.symbol}")
+                rows.append((side, label, significant(cone.least), significant(cone.greatest),
+                             significant(abs(cone.slope), 3), entry.unit))
+                full.append((side, label, full_precision(cone.least),
+                             full_precision(cone.greatest), full_precision(cone.slope),
+                             entry.unit))
+    return TableView("Cutting error", ("", "", "least", "greatest", "per °", "unit"),
+                     tuple(rows), tuple(full),
+                     notice=f"within ±{delta:g}° of the pin")
+
+
+def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
+    """Return what a cutter asks about: E and the speeds, and whatever is on the stage."""
+    keys = ["young"] + (["phase"] if medium.density is not None else [])
+    shown = quantity(state.quantity)
+    if state.quantity not in (*keys, "slowness", "wave") and (
+            medium.density is not None or not shown.wave):
+        keys.insert(0, state.quantity)
+    return tuple(keys)
+
+
+# ------------------------------------------------------------------ aggregates and part
+def aggregate_view(specimen: Specimen) -> TableView:
+    """Return averages, bounds and indices of anisotropy."""
+    return _aggregate(specimen.stiffness, specimen.density,
+                      claimed_class(specimen).key == "cubic")
+
+
+@lru_cache(maxsize=8)
+def _aggregate(table: Any, density: float | None, cubic: bool) -> TableView:
+    stiffness = Stiffness.from_voigt(np.array(table))
+    means = averages(stiffness)
+    bounds = hashin_shtrikman(stiffness)
+    index = anisotropy(stiffness, cubic)
+    numbers: list[tuple[str, tuple[float | None, ...]]] = [
+        (name, (mean.bulk, mean.shear, mean.young, mean.poisson))
+        for name, mean in (("Voigt", means.voigt), ("Hill", means.hill), ("Reuss", means.reuss))]
+    numbers.append(("Hashin–Shtrikman, upper", (bounds.bulk_high, bounds.shear_high)))
+    numbers.append(("Hashin–Shtrikman, lower", (bounds.bulk_low, bounds.shear_low)))
+    numbers.append(("universal anisotropy", (index.universal,)))
+    numbers.append(("log-Euclidean anisotropy", (index.log_euclidean,)))
+    numbers.append(("percent anisotropy of K, G", (index.percent_bulk, index.percent_shear)))
+    if index.zener is not None:
+        numbers.append(("Zener ratio", (index.zener,)))
+    if density is not None:
+        debye = debye_speed(Medium(stiffness, density))
+        numbers.append(("Debye speed, km/s", (debye.speed,)))
+    rows = tuple((label, *(significant(x) for x in values), *[""] * (4 - len(values)))
+                 for label, values in numbers)
+    full = tuple((label, *(full_precision(x) for x in values), *[""] * (4 - len(values)))
+                 for label, values in numbers)
+    return TableView("Aggregate", ("", "K GPa", "G GPa", "E GPa", "ν"), rows, full,
+                     _AGGREGATE_TIPS)
+
+
+_AGGREGATE_TIPS = (
+    "Uniform strain: the upper bound.",
+    "The mean of Voigt and Reuss (Hill 1952).",
+    "Uniform stress: the lower bound.",
+    "Closest upper bound on a random polycrystal without texture.",
+    "Closest lower bound on a random polycrystal without texture.",
+    "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic.",
+    "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic.",
+    "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967).",
+)
+
+
+def part_view(state: BenchState) -> TableView:
+    """Return E, ν, G, coupling, speeds and power flow along the part axes for A and B."""
+    tables = {side: _part(_medium(state, side)) for side in sides(state)}
+    first = tables.get("A") or tables["B"]
+    second = {row.key: row.value for row in tables["B"]} if len(tables) == 2 else {}
+    header = ("", "A", "B", "B − A") if second else ("", sides(state)[0])
+    rows = tuple(_part_row(row, second, significant, lambda x: signed(x, 3)) for row in first)
+    full = tuple(_part_row(row, second, full_precision, full_precision) for row in first)
+    return TableView("Part", header, rows, full)
+
+
+@lru_cache(maxsize=4)
+def _part(medium: Medium) -> tuple[PartRow, ...]:
+    return part_table(medium)
+
+
+def _part_row(row: PartRow, second: dict[str, float], text: Any,
+              difference_text: Any) -> tuple[str, ...]:
+    label = f"{row.label}{', ' if row.unit else ''}{row.unit}"
+    if not second:
+        return label, text(row.value)
+    other = second.get(row.key, float("nan"))
+    return label, text(row.value), text(other), difference_text(other - row.value)

@@ -1,0 +1,293 @@
+"""View data of the stage: the tool bar above it and the two panes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from core import live
+from core.arrays import Float32Array, FloatArray
+from core.crystal.cell import axes_matrix
+from core.directional.acoustic_axes import AcousticAxis, acoustic_axes
+from core.directional.medium import Medium
+from core.directional.quantities import QUANTITIES, Quantity, quantity
+from core.directional.sphere import sphere_mesh
+from core.directional.waves import longitudinality, modes
+from core.numbers import significant
+from core.state import BenchState, Vector3
+from gui.plots.grid import nice_ticks, tick_texts
+from gui.viewdata import (
+    DirectionMark,
+    PaneView,
+    ScaleView,
+    SheetView,
+    ToolbarView,
+    Triad,
+)
+
+PLANES: dict[str, Vector3] = {"XY": (0.0, 0.0, 1.0), "XZ": (0.0, 1.0, 0.0),
+                              "YZ": (1.0, 0.0, 0.0)}
+COLOURS = {
+    "value": "the value",
+    "longitudinality": "how longitudinal",
+    "power_flow": "power-flow angle",
+    "focusing": "focusing",
+}
+SHEET_NAMES = ("fastest", "middle", "slowest")
+NO_DENSITY = "Waves want a density. Enter it in the ledger; the stiffness side works without."
+_TICK_LEVEL = 2  # 162 vertices: enough ticks to read, few enough to see the sheet
+_FOCUSING_RANGE = (0.05, 20.0)  # focusing is infinite on caustics: colours stop here
+
+
+def toolbar_view(state: BenchState, linked: bool) -> ToolbarView:
+    """Return the controls above the stage."""
+    shown = quantity(state.quantity)
+    known = has_density(state)
+    display = state.display
+    return ToolbarView(
+        quantity=state.quantity,
+        quantities=tuple((key, entry.name, f"{entry.definition} ({entry.unit or 'no unit'})")
+                         for key, entry in QUANTITIES.items()),
+        enabled=tuple(key for key, entry in QUANTITIES.items() if known or not entry.wave),
+        layout=display.layout,
+        sheets=display.sheets if shown.sheets == 3 else None,
+        colour_by=display.colour_by if shown.sheets == 3 else "value",
+        colours=tuple(COLOURS.items()) if shown.sheets == 3 else (),
+        plane=plane_key(state.section),
+        planes=plane_choices(state),
+        shared_scale=display.shared_scale, linked_cameras=linked, cut_away=display.cut_away,
+        crystal_axes=display.crystal_axes, marks=display.marks, ticks=display.ticks)
+
+
+def has_density(state: BenchState) -> bool:
+    """Return whether every crystal on the stage has a density."""
+    return all(state.specimen_of(side).density is not None for side in sides(state))
+
+
+def sides(state: BenchState) -> tuple[str, ...]:
+    """Return the sides that the stage shows."""
+    return tuple(state.display.layout)
+
+
+def plane_key(normal: Vector3) -> str:
+    """Return "XY", "XZ", "YZ" or "other"."""
+    for key, axis in PLANES.items():
+        if abs(np.dot(axis, normal)) > 1 - 1e-12:
+            return key
+    return "other"
+
+
+def plane_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
+    """Return the section planes to choose from, the present one among them."""
+    choices = [(key, f"part {key}") for key in PLANES]
+    choices.append(("pin", "through X and the pin"))
+    if plane_key(state.section) == "other":
+        words = "  ".join(significant(round(x, 3), 3) for x in state.section)
+        choices.append(("other", f"normal {words}"))
+    return tuple(choices)
+
+
+# ------------------------------------------------------------------ panes
+@dataclass(frozen=True, eq=False)
+class Drawn:
+    """The surfaces of one side, before scale and colours are settled between the sides."""
+
+    side: str
+    rows: Float32Array
+    medium: Medium
+
+
+def pane_views(state: BenchState, fine: bool) -> dict[str, PaneView]:
+    """Return the panes that the stage shows."""
+    shown = quantity(state.quantity)
+    level = live.FINE_LEVEL if fine else live.COARSE_LEVEL
+    drawn = {}
+    for side in sides(state):
+        if shown.wave and state.specimen_of(side).density is None:
+            continue
+        medium = live.part_medium(state.specimen_of(side), state.orientation_of(side))
+        drawn[side] = Drawn(side, coloured_rows(medium, state, level), medium)
+    groups = [tuple(drawn)] if state.display.shared_scale else [(side,) for side in drawn]
+    views = {}
+    for group in groups:
+        radius, scale = _settle([drawn[side] for side in group], state, shown)
+        for side in group:
+            views[side] = _pane(state, shown, drawn[side], radius, scale, level)
+    return {side: views.get(side) or _empty_pane(state, side, shown) for side in sides(state)}
+
+
+def coloured_rows(medium: Medium, state: BenchState, level: int) -> Float32Array:
+    """Return the surface rows with the values that the colours follow in the last row."""
+    rows = live.surface(medium, state.quantity, level)
+    colour = state.display.colour_by
+    if colour == "value" or len(rows) == 1 or colour == state.quantity:
+        return rows
+    return _recoloured(medium, state.quantity, colour, level)
+
+
+@lru_cache(maxsize=4)
+def _recoloured(medium: Medium, key: str, colour: str, level: int) -> Float32Array:
+    rows = live.surface(medium, key, level).copy()
+    half = sphere_mesh(level).half
+    values = (longitudinality(medium, half) if colour == "longitudinality"
+              else quantity(colour).values(medium, half))
+    rows[:, 6, :] = np.concatenate([values, values], axis=1)
+    return rows
+
+
+def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[float, ScaleView]:
+    """Return the length that fills a pane and the colour scale, shared by a group of sides."""
+    seen = [sheet for one in group for sheet in _visible(one.rows, state)]
+    if not seen:
+        seen = [sheet for one in group for sheet in one.rows]
+    # Squares summed by planes: a (3, N) temporary would cost as much as the surface.
+    radius = max((float(np.sqrt(np.nanmax(_squared_length(sheet), initial=0.0)))
+                  for sheet in seen), default=1.0)
+    values = [sheet[6] for sheet in seen]
+    low = min((float(np.nanmin(v, initial=np.inf)) for v in values), default=0.0)
+    high = max((float(np.nanmax(v, initial=-np.inf)) for v in values), default=1.0)
+    return radius or 1.0, scale_view(_colour_quantity(state, shown), low, high)
+
+
+def _squared_length(sheet: Float32Array) -> Float32Array:
+    x, y, z = sheet[:3]
+    return x * x + y * y + z * z
+
+
+def _visible(rows: Float32Array, state: BenchState) -> list[Float32Array]:
+    if len(rows) == 1:
+        return [rows[0]]
+    return [sheet for sheet, on in zip(rows, state.display.sheets, strict=True) if on]
+
+
+@dataclass(frozen=True)
+class ColourOf:
+    """What a colour scale is about."""
+
+    title: str
+    diverging: bool = False
+    logarithmic: bool = False
+
+
+def quantity_title(shown: Quantity) -> str:
+    """Return "Young's modulus E, GPa"."""
+    unit = f", {shown.unit}" if shown.unit else ""
+    return f"{shown.name} {shown.symbol}{unit}"
+
+
+def _colour_quantity(state: BenchState, shown: Quantity) -> ColourOf:
+    colour = state.display.colour_by
+    if shown.sheets == 3 and colour == "longitudinality":
+        return ColourOf("how longitudinal, |p·n|")
+    if shown.sheets == 3 and colour != "value":
+        shown = quantity(colour)
+    return ColourOf(quantity_title(shown), shown.signed, shown.logarithmic)
+
+
+def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
+    """Return the colour scale over a range of values."""
+    if not (np.isfinite(low) and np.isfinite(high)):
+        low, high = 0.0, 1.0
+    if about.logarithmic:
+        low, high = max(low, _FOCUSING_RANGE[0]), min(high, _FOCUSING_RANGE[1])
+        ticks = tuple(x for x in (0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0) if low < x < high)
+        texts = tuple(f"{x:g}" for x in ticks)
+    else:
+        ticks = nice_ticks(low, high, 5)
+        texts = tick_texts(ticks)
+    return ScaleView(low, high, significant(low), significant(high), about.title,
+                     about.diverging and low < 0, tuple(zip(ticks, texts, strict=True)),
+                     about.logarithmic)
+
+
+def _pane(state: BenchState, shown: Quantity, drawn: Drawn, radius: float, scale: ScaleView,
+          level: int) -> PaneView:
+    triangles = sphere_mesh(level).triangles
+    on = state.display.sheets if shown.sheets == 3 else (True,)
+    sheets = tuple(SheetView(rows, triangles, visible)
+                   for rows, visible in zip(drawn.rows, on, strict=True))
+    missing = bool(np.isnan(drawn.rows[:, 0]).any())
+    return PaneView(
+        side=drawn.side, title=pane_title(state, drawn.side), sheets=sheets, radius=radius,
+        scale=scale, triads=_triads(state, drawn.side), marks=_marks(state, shown, drawn),
+        section=state.section, cut_away=state.display.cut_away,
+        ticks=_polarisation_ticks(state, shown, drawn, radius),
+        notice="Left out where it is not defined: the table is unstable." if missing else "",
+        is_wave_surface=shown.shape == "wave")
+
+
+def _empty_pane(state: BenchState, side: str, shown: Quantity) -> PaneView:
+    scale = ScaleView(0.0, 1.0, "", "", quantity_title(shown), False)
+    return PaneView(side=side, title=pane_title(state, side), sheets=(), radius=1.0,
+                    scale=scale, triads=_triads(state, side), marks=(), section=None,
+                    notice=NO_DENSITY)
+
+
+def pane_title(state: BenchState, side: str) -> str:
+    """Return the crystal and the orientation of a side in one line."""
+    choice = state.orientation_of(side)
+    words = choice.text if choice.text != "identity" else "part axes = crystal axes"
+    if any(choice.turn):
+        words += ", turned " + " ".join(f"{x:g}°" for x in choice.turn)
+    name = state.specimen_of(side).name
+    return f"{name} · {words}".replace("-", "−") if state.other is not None else (
+        words.replace("-", "−"))
+
+
+def _triads(state: BenchState, side: str) -> tuple[Triad, ...]:
+    part = Triad(((1.0, 0.0, 0.0), (0.0, 1.0, 0.0), (0.0, 0.0, 1.0)), ("X", "Y", "Z"), "part")
+    specimen = state.specimen_of(side)
+    if not state.display.crystal_axes:
+        return (part,)
+    turn = live.rotation(state.orientation_of(side), specimen)
+    if specimen.cell is None:
+        axes, labels = np.eye(3), ("x", "y", "z")
+    else:
+        axes, labels = axes_matrix(specimen.cell, specimen.crystal_axes), ("a", "b", "c")
+    vectors = turn @ (axes / np.linalg.norm(axes, axis=0))
+    a, b, c = (unit_vector(vectors[:, k]) for k in range(3))
+    return part, Triad((a, b, c), labels, "crystal")
+
+
+def unit_vector(vector: FloatArray) -> Vector3:
+    """Return a vector's direction as a tuple."""
+    x, y, z = (vector / np.linalg.norm(vector)).tolist()
+    return x, y, z
+
+
+def _marks(state: BenchState, shown: Quantity, drawn: Drawn) -> tuple[DirectionMark, ...]:
+    marks = [DirectionMark(state.pin, "", "pin")]
+    if shown.wave and state.display.marks:
+        marks += [DirectionMark(axis.direction, "", "axis") for axis in point_axes(drawn.medium)]
+    return tuple(marks)
+
+
+@lru_cache(maxsize=4)
+def point_axes(medium: Medium) -> tuple[AcousticAxis, ...]:
+    """Return the acoustic axes of a medium that are single directions, part axes."""
+    return tuple(axis for axis in acoustic_axes(medium)
+                 if axis.kind in ("conical", "tangential"))
+
+
+def _polarisation_ticks(state: BenchState, shown: Quantity, drawn: Drawn,
+                        radius: float) -> FloatArray | None:
+    """Return short lines along the polarisation on every visible sheet, (M, 2, 3)."""
+    if not state.display.ticks or shown.sheets == 1:
+        return None
+    mesh = sphere_mesh(_TICK_LEVEL)
+    polarisation = modes(drawn.medium, mesh.half).polarisation
+    rows = live.surface(drawn.medium, state.quantity, _TICK_LEVEL)
+    lines = []
+    for sheet, visible in enumerate(state.display.sheets):
+        if not visible:
+            continue
+        points = rows[sheet, :3].T.astype(np.float64)
+        both = np.concatenate([polarisation[sheet], polarisation[sheet]], axis=1).T
+        lines.append(np.stack([points - 0.045 * radius * both, points + 0.045 * radius * both],
+                              axis=1))
+    if not lines:
+        return None
+    ticks = np.concatenate(lines)
+    return ticks[np.isfinite(ticks).all(axis=(1, 2))]

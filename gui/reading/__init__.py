@@ -1,0 +1,1 @@
+"""The numbers at the pin, extremes, cutting error and aggregates."""

@@ -1,0 +1,1 @@
+"""The two three-dimensional panes."""

@@ -1,0 +1,11 @@
+"""The OpenGL bindings, set up once: every other file takes `GL` from here."""
+
+import OpenGL
+
+# Asking for errors after each call costs more than the calls; the tests ask once per picture.
+OpenGL.ERROR_CHECKING = False
+OpenGL.ERROR_LOGGING = False
+
+from OpenGL import GL  # noqa: E402 - the two switches only count before this import
+
+__all__ = ["GL"]

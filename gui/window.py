@@ -1,0 +1,304 @@
+"""The window: it places the widgets and nothing more. What they show comes from the presenter."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+from PySide6.QtCore import QSettings, Qt, Signal
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
+from PySide6.QtWidgets import (
+    QFrame,
+    QHBoxLayout,
+    QLabel,
+    QMainWindow,
+    QProgressBar,
+    QPushButton,
+    QScrollArea,
+    QSizePolicy,
+    QSplitter,
+    QVBoxLayout,
+    QWidget,
+)
+
+from gui.deck import Deck
+from gui.ledger.cell_form import CellForm
+from gui.ledger.constants_grid import ConstantsGrid
+from gui.ledger.orientation_form import OrientationButtons, OrientationForm
+from gui.ledger.specimen_form import SpecimenForm
+from gui.ledger.strain_spectrum import StrainSpectrum
+from gui.panel import Section
+from gui.plots.section import SectionPlot
+from gui.reading.cutting_error import CuttingErrorPanel
+from gui.reading.extremes_table import ExtremesTable
+from gui.reading.pin_table import PinTable
+from gui.reading.small_table import SmallTable
+from gui.stage.camera import Camera
+from gui.stage.pane import StagePane
+from gui.stage.renderer import Renderer
+from gui.theme import Theme
+from gui.toolbar import StageToolbar
+from gui.verdict_band import VerdictBand
+
+LEDGER_WIDTH = 366
+READING_WIDTH = 336
+_LAYOUT_VERSION = 2  # a layout saved by an older arrangement is not restored
+
+
+@dataclass(frozen=True, eq=False)
+class Views:
+    """Every widget that shows something, for the presenter."""
+
+    verdict: VerdictBand
+    specimen: SpecimenForm
+    constants: ConstantsGrid
+    spectrum: StrainSpectrum
+    cell: CellForm
+    orientations: dict[str, OrientationForm]
+    orientation_buttons: OrientationButtons
+    toolbar: StageToolbar
+    panes: dict[str, StagePane]
+    section: SectionPlot
+    deck: Deck
+    pin: PinTable
+    extremes: ExtremesTable
+    cutting_error: CuttingErrorPanel
+    aggregate: SmallTable
+    part: SmallTable
+
+    def painted(self) -> tuple[QWidget, ...]:
+        """Every view that paints itself and wants the theme."""
+        return (self.verdict, self.spectrum, *self.panes.values(), self.section, self.deck)
+
+
+def build_views(renderer: Renderer) -> Views:
+    """Return all widgets of the bench, not yet placed."""
+    camera = Camera()
+    return Views(
+        verdict=VerdictBand(), specimen=SpecimenForm(), constants=ConstantsGrid(),
+        spectrum=StrainSpectrum(), cell=CellForm(),
+        orientations={side: OrientationForm(side) for side in "AB"},
+        orientation_buttons=OrientationButtons(), toolbar=StageToolbar(),
+        panes={side: StagePane(side, renderer, camera) for side in "AB"},
+        section=SectionPlot(), deck=Deck(), pin=PinTable(), extremes=ExtremesTable(),
+        cutting_error=CuttingErrorPanel(), aggregate=SmallTable(), part=SmallTable())
+
+
+class Window(QMainWindow):
+    """The main window.
+
+    Signals
+    -------
+    files_dropped(list of str)
+    close_asked(QCloseEvent)
+        To be accepted or ignored by whoever knows whether there is unsaved work.
+    cancel_asked()
+    """
+
+    files_dropped = Signal(list)
+    close_asked = Signal(object)
+    cancel_asked = Signal()
+
+    def __init__(self, views: Views) -> None:
+        super().__init__()
+        self.views = views
+        self.setAcceptDrops(True)
+        self.setMinimumSize(1120, 680)
+        self.resize(1440, 900)
+        self._columns = QSplitter(Qt.Orientation.Horizontal)
+        self._centre = QSplitter(Qt.Orientation.Vertical)
+        self._stage = QSplitter(Qt.Orientation.Horizontal)
+        self._plots = QSplitter(Qt.Orientation.Horizontal)
+        self.ledger_panel = _side_panel(_ledger(views), LEDGER_WIDTH, "Ledger")
+        self.reading_panel = _side_panel(_reading(views), READING_WIDTH, "Reading")
+        self._place()
+        self._message = QLabel()
+        self._note = QLabel()
+        self._progress = QProgressBar()
+        self._cancel = QPushButton("Cancel")
+        self._fill_status_line()
+
+    def _place(self) -> None:
+        for side in "AB":
+            self._stage.addWidget(_framed(self.views.panes[side]))
+        self._plots.addWidget(_framed(self.views.section))
+        self._plots.addWidget(_framed(self.views.deck))
+        for splitter in (self._stage, self._plots):
+            splitter.setSizes([500, 500])
+            splitter.setChildrenCollapsible(False)
+            splitter.setHandleWidth(6)
+        self._centre.addWidget(self._stage)
+        self._centre.addWidget(self._plots)
+        self._centre.setSizes([470, 330])
+        self._centre.setChildrenCollapsible(False)
+        self._centre.setHandleWidth(6)
+        middle = QWidget()
+        column = QVBoxLayout(middle)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(6)
+        column.addWidget(_framed(self.views.toolbar))
+        column.addWidget(self._centre, 1)
+        for part in (self.ledger_panel, middle, self.reading_panel):
+            self._columns.addWidget(part)
+        self._columns.setSizes([LEDGER_WIDTH, 700, READING_WIDTH])
+        self._columns.setStretchFactor(1, 1)
+        self._columns.setCollapsible(1, False)
+        self._columns.setHandleWidth(6)
+        whole = QWidget()
+        rows = QVBoxLayout(whole)
+        rows.setContentsMargins(0, 0, 0, 0)
+        rows.setSpacing(0)
+        rows.addWidget(self.views.verdict)
+        body = QHBoxLayout()
+        body.setContentsMargins(6, 6, 6, 0)
+        body.addWidget(self._columns)
+        rows.addLayout(body, 1)
+        self.setCentralWidget(whole)
+
+    def _fill_status_line(self) -> None:
+        line = self.statusBar()
+        line.setSizeGripEnabled(False)
+        self._message.setAccessibleName("Message")
+        self._message.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self._progress.setRange(0, 100)
+        self._progress.setFixedWidth(220)
+        self._progress.setAccessibleName("Progress")
+        self._cancel.setToolTip("Stop the running computation; the last results stay")
+        self._cancel.clicked.connect(self.cancel_asked)
+        line.addWidget(self._message, 1)
+        for widget in (self._progress, self._cancel, self._note):
+            line.addPermanentWidget(widget)
+        self.hide_progress()
+
+    # -------------------------------------------------------------- what others may ask
+    def show_panes(self, layout: str) -> None:
+        """Show pane A, pane B or both."""
+        for side, pane in self.views.panes.items():
+            pane.parentWidget().setVisible(side in layout)
+
+    def show_message(self, text: str, is_error: bool = False) -> None:
+        """Say one sentence in the status line."""
+        self._message.setProperty("role", "error" if is_error else "secondary")
+        self._message.style().unpolish(self._message)
+        self._message.style().polish(self._message)
+        self._message.setText(text)
+        self._message.setToolTip(text)
+
+    def show_note(self, text: str) -> None:
+        """Show a quiet lasting note at the right end of the status line."""
+        self._note.setText(text)
+        self._note.setProperty("role", "secondary")
+
+    def show_progress(self, words: str, fraction: float) -> None:
+        """Show how far a long computation has come, with Cancel."""
+        self._progress.setFormat(f"{words}  %p %")
+        self._progress.setValue(round(100 * fraction))
+        self._progress.show()
+        self._cancel.show()
+
+    def hide_progress(self) -> None:
+        """Take the progress away."""
+        self._progress.hide()
+        self._cancel.hide()
+
+    def set_theme(self, theme: Theme) -> None:
+        """Give every view that paints itself the theme."""
+        for view in self.views.painted():
+            view.set_theme(theme)  # type: ignore[attr-defined]
+
+    def save_layout(self, settings: QSettings) -> None:
+        """Remember sizes and places."""
+        settings.setValue("layout/version", _LAYOUT_VERSION)
+        settings.setValue("layout/window", self.saveGeometry())
+        for name, splitter in self._splitters():
+            settings.setValue(f"layout/{name}", splitter.saveState())
+
+    def restore_layout(self, settings: QSettings) -> None:
+        """Bring back sizes and places, if they were saved by this arrangement."""
+        if int(str(settings.value("layout/version", 0))) != _LAYOUT_VERSION:
+            return
+        self.restoreGeometry(settings.value("layout/window"))
+        for name, splitter in self._splitters():
+            splitter.restoreState(settings.value(f"layout/{name}"))
+
+    def _splitters(self) -> tuple[tuple[str, QSplitter], ...]:
+        return (("columns", self._columns), ("centre", self._centre),
+                ("stage", self._stage), ("plots", self._plots))
+
+    # -------------------------------------------------------------- events
+    def closeEvent(self, event: QCloseEvent) -> None:
+        """Ask before unsaved work is lost."""
+        self.close_asked.emit(event)
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:
+        """Take files."""
+        if event.mimeData().hasUrls():
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:
+        """Hand over the dropped files."""
+        paths = [url.toLocalFile() for url in event.mimeData().urls() if url.isLocalFile()]
+        if paths:
+            event.acceptProposedAction()
+            self.files_dropped.emit([str(Path(path)) for path in paths])
+
+
+def _framed(widget: QWidget) -> QFrame:
+    frame = QFrame()
+    frame.setProperty("role", "panel")
+    box = QVBoxLayout(frame)
+    box.setContentsMargins(1, 1, 1, 1)
+    box.addWidget(widget)
+    return frame
+
+
+def _side_panel(content: QWidget, width: int, name: str) -> QFrame:
+    area = QScrollArea()
+    area.setWidgetResizable(True)
+    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+    area.setAccessibleName(name)
+    area.setWidget(content)
+    frame = _framed(area)
+    frame.setMinimumWidth(width - 26)
+    return frame
+
+
+def _column(*parts: QWidget) -> QWidget:
+    content = QWidget()
+    column = QVBoxLayout(content)
+    column.setContentsMargins(11, 8, 11, 8)
+    column.setSpacing(2)
+    for part in parts:
+        column.addWidget(part)
+    column.addStretch(1)
+    return content
+
+
+def _stacked(*parts: QWidget) -> QWidget:
+    box = QWidget()
+    column = QVBoxLayout(box)
+    column.setContentsMargins(0, 0, 0, 0)
+    column.setSpacing(7)
+    for part in parts:
+        column.addWidget(part)
+    return box
+
+
+def _ledger(views: Views) -> QWidget:
+    return _column(
+        Section("Ledger", views.specimen, ruled=False),
+        Section("Constants", views.constants),
+        Section("Strain spectrum", views.spectrum, "eigenstiffness, GPa (Kelvin)"),
+        Section("Orientations of the part", _stacked(
+            views.orientations["A"], views.orientations["B"], views.orientation_buttons)),
+        Section("Unit cell and crystal axes", views.cell))
+
+
+def _reading(views: Views) -> QWidget:
+    return _column(
+        Section("Reading", views.pin, ruled=False),
+        Section("Extremes", views.extremes),
+        Section("Cutting error", views.cutting_error),
+        Section("Aggregate", views.aggregate, "random polycrystal"),
+        Section("Part", views.part, "along X, Y, Z", is_open=False))
