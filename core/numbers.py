@@ -8,17 +8,22 @@ import re
 from core.errors import InputError
 
 MINUS = "\N{MINUS SIGN}"
+UNDEFINED = "\N{EN DASH}"
 _MINUSES = str.maketrans({MINUS: "-", "\N{EN DASH}": "-", "\N{NON-BREAKING HYPHEN}": "-"})
-_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eEdD][+-]?\d+)?")
-_GROUPED = re.compile(r"[+-]?[1-9]\d{0,2}(,\d{3})+(\.\d*)?")
-_DECIMAL_COMMA = re.compile(r"[+-]?\d*,\d+([eEdD][+-]?\d+)?")
+_EXPONENT = r"([eEdD][+-]?\d+)?"
+_NUMBER = re.compile(rf"[+-]?(\d+\.?\d*|\.\d+){_EXPONENT}")
+_GROUPED = re.compile(rf"[+-]?[1-9]\d{{0,2}}(,\d{{3}})+(\.\d*)?{_EXPONENT}")
+_DECIMAL_COMMA = re.compile(rf"[+-]?\d*,\d+{_EXPONENT}")
+_RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
+
+_LEAST_PLAIN, _MOST_PLAIN = -4, 5  # powers of ten written out; beyond them ×10ⁿ
 
 
 def parse_number(text: str, where: str = "") -> float:
     """Return the number that a field or a table cell holds.
 
-    A Unicode minus, a Fortran exponent (1.5D+02) and spaces inside a number grouped by
-    threes are understood. A decimal comma is read only where no thousands reading is possible.
+    A Unicode minus and a Fortran exponent (1.5D+02) are understood. A decimal comma is read
+    only where no thousands reading is possible: "168,4" is a number, "1,684" is not.
 
     Raises
     ------
@@ -41,7 +46,7 @@ def parse_number(text: str, where: str = "") -> float:
 def _without_comma(plain: str, where: str) -> str:
     if _GROUPED.fullmatch(plain):
         raise InputError(
-            f"“{plain}” may mean thousands or a decimal comma.",
+            f"“{shortened(plain)}” may mean thousands or a decimal comma.",
             "Write it with a decimal point and without grouping.",
             where,
         )
@@ -59,19 +64,19 @@ def shortened(text: str, length: int = 24) -> str:
 def significant(value: float | None, digits: int = 4) -> str:
     """Return a number for the screen with `digits` significant digits and a true minus.
 
-    Large and small magnitudes go to powers of ten; undefined values are an en dash.
+    Magnitudes from a million up and below 0.0001 go to powers of ten; undefined values are
+    an en dash.
     """
     if value is None or not math.isfinite(value):
-        return "\N{EN DASH}"
+        return UNDEFINED
     if value == 0.0:
         return "0"
-    rounded = float(f"{value:.{digits - 1}e}")
-    exponent = math.floor(math.log10(abs(rounded)))
-    if exponent >= 6 or exponent < -4:
-        mantissa, power = f"{rounded:.{digits - 1}e}".split("e")
-        return f"{mantissa}×10^{int(power)}".replace("-", MINUS)
+    mantissa, power = f"{value:.{digits - 1}e}".split("e")
+    exponent = int(power)  # of the rounded value: 999.96 is 1000
+    if not _LEAST_PLAIN <= exponent <= _MOST_PLAIN:
+        return f"{mantissa}×10".replace("-", MINUS) + str(exponent).translate(_RAISED)
     decimals = max(digits - 1 - exponent, 0)
-    return f"{rounded:.{decimals}f}".replace("-", MINUS)
+    return f"{float(f'{mantissa}e{power}'):.{decimals}f}".replace("-", MINUS)
 
 
 def signed(value: float | None, digits: int = 4) -> str:
@@ -81,5 +86,8 @@ def signed(value: float | None, digits: int = 4) -> str:
 
 
 def full_precision(value: float | None) -> str:
-    """Return the shortest text that reads back to the same float, for files and copying."""
+    """Return the shortest text that reads back to the same float, for files and copying.
+
+    Undefined values are empty.
+    """
     return "" if value is None or not math.isfinite(value) else repr(float(value))

@@ -6,13 +6,17 @@ numbers and strings only; arrays are made from it where they are needed and neve
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, is_dataclass
 from typing import Any, Literal
 
 import numpy as np
+import numpy.typing as npt
 
 from core.arrays import FloatArray
 from core.crystal.cell import DEFAULT_AXES, CrystalFrame, UnitCell
+from core.crystal.orientation import parse_orientation, turned
+from core.tensor.stiffness import Stiffness
+from core.tensor.symmetry import CrystalClass, crystal_class
 
 Vector3 = tuple[float, float, float]
 Matrix = tuple[tuple[float, ...], ...]
@@ -157,6 +161,8 @@ class BenchState:
     cutting_error_deg : float
         Half-angle of the cone of misorientation.
     display : Display
+    unknown : str
+        Keys of the file that this version does not know, as JSON text, kept on saving.
     """
 
     specimen: Specimen
@@ -168,6 +174,7 @@ class BenchState:
     quantity: str = "young"
     cutting_error_deg: float = 0.5
     display: Display = Display()
+    unknown: str = "{}"
 
     def specimen_of(self, side: str) -> Specimen:
         """The crystal shown on a side, "A" or "B"."""
@@ -178,20 +185,47 @@ class BenchState:
         return self.orientation_a if side == "A" else self.orientation_b
 
 
-def as_matrix(array: FloatArray) -> Matrix:
+# --- what a state means to the kernels ------------------------------------------------------
+
+
+def claimed_class(specimen: Specimen) -> CrystalClass:
+    """Return the crystal class that a specimen claims."""
+    return crystal_class(specimen.crystal_class, specimen.unique_axis)
+
+
+def stiffness_of(specimen: Specimen) -> Stiffness:
+    """Return the stiffness of a specimen, GPa, crystal axes."""
+    return Stiffness.from_voigt(specimen.stiffness)
+
+
+def rotation_of(choice: OrientationChoice, specimen: Specimen) -> FloatArray:
+    """Return R, shape (3, 3), v_part = R v_crystal, of an orientation said for a specimen.
+
+    Raises
+    ------
+    InputError
+        When the text is no orientation, or needs a cell that the specimen has not.
+    """
+    return turned(parse_orientation(choice.text, specimen.frame).rotation, choice.turn)
+
+
+# --- between arrays and states --------------------------------------------------------------
+
+
+def as_matrix(array: npt.ArrayLike) -> Matrix:
     """Return a two-dimensional array as a tuple of tuples of floats."""
     return tuple(tuple(float(x) for x in row) for row in np.asarray(array, dtype=float))
 
 
-def as_vector(array: FloatArray) -> Vector3:
+def as_vector(array: npt.ArrayLike) -> Vector3:
     """Return a three-component array as a tuple of floats."""
-    x, y, z = (float(component) for component in array)
+    x, y, z = (float(component) for component in np.asarray(array, dtype=float))
     return x, y, z
 
 
 def to_plain(value: Any) -> Any:
-    """Return a state, or a part of one, as dicts, lists, numbers and strings for JSON."""
-    if isinstance(value, (Specimen, OrientationChoice, Display, BenchState, UnitCell)):
+    """Return a part of a state as dicts, lists, numbers and strings for JSON."""
+    if is_dataclass(value):
         return {field.name: to_plain(getattr(value, field.name)) for field in fields(value)}
     if isinstance(value, tuple):
         return [to_plain(item) for item in value]

@@ -68,6 +68,8 @@ class Application:
 
     def close(self) -> None:
         """Stop timers and workers and give back what the drawing holds."""
+        # The stack tells of its own end, when the window it would tell is gone.
+        self.bench.history.blockSignals(True)
         self.pace.stop()
         self.scheduler.close()
         self.help.close()

@@ -9,6 +9,8 @@ from PySide6.QtCore import QObject, Slot
 from gui.stage.camera import Camera
 from gui.stage.pane import StagePane
 
+_AXES = {"X": (1.0, 0.0, 0.0), "Y": (0.0, 1.0, 0.0), "Z": (0.0, 0.0, 1.0)}
+
 
 class Cameras(QObject):
     """Keeps the panes' cameras in step."""
@@ -23,7 +25,7 @@ class Cameras(QObject):
     @Slot(str)
     def look_from(self, axis: str) -> None:
         """Look along part X, Y or Z, or from the first view ("home"), in both panes."""
-        camera = Camera() if axis == "home" else Camera().looking_along(axis)
+        camera = Camera() if axis == "home" else Camera().looking_along(_AXES[axis])
         for pane in self._panes.values():
             pane.set_camera(camera)
 

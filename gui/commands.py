@@ -61,13 +61,13 @@ class Commands:
             Entry("&Undo", history.undo, "Ctrl+Z", "Take the last change back"),
             Entry("&Redo", history.redo, "Ctrl+Shift+Z", "Make it again"),
             LINE,
-            Entry("Copy the &matrix", views.constants.copy_matrix, "Ctrl+M",
+            Entry("Copy the &matrix", views.constants.table.copy_matrix, "Ctrl+M",
                   "Copy the shown face of the 6×6, tab-separated, at full precision"),
-            Entry("Copy the r&eading", views.pin.copy_table, "Ctrl+R",
+            Entry("Copy the r&eading", views.pin.table.copy_table, "Ctrl+R",
                   "Copy the table at the pin"),
             Entry("Copy stage &picture", self.copy_picture, "Ctrl+Shift+C",
                   "Copy what the stage shows"),
-            Entry("&Paste constants", views.constants.paste, "Ctrl+Shift+V",
+            Entry("&Paste constants", views.constants.table.paste, "Ctrl+Shift+V",
                   "Put a pasted 6×6, triangle or list into the grid"),
         )
 

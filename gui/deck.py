@@ -2,15 +2,8 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import Signal
-from PySide6.QtWidgets import (
-    QButtonGroup,
-    QHBoxLayout,
-    QPushButton,
-    QStackedWidget,
-    QVBoxLayout,
-    QWidget,
-)
+from PySide6.QtCore import QSignalBlocker, Qt, Signal
+from PySide6.QtWidgets import QComboBox, QStackedWidget, QVBoxLayout, QWidget
 
 from gui.plots.hemisphere import HemispherePlot
 from gui.plots.source_picture import SourcePicture
@@ -25,7 +18,7 @@ _FACES = (
 
 
 class Deck(QWidget):
-    """Three plots of which one is seen.
+    """Three plots of which one is seen; the header of each has the list of all.
 
     Signals
     -------
@@ -41,25 +34,16 @@ class Deck(QWidget):
         self.sweep = SweepPlot()
         self.source = SourcePicture()
         self._stack = QStackedWidget()
-        for plot in (self.hemisphere, self.sweep, self.source):
+        self.choices: list[QComboBox] = []
+        for number, plot in enumerate((self.hemisphere, self.sweep, self.source)):
+            choice = _face_choice(number)
+            choice.activated.connect(self._choose)
+            self.choices.append(choice)
+            plot.header.insertWidget(0, choice)
             self._stack.addWidget(plot)
-        self._buttons = QButtonGroup(self)
-        row = QHBoxLayout()
-        row.setContentsMargins(9, 3, 9, 0)
-        row.setSpacing(12)
-        for number, (_, words, tooltip) in enumerate(_FACES):
-            button = QPushButton(words, checkable=True)
-            button.setProperty("role", "face")
-            button.setToolTip(tooltip)
-            self._buttons.addButton(button, number)
-            row.addWidget(button)
-        row.addStretch(1)
-        self._buttons.idClicked.connect(self._choose)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
-        column.setSpacing(0)
-        column.addLayout(row)
-        column.addWidget(self._stack, 1)
+        column.addWidget(self._stack)
 
     @property
     def face(self) -> str:
@@ -68,9 +52,10 @@ class Deck(QWidget):
 
     def show_face(self, key: str) -> None:
         """Bring one of the plots to the front."""
-        number = [name for name, *_ in _FACES].index(key)
-        self._stack.setCurrentIndex(number)
-        self._buttons.button(number).setChecked(True)
+        self._stack.setCurrentIndex([name for name, *_ in _FACES].index(key))
+        for number, choice in enumerate(self.choices):
+            with QSignalBlocker(choice):
+                choice.setCurrentIndex(number)
 
     def set_theme(self, theme: Theme) -> None:
         """Hand the theme on."""
@@ -79,3 +64,14 @@ class Deck(QWidget):
 
     def _choose(self, number: int) -> None:
         self.face_chosen.emit(_FACES[number][0])
+
+
+def _face_choice(number: int) -> QComboBox:
+    choice = QComboBox()
+    choice.setAccessibleName("What is plotted here")
+    for _, words, tooltip in _FACES:
+        choice.addItem(words)
+        choice.setItemData(choice.count() - 1, tooltip, Qt.ItemDataRole.ToolTipRole)
+    choice.setToolTip("What is plotted beside the section")
+    choice.setCurrentIndex(number)
+    return choice

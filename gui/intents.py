@@ -39,8 +39,9 @@ def with_specimen(state: BenchState, specimen: Specimen) -> BenchState:
 
 def with_orientation(state: BenchState, side: str, choice: OrientationChoice) -> BenchState:
     """Return the state with the orientation of one side replaced."""
-    name = "orientation_a" if side == "A" else "orientation_b"
-    return replace(state, **{name: choice})
+    if side == "A":
+        return replace(state, orientation_a=choice)
+    return replace(state, orientation_b=choice)
 
 
 class Intents(QObject):
@@ -274,7 +275,6 @@ class StageIntents(Intents):
 
     def _refuse_plane(self, message: str) -> None:
         self._views.section.show_error(message)
-        self._views.toolbar.show_error("plane", message)
 
     def move_pin(self, direction: Vector3) -> None:
         """Put the pin on another direction, part axes."""

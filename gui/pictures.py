@@ -28,5 +28,5 @@ def png_bytes(picture: QImage) -> bytes:
     """Return a picture as a PNG file."""
     buffer = QBuffer()
     buffer.open(QIODevice.OpenModeFlag.WriteOnly)
-    picture.save(buffer, "PNG")
+    picture.save(buffer, b"PNG")
     return bytes(buffer.data().data())

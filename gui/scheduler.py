@@ -153,7 +153,7 @@ class Scheduler(QObject):
 
 
 class _Worker(QRunnable):
-    """Carries one job to the worker thread; all it says goes through the scheduler's signals."""
+    """Carries one job to the worker thread and speaks only through the scheduler's signals."""
 
     def __init__(self, serial: int, job: Job, stop: threading.Event, reported: Any,
                  ended: Any) -> None:

@@ -1,4 +1,4 @@
-"""The window: it places the widgets and nothing more. What they show comes from the presenter."""
+"""The window: it places the widgets and nothing more; the presenter says what they show."""
 
 from __future__ import annotations
 
@@ -35,13 +35,14 @@ from gui.reading.pin_table import PinTable
 from gui.reading.small_table import SmallTable
 from gui.stage.camera import Camera
 from gui.stage.pane import StagePane
-from gui.stage.renderer import Renderer
+from gui.stage.composition import Renderer
 from gui.theme import Theme
 from gui.toolbar import StageToolbar
 from gui.verdict_band import VerdictBand
 
-LEDGER_WIDTH = 366
-READING_WIDTH = 336
+LEDGER_WIDTH = 362
+READING_WIDTH = 320
+_NARROWER_BY = 14
 _LAYOUT_VERSION = 2  # a layout saved by an older arrangement is not restored
 
 
@@ -260,7 +261,7 @@ def _side_panel(content: QWidget, width: int, name: str) -> QFrame:
     area.setAccessibleName(name)
     area.setWidget(content)
     frame = _framed(area)
-    frame.setMinimumWidth(width - 26)
+    frame.setMinimumWidth(width - _NARROWER_BY)
     return frame
 
 

@@ -60,8 +60,9 @@ class Circle:
 
     @property
     def representative(self) -> FloatArray:
-        """The canonical direction of the circle: the greatest z, and of those the greatest x."""
-        return canonical(self.points(1))[0]
+        """The canonical direction of the circle: greatest z, and of those greatest x."""
+        highest: FloatArray = canonical(self.points(1))[0]
+        return highest
 
     def distance(self, n: FloatArray) -> FloatArray:
         """Return the angles (M,) in radians from directions (M, 3) or their antipodes."""
@@ -77,12 +78,12 @@ def circle_through(points: FloatArray) -> Circle:
 
 
 def _circle(axis: FloatArray, middle: FloatArray) -> Circle:
-    """Return the circle about an axis whose plane holds a point; its antipodes are its equals."""
+    """Return the circle about an axis whose plane holds a point, antipodes being equal."""
     return Circle(read_only(canonical(axis[None])[0]), abs(float(middle @ axis)))
 
 
 def canonical(n: FloatArray) -> FloatArray:
-    """Return that one of each pair n, -n (M, 3) whose last component that is not zero is positive.
+    """Return the one of each n, -n (M, 3) whose last non-zero component is positive.
 
     Components that are zero but for rounding are made zero.
     """
@@ -102,7 +103,7 @@ def preference(n: FloatArray) -> list[int]:
 
 
 def distinct(n: FloatArray, angle: float = SAME_DIRECTION) -> list[int]:
-    """Return the numbers of the first of each cluster of directions (M, 3), antipodes folded."""
+    """Return the number of the first of each cluster of directions (M, 3) or antipodes."""
     near = chords(n[:, None], n[None]) <= angle
     return [i for i in range(len(n)) if not near[i, :i].any()]
 
@@ -153,7 +154,7 @@ def rings_through(
         Size of the quantity; values nearer than 1e-9 of it are the same.
     """
     frames = tangents(centres)
-    angle = np.arange(_PROBE_ANGLES) * (2 * np.pi / _PROBE_ANGLES)
+    angle = np.linspace(0.0, 2 * np.pi, _PROBE_ANGLES, endpoint=False)
     change = _changes(value_of, centres, frames, np.tile(angle, (len(centres), 1)), extreme)
     greatest, least = change.max(axis=1), change.min(axis=1)
     waiting = (least < _SUSPICION * greatest) | (greatest < _SAME_VALUE * scale)
@@ -198,7 +199,11 @@ def _small_circle(centres: FloatArray, frames: FloatArray, angles: FloatArray) -
 
 
 def _changes(
-    value_of: ValueOf, centres: FloatArray, frames: FloatArray, angles: FloatArray, extreme: float
+    value_of: ValueOf,
+    centres: FloatArray,
+    frames: FloatArray,
+    angles: FloatArray,
+    extreme: float,
 ) -> FloatArray:
     """Return |value - extreme| (M, K) on the small circles."""
     points = _small_circle(centres, frames, angles)
@@ -215,7 +220,7 @@ def _two_least(
     change: FloatArray,
     extreme: float,
 ) -> FloatArray:
-    """Return the azimuths (2,) of the two least changes on one small circle, on opposite sides."""
+    """Return the azimuths (2,) of the least changes on two sides of one small circle."""
     first = angle[int(np.argmin(change))]
     aside = np.where(np.cos(angle - first) < -0.1, change, np.inf)
     best = np.array([first, angle[int(np.argmin(aside))]])

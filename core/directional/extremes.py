@@ -117,9 +117,10 @@ def _compressibility(medium: Medium) -> Pair:
 def _principal(
     value: float, vectors: FloatArray, own: int, shared: tuple[bool, bool]
 ) -> Extreme:
-    """Return one extreme of β; `shared` tells whether the middle, and every, eigenvalue equals it.
+    """Return one extreme of β, in 1/TPa.
 
-    With the middle one it is shared by the great circle normal to the third eigenvector.
+    `shared` tells whether the middle eigenvalue, and whether every one, equals it. With the
+    middle one it is shared by the great circle normal to the third eigenvector.
     """
     with_middle, with_all = shared
     if with_all:
@@ -147,9 +148,9 @@ def _elastic(medium: Medium, mesh: SphereMesh) -> dict[str, Pair]:
 
 
 def _objective(goal: _Goal, fields: ElasticFields) -> FloatArray:
-    """Return sign × (1/E, 1/G or ν), (N,), best over m; NaN where it is not positive or defined.
+    """Return sign × (1/E, 1/G or ν), (N,), best over m.
 
-    1/E alone is given with either sign.
+    NaN where 1/G is not positive or ν not defined; 1/E is given with either sign.
     """
     if goal.kind == Modulus.EXTENSION:
         return goal.sign * fields.axial
@@ -222,7 +223,7 @@ def _value_of(goal: _Goal, medium: Medium) -> ValueOf:
 
 
 def _transverse(goal: _Goal, medium: Medium, settled: Settled) -> FloatArray | None:
-    """Return the m that belongs to a place, from the kernel where the search does not know it."""
+    """Return the m of a place, from the kernel where the search does not know it."""
     if goal.transverse is None:
         return None
     if settled.transverse is not None:

@@ -39,10 +39,7 @@ def modulus_objective(
 
     def objective(frames: FloatArray, starts: IntArray) -> Local:
         local = modulus_to_second_order(kelvin_compliance, frames, kinds[starts])
-        sign = signs[starts]
-        return Local(
-            sign * local.value, sign[:, None] * local.gradient, sign[:, None, None] * local.hessian
-        )
+        return local.times(signs[starts])
 
     return objective
 
@@ -67,9 +64,8 @@ def modulus_to_second_order(
     extension, shear, cross = derived[:, :13], derived[:, 13:26], derived[:, 26:]
     kind = kinds[:, None]
     poisson = _ratio(cross, extension)
-    chosen = np.where(
-        kind == Modulus.EXTENSION, extension, np.where(kind == Modulus.SHEAR, 2 * shear, poisson)
-    )
+    transverse = np.where(kind == Modulus.SHEAR, 2 * shear, poisson)
+    chosen = np.where(kind == Modulus.EXTENSION, extension, transverse)
     gradient, hessian = chosen[:, 1:4], chosen[:, 4:].reshape(-1, 3, 3)
     # E does not know m: the third turn is no variable of it.
     free = kinds == Modulus.EXTENSION

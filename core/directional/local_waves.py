@@ -73,10 +73,7 @@ def sheet_objective(operator: FloatArray, sheets: IntArray, signs: FloatArray) -
 
     def objective(frames: FloatArray, starts: IntArray) -> Local:
         local = sheet_to_second_order(operator, frames, sheets[starts])
-        sign = signs[starts]
-        return Local(
-            sign * local.value, sign[:, None] * local.gradient, sign[:, None, None] * local.hessian
-        )
+        return local.times(signs[starts])
 
     return objective
 

@@ -45,6 +45,11 @@ class Local:
     gradient: FloatArray
     hessian: FloatArray
 
+    def times(self, sign: FloatArray) -> "Local":
+        """Return the objective multiplied by a number (M,) for each frame."""
+        gradient, hessian = sign[:, None] * self.gradient, sign[:, None, None] * self.hessian
+        return Local(sign * self.value, gradient, hessian)
+
 
 @dataclass(frozen=True, eq=False)
 class Descent:

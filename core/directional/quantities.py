@@ -26,8 +26,9 @@ class Quantity:
     ----------
     key : str
         Its name in files and on the command line.
-    name, symbol, unit : str
-        For the window; the unit is empty for a pure number. Values are in this unit.
+    name, short, symbol, unit : str
+        For the window, `short` for narrow tables; the unit is empty for a pure number. Values
+        are in this unit.
     sheets : int
         1, or 3 from the fastest wave to the slowest.
     signed : bool
@@ -51,6 +52,7 @@ class Quantity:
 
     key: str
     name: str
+    short: str
     symbol: str
     unit: str
     sheets: int
@@ -141,6 +143,7 @@ _ENTRIES = (
     Quantity(
         key="young",
         name="Young's modulus",
+        short="Young's modulus",
         symbol="E",
         unit="GPa",
         sheets=1,
@@ -156,6 +159,7 @@ _ENTRIES = (
     Quantity(
         key="compressibility",
         name="Linear compressibility",
+        short="linear compr.",
         symbol="β",
         unit="1/TPa",
         sheets=1,
@@ -171,6 +175,7 @@ _ENTRIES = (
     Quantity(
         key="shear_least",
         name="Shear modulus, least",
+        short="shear, least",
         symbol="G min",
         unit="GPa",
         sheets=1,
@@ -186,6 +191,7 @@ _ENTRIES = (
     Quantity(
         key="shear_greatest",
         name="Shear modulus, greatest",
+        short="shear, greatest",
         symbol="G max",
         unit="GPa",
         sheets=1,
@@ -201,6 +207,7 @@ _ENTRIES = (
     Quantity(
         key="poisson_least",
         name="Poisson's ratio, least",
+        short="Poisson, least",
         symbol="ν min",
         unit="",
         sheets=1,
@@ -216,6 +223,7 @@ _ENTRIES = (
     Quantity(
         key="poisson_greatest",
         name="Poisson's ratio, greatest",
+        short="Poisson, greatest",
         symbol="ν max",
         unit="",
         sheets=1,
@@ -231,6 +239,7 @@ _ENTRIES = (
     Quantity(
         key="slowness",
         name="Slowness",
+        short="slowness",
         symbol="1/v",
         unit="s/km",
         sheets=3,
@@ -247,6 +256,7 @@ _ENTRIES = (
     Quantity(
         key="phase",
         name="Phase speed",
+        short="phase speed",
         symbol="v",
         unit="km/s",
         sheets=3,
@@ -262,6 +272,7 @@ _ENTRIES = (
     Quantity(
         key="wave",
         name="Wave surface (group velocity)",
+        short="group speed",
         symbol="V",
         unit="km/s",
         sheets=3,
@@ -278,6 +289,7 @@ _ENTRIES = (
     Quantity(
         key="power_flow",
         name="Power-flow angle",
+        short="power flow off",
         symbol="ψ",
         unit="°",
         sheets=3,
@@ -293,6 +305,7 @@ _ENTRIES = (
     Quantity(
         key="polarisation",
         name="Polarisation deviation",
+        short="polarisation off",
         symbol="δ",
         unit="°",
         sheets=3,
@@ -309,6 +322,7 @@ _ENTRIES = (
     Quantity(
         key="focusing",
         name="Focusing",
+        short="focusing",
         symbol="A",
         unit="",
         sheets=3,

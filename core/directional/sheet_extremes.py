@@ -10,9 +10,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from core.arrays import BoolArray, FloatArray, IntArray
-from core.directional.acoustic_axes import Degeneracies, degeneracies
 from core.directional.christoffel import eigenvalues
 from core.directional.circles import ValueOf, chords, tangents
+from core.directional.degeneracies import Degeneracies, degeneracies
 from core.directional.local_waves import contraction, sheet_frames, sheet_objective
 from core.directional.medium import Medium
 from core.directional.newton import ROUNDING, Descent, descend
@@ -61,6 +61,10 @@ class _Starts:
     sheet: IntArray
     sign: FloatArray
     n: FloatArray  # (M, 3)
+
+    def continued(self, chosen: BoolArray, n: FloatArray) -> "_Starts":
+        """Return some of the searches from where they are now, n (M, 3)."""
+        return _Starts(self.goal[chosen], self.sheet[chosen], self.sign[chosen], n[chosen])
 
 
 @dataclass(frozen=True, eq=False)
@@ -153,8 +157,7 @@ def _candidates(waves: _Waves, mesh: SphereMesh) -> list[Candidates]:
         unfinished[mine] = _unfinished(waves, smooth, mine, own, meeting)
         found.append(_joined(own, meeting.candidates))
     if unfinished.any():
-        parts = (starts.goal, starts.sheet, starts.sign, smooth.frames[:, 0])
-        rest = _pattern_search(waves, _Starts(*(part[unfinished] for part in parts)))
+        rest = _pattern_search(waves, starts.continued(unfinished, smooth.frames[:, 0]))
         again = _descend(waves, rest)
         for number in np.unique(rest.goal):
             found[number] = _joined(found[number], _from_descent(again, rest.goal == number))
@@ -222,11 +225,10 @@ def _best_about(
 
 
 def _displaced(frames: FloatArray, azimuth: FloatArray, radius: FloatArray) -> FloatArray:
-    """Return directions (M, K, 3) at azimuths and angles (M, K) from those of frames (M, 3, 3)."""
-    polar = np.stack(
-        [np.cos(radius), np.sin(radius) * np.cos(azimuth), np.sin(radius) * np.sin(azimuth)], axis=2
-    )
-    result: FloatArray = polar @ frames
+    """Return directions (M, K, 3) at angles and azimuths (M, K) from frames (M, 3, 3)."""
+    sine = np.sin(radius)
+    aside = (sine * np.cos(azimuth), sine * np.sin(azimuth))
+    result: FloatArray = np.stack([np.cos(radius), *aside], axis=2) @ frames
     return result
 
 
@@ -246,7 +248,7 @@ def _unfinished(
     """
     at, value = meeting.candidates.frames[:, 0], meeting.candidates.value
     best = min(own.value.min(initial=np.inf), value.min(initial=np.inf))
-    open_ends = ~end.converged[mine] & (own.value <= best + _NEAR_BEST * waves.scale)
+    open_ends: BoolArray = ~end.converged[mine] & (own.value <= best + _NEAR_BEST * waves.scale)
     for i in np.flatnonzero(open_ends):
         near = chords(at, own.frames[i, 0]) < _NEAR_AXIS
         open_ends[i] = not (near & meeting.is_extreme & (value <= own.value[i])).any()

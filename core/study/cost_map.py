@@ -63,10 +63,10 @@ def cost_map(medium: Medium, mesh: SphereMesh, half_angle_deg: float, key: str) 
     radius = float(np.radians(half_angle_deg))
     fitted = local_quadratics(values, mesh)
     if radius <= _NARROW * _spacing(mesh):
-        return np.stack([_narrow_change(fitted[:, sheet], radius) for sheet in range(len(values))])
+        return np.stack([_narrow_change(fitted[:, k], radius) for k in range(len(values))])
     rings = _rings(mesh.level, half_angle_deg)
     return np.stack(
-        [_wide_change(value, fitted[:, sheet], rings) for sheet, value in enumerate(values)]
+        [_wide_change(value, fitted[:, k], rings) for k, value in enumerate(values)]
     )
 
 
@@ -147,4 +147,7 @@ def _wide_change(value: FloatArray, fitted: FloatArray, rings: _Rings) -> FloatA
     g1, g2, h11, h12, h22 = fitted[:, rings.nearest]
     sampled = value[rings.nearest] + x * (g1 + h11 * x / 2 + h12 * y) + y * (g2 + h22 * y / 2)
     change = np.abs(sampled - value)
-    return np.maximum(_peak(change[:_EDGE_POINTS]), change[_EDGE_POINTS:].max(axis=0))
+    result: FloatArray = np.maximum(
+        _peak(change[:_EDGE_POINTS]), change[_EDGE_POINTS:].max(axis=0)
+    )
+    return result

@@ -177,6 +177,10 @@ class CellForm(QWidget):
             self._axes.show_axes(view.conventions, view.axes)
         set_or_hide(self._note, view.note)
 
+    def texts(self) -> dict[str, str]:
+        """Return the six numbers as they stand in their fields."""
+        return {key: field.text() for key, field in self._fields.items()}
+
     def show_error(self, field: str, message: str) -> None:
         """Mark a field as wrong and say why."""
         self._marked(field).mark_error(message)

@@ -17,7 +17,7 @@ from gui.viewdata import HemisphereView
 _INWARDS = 3.0  # half pixels: where a pixel beyond the rim takes its colour from
 
 
-@lru_cache(maxsize=8)
+@lru_cache(maxsize=3)  # enough for the screen and an export; each may be 16 MB
 def disc_picture(view: HemisphereView, pixels: int) -> QImage:
     """Return a view's picture as a disc that fills a square, transparent where undefined."""
     small = _image(_rgba(view))

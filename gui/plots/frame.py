@@ -123,8 +123,22 @@ class Canvas(QWidget):
         """Report that the mouse has left."""
         self.hovered.emit(None)
 
+    def event(self, event: QEvent) -> bool:
+        """Claim the key of copying from the window while the plot has the focus."""
+        if (
+            event.type() == QEvent.Type.ShortcutOverride
+            and isinstance(event, QKeyEvent)
+            and event.matches(QKeySequence.StandardKey.Copy)
+        ):
+            event.accept()
+            return True
+        return super().event(event)
+
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Report the arrow keys; leave the others to the window."""
+        """Copy, or report an arrow key; leave the other keys to the window."""
+        if event.matches(QKeySequence.StandardKey.Copy):
+            self._frame.copy()
+            return
         step = _KEY_STEPS.get(Qt.Key(event.key()))
         if step is None:
             super().keyPressEvent(event)
@@ -231,8 +245,6 @@ class PlotFrame(QWidget):
         self.canvas.hovered.connect(self._hover_at)
         self.canvas.stepped.connect(self.step)
         self._copy_action = QAction("Copy", self.canvas)
-        self._copy_action.setShortcut(QKeySequence(QKeySequence.StandardKey.Copy))
-        self._copy_action.setShortcutContext(Qt.ShortcutContext.WidgetShortcut)
         self._copy_action.triggered.connect(self._copy)
         self._picture_action = QAction("Copy picture", self.canvas)
         self._picture_action.triggered.connect(self._copy_picture)

@@ -27,9 +27,11 @@ from gui.plots.lettering import (
     Placement,
     draw_chip,
     draw_notice,
+    draw_text,
     draw_title,
-    draw_top_note,
+    elide,
     lettering,
+    line_height,
     text_rect,
 )
 from gui.plots.polar import PolarGround, Rim, draw_axis_ends, polar_ground
@@ -85,7 +87,7 @@ def draw_hemisphere(
     _draw_over(painter, ground, view, theme, scale)
     if defined:
         draw_colour_bar(painter, _bar_rect(rect, theme, scale), view.scale, theme, scale)
-        draw_top_note(painter, rect, view.notice, theme, scale)
+        _draw_note(painter, rect, view.notice, theme, scale)
     else:
         _draw_plate(painter, ground, view.notice, theme, scale)
     painter.restore()
@@ -95,7 +97,8 @@ def disc_ground(
     rect: QRectF, view: HemisphereView, theme: Theme, scale: float = 1.0
 ) -> PolarGround:
     """Return where `draw_hemisphere` places the disc in `rect`, when it writes no title."""
-    area = rect.adjusted(0.0, 0.0, 0.0, -_bar_rect(rect, theme, scale).height())
+    below = _bar_rect(rect, theme, scale).height() + _note_height(view.notice, theme, scale)
+    area = rect.adjusted(0.0, 0.0, 0.0, -below)
     return polar_ground(area, 1.0, Rim((), view.axis_labels), theme, scale)
 
 
@@ -103,6 +106,21 @@ def _bar_rect(rect: QRectF, theme: Theme, scale: float) -> QRectF:
     """Return the strip of the colour bar."""
     height = bar_height(theme, scale)
     return QRectF(rect.left(), rect.bottom() - height - 4 * scale, rect.width(), height)
+
+
+def _note_height(text: str, theme: Theme, scale: float) -> float:
+    """Return the height kept for a notice between the disc and the colour bar."""
+    return line_height(lettering(theme, "small", scale)) if text else 0.0
+
+
+def _draw_note(painter: QPainter, rect: QRectF, text: str, theme: Theme, scale: float) -> None:
+    """Write a notice above the colour bar, shortened if need be."""
+    font = lettering(theme, "small", scale)
+    painter.setFont(font)
+    painter.setPen(theme.colour("secondary"))
+    y = _bar_rect(rect, theme, scale).top() - 0.5 * _note_height(text, theme, scale)
+    words = elide(font, text, rect.width() - 20 * scale)
+    draw_text(painter, QPointF(rect.center().x(), y), words)
 
 
 def _draw_picture(painter: QPainter, ground: PolarGround, view: HemisphereView) -> None:

@@ -23,6 +23,9 @@ def lettering(
 ) -> QFont:
     """Return a font of the theme with its size in pixels, figures of even width."""
     font = theme.font(size, scale, bold)
+    if font.pixelSize() > 0:
+        font.setFeature(_TABULAR_FIGURES, 1)
+        return font
     screen = QGuiApplication.primaryScreen()
     dots = screen.logicalDotsPerInchY() if screen is not None else 96.0
     font.setPixelSize(max(1, round(font.pointSizeF() * dots / _POINTS_PER_INCH)))
@@ -108,6 +111,12 @@ def draw_top_note(
     painter.setPen(theme.colour("secondary"))
     corner = rect.topLeft() + QPointF(10 * scale, 6 * scale)
     draw_text(painter, corner, elide(font, text, rect.width() - 20 * scale), 0.0, 0.0)
+
+
+def below_note(rect: QRectF, text: str, theme: Theme, scale: float = 1.0) -> QRectF:
+    """Return what `draw_top_note` leaves of an area."""
+    height = line_height(lettering(theme, "small", scale)) if text else 0.0
+    return rect.adjusted(0.0, height, 0.0, 0.0)
 
 
 def draw_title(

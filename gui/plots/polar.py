@@ -7,10 +7,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtCore import QPointF, QRectF, QSizeF, Qt
 from PySide6.QtGui import QFont, QFontMetricsF, QPainter, QPen
 
-from core.arrays import FloatArray
+from core.arrays import BoolArray, FloatArray
 from gui.plots.grid import MINUS
 from gui.plots.lettering import Placement, lettering, text_rect
 from gui.theme import Theme
@@ -84,39 +84,44 @@ def polar_ground(
 
 
 def draw_ground(
-    painter: QPainter, ground: PolarGround, rim: Rim, theme: Theme, scale: float = 1.0
-) -> Placement:
-    """Draw rings, spokes, axes and everything written round the rim; return what is taken."""
-    painter.setBrush(Qt.BrushStyle.NoBrush)
-    painter.setPen(QPen(theme.colour("hairline"), scale))
-    for radius, _ in rim.rings:
-        painter.drawEllipse(ground.centre, radius * ground.per_unit, radius * ground.per_unit)
-    painter.setPen(QPen(theme.colour("hairline", 0.6), 0.8 * scale))
-    for degrees in _SPOKES_DEG:
-        angle = math.radians(degrees)
-        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
-    painter.setPen(QPen(theme.colour("faint"), scale))
-    for angle in (0.0, math.pi / 2):
-        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
-    placement = Placement(2.0 * scale)
-    _draw_axis_letters(painter, ground, rim, placement, theme, scale)
-    _draw_directions(painter, ground, rim, placement, theme, scale)
-    return placement
-
-
-def draw_ring_texts(
     painter: QPainter,
     ground: PolarGround,
     rim: Rim,
     curves: Sequence[FloatArray],
-    placement: Placement,
     theme: Theme,
     scale: float = 1.0,
 ) -> None:
-    """Write the rings' texts along the ray where most of them are free, the best liked first.
+    """Draw rings, spokes and axes, and everything written on and round them.
 
-    `curves` are (2, N) in pixels; the outermost text says the unit; others that would lie on a
-    curve are left out.
+    `curves` are what will be drawn over it, each (2, N) in pixels: the rings' texts keep off
+    them where they can.
+    """
+    placement = Placement(2.0 * scale)
+    _draw_axis_letters(painter, ground, rim, placement, theme, scale)
+    _draw_directions(painter, ground, rim, placement, theme, scale)
+    painter.setBrush(Qt.BrushStyle.NoBrush)
+    painter.setPen(QPen(theme.colour("hairline", 0.6), 0.8 * scale))
+    for degrees in _SPOKES_DEG:
+        angle = math.radians(degrees)
+        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
+    _draw_rings(painter, ground, rim, _cloud(curves), placement, theme, scale)
+    painter.setPen(QPen(theme.colour("faint"), scale))
+    for angle in (0.0, math.pi / 2):
+        painter.drawLine(ground.at(angle, ground.rim), ground.at(angle + math.pi, ground.rim))
+
+
+def _draw_rings(
+    painter: QPainter,
+    ground: PolarGround,
+    rim: Rim,
+    cloud: FloatArray,
+    placement: Placement,
+    theme: Theme,
+    scale: float,
+) -> None:
+    """Draw the rings with their texts along the ray where most of these are free.
+
+    The outermost text says the unit; others that would lie on a curve are left out.
     """
     painter.setFont(lettering(theme, "small", scale))
     rings = sorted(
@@ -126,17 +131,28 @@ def draw_ring_texts(
         return
     if rim.unit:
         rings[-1] = (rings[-1][0], f"{rings[-1][1]} {rim.unit}")
-    rays = [_ring_boxes(ground, painter.font(), rings, degrees) for degrees in _TEXT_RAYS]
-    cloud = _cloud(curves)
-    clear = [[_is_clear(box, cloud, placement, scale) for box in boxes] for boxes in rays]
-    best = max(range(len(rays)), key=lambda ray: (clear[ray][-1], sum(clear[ray])))
-    for index, (box, (_, text)) in enumerate(zip(rays[best], rings, strict=True)):
+    boxes, clear = _best_ray(painter.font(), ground, rings, cloud, placement, scale)
+    for index, (box, (pixels, text)) in enumerate(zip(boxes, rings, strict=True)):
+        painter.setPen(QPen(theme.colour("hairline"), scale))
         # The outermost ring always says how large it is; the others are evenly spaced.
-        if clear[best][index] or index == len(rings) - 1:
-            pad = 2.5 * scale
-            painter.fillRect(box.adjusted(-pad, -pad, pad, pad), theme.colour("panel"))
+        if clear[index] or index == len(rings) - 1:
+            _draw_broken_ring(painter, ground, pixels, box, 2.5 * scale)
             painter.setPen(theme.colour("secondary"))
             painter.drawText(box.bottomLeft(), text)
+        else:
+            painter.drawEllipse(ground.centre, pixels, pixels)
+
+
+def _draw_broken_ring(
+    painter: QPainter, ground: PolarGround, pixels: float, box: QRectF, pad: float
+) -> None:
+    """Draw a ring that pauses where its text stands, whatever the ground behind."""
+    angle = ground.angle_of(box.center())
+    across = abs(math.sin(angle)) * box.width() + abs(math.cos(angle)) * box.height()
+    half = min((across / 2 + pad) / pixels, math.pi / 2)
+    square = QRectF(ground.centre - QPointF(pixels, pixels), QSizeF(2 * pixels, 2 * pixels))
+    start, span = math.degrees(angle + half), 360.0 - math.degrees(2 * half)
+    painter.drawArc(square, round(16 * start), round(16 * span))
 
 
 def draw_axis_ends(
@@ -208,12 +224,40 @@ def _draw_directions(
             painter.drawText(box.bottomLeft(), text)
 
 
-def _ring_boxes(
-    ground: PolarGround, font: QFont, rings: Sequence[tuple[float, str]], degrees: float
-) -> list[QRectF]:
-    """Return the boxes of the rings' texts along a ray, each centred on its ring."""
-    angle = math.radians(degrees)
-    return [text_rect(font, ground.at(angle, pixels), text, 0.5, 0.5) for pixels, text in rings]
+def _best_ray(
+    font: QFont,
+    ground: PolarGround,
+    rings: Sequence[tuple[float, str]],
+    cloud: FloatArray,
+    placement: Placement,
+    scale: float,
+) -> tuple[list[QRectF], list[bool]]:
+    """Return the boxes of the rings' texts along the ray that serves best, and which are free.
+
+    The outermost text counts most, then how many are free, then the order of `_TEXT_RAYS`.
+    """
+    angles = np.radians(_TEXT_RAYS)
+    sizes = [text_rect(font, QPointF(), text, 0.5, 0.5).size() for _, text in rings]
+    halves = np.array([(size.width() / 2, size.height() / 2) for size in sizes])
+    radii = np.array([pixels / ground.per_unit for pixels, _ in rings])
+    middles = ground.place(radii * np.stack([np.cos(angles), np.sin(angles)])[:, :, None])
+    near_curve = _touches(middles, halves.T + _CLEARANCE * scale, cloud)
+    best: tuple[list[QRectF], list[bool]] = ([], [])
+    for ray in range(len(angles)):
+        places = zip(*middles[:, ray].tolist(), sizes, strict=True)
+        boxes = [_box_at(x, y, size) for x, y, size in places]
+        clear = [not near and placement.is_free(box)
+                 for box, near in zip(boxes, near_curve[ray], strict=True)]  # fmt: skip
+        if not best[0] or (clear[-1], sum(clear)) > (best[1][-1], sum(best[1])):
+            best = boxes, clear
+        if all(clear):
+            break
+    return best
+
+
+def _box_at(x: float, y: float, size: QSizeF) -> QRectF:
+    """Return a box with its middle at a point."""
+    return QRectF(x - size.width() / 2, y - size.height() / 2, size.width(), size.height())
 
 
 def _cloud(curves: Sequence[FloatArray]) -> FloatArray:
@@ -222,15 +266,11 @@ def _cloud(curves: Sequence[FloatArray]) -> FloatArray:
     return points[:, np.isfinite(points).all(axis=0)]
 
 
-def _is_clear(box: QRectF, cloud: FloatArray, placement: Placement, scale: float) -> bool:
-    """Tell whether neither a curve nor a label comes near a box."""
-    return placement.is_free(box) and _clearance(box, cloud) >= _CLEARANCE * scale
+def _touches(middles: FloatArray, halves: FloatArray, cloud: FloatArray) -> BoolArray:
+    """Return which boxes hold any of some points.
 
-
-def _clearance(box: QRectF, cloud: FloatArray) -> float:
-    """Return the pixels between a box and the nearest of some points; zero inside."""
-    if not cloud.size:
-        return math.inf
-    beside = np.maximum(np.abs(cloud[0] - box.center().x()) - box.width() / 2, 0.0)
-    above = np.maximum(np.abs(cloud[1] - box.center().y()) - box.height() / 2, 0.0)
-    return float(np.hypot(beside, above).min())
+    Middles (2, rays, rings), half sizes (2, rings), points (2, M); result (rays, rings).
+    """
+    beside = np.abs(cloud[0] - middles[0][..., None]) < halves[0][:, None]
+    above = np.abs(cloud[1] - middles[1][..., None]) < halves[1][:, None]
+    return np.asarray((beside & above).any(axis=-1), dtype=np.bool_)

@@ -14,9 +14,9 @@ from core.arrays import FloatArray
 from gui.plots.frame import PlotFrame
 from gui.plots.grid import MINUS, number_text
 from gui.plots.legend import draw_strip, split_strip
-from gui.plots.lettering import draw_chip, draw_notice, draw_title, draw_top_note
+from gui.plots.lettering import below_note, draw_chip, draw_notice, draw_title, draw_top_note
 from gui.plots.plane_combo import PlaneCombo
-from gui.plots.polar import PolarGround, Rim, draw_ground, draw_ring_texts, polar_ground
+from gui.plots.polar import PolarGround, Rim, draw_ground, polar_ground
 from gui.plots.strokes import band_path, draw_signed_curve, side_pen
 from gui.theme import Theme
 from gui.viewdata import Curve, SectionView
@@ -66,6 +66,7 @@ def section_ground(
 ) -> PolarGround:
     """Return where `draw_section` places the plane in `rect`, when it writes no title."""
     area, _ = split_strip(rect, _has_strip(view), theme, scale)
+    area = below_note(area, view.notice, theme, scale)
     return polar_ground(area, view.radius, _rim(view), theme, scale)
 
 
@@ -121,9 +122,8 @@ def _draw_body(
     """Draw the ground, the curves and everything about them."""
     ground, rim = section_ground(rect, view, theme, scale), _rim(view)
     placed = [ground.place(curve.points) for curve in view.curves]
-    placement = draw_ground(painter, ground, rim, theme, scale)
     obstacles = [*placed, _pin_ray(ground, view.pin_angle)]
-    draw_ring_texts(painter, ground, rim, obstacles, placement, theme, scale)
+    draw_ground(painter, ground, rim, obstacles, theme, scale)
     _draw_bands(painter, ground, view, theme)
     _draw_ticks(painter, ground, view, theme, scale)
     # A lies over B, the fastest sheet over the others.

@@ -12,14 +12,16 @@ from PySide6.QtWidgets import QAbstractSpinBox, QDoubleSpinBox, QWidget
 from gui.plots.frame import PlotFrame
 from gui.plots.grid import MINUS, number_text
 from gui.plots.legend import draw_strip, split_strip
-from gui.plots.lettering import draw_chip, draw_notice, draw_title, draw_top_note
-from gui.plots.polar import PolarGround, Rim, draw_ground, draw_ring_texts, polar_ground
+from gui.plots.lettering import below_note, draw_chip, draw_notice, draw_title, draw_top_note
+from gui.plots.polar import PolarGround, Rim, draw_ground, polar_ground
 from gui.plots.strokes import draw_signed_curve, side_pen
 from gui.theme import Theme
 from gui.viewdata import SourceView
 
 _UNIT = "mm"
 _NOTE = "dotted: the energy leaves the plane"
+_NO_ARROWS = """QDoubleSpinBox::up-button, QDoubleSpinBox::down-button {
+    width: 0; border: none; }"""
 _FAINT = 0.7
 _LONGEST_US, _SHORTEST_US = 10_000.0, 0.01
 
@@ -65,6 +67,7 @@ def source_ground(
 ) -> PolarGround:
     """Return where `draw_source` places the plane in `rect` when it writes no title."""
     area, _ = split_strip(rect, True, theme, scale)
+    area = below_note(area, view.notice, theme, scale)
     return polar_ground(area, _radius(view), _rim(view), theme, scale)
 
 
@@ -84,8 +87,7 @@ def _draw_body(
     """Draw the ground, the wavefronts, the source and the strip under them."""
     ground, rim = source_ground(rect, view, theme, scale), _rim(view)
     placed = [ground.place(points) for _, _, points, _ in view.curves]
-    placement = draw_ground(painter, ground, rim, theme, scale)
-    draw_ring_texts(painter, ground, rim, placed, placement, theme, scale)
+    draw_ground(painter, ground, rim, placed, theme, scale)
     order = sorted(range(len(placed)), key=lambda i: view.curves[i][:2])
     for index in reversed(order):
         side, sheet, _, leaves = view.curves[index]
@@ -124,7 +126,8 @@ class SourcePicture(PlotFrame):
         self.time.setSuffix(" µs")
         self.time.setDecimals(2)
         self.time.setRange(_SHORTEST_US, _LONGEST_US)
-        self.time.setButtonSymbols(QAbstractSpinBox.ButtonSymbols.NoButtons)
+        # Qt gives a styled spin box without buttons a field one pixel wide; so: no width of them.
+        self.time.setStyleSheet(_NO_ARROWS)
         self.time.setStepType(QAbstractSpinBox.StepType.AdaptiveDecimalStepType)
         self.time.setKeyboardTracking(False)
         self.time.valueChanged.connect(self.time_chosen)

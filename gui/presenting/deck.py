@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+import math
 from functools import lru_cache
 
 import numpy as np
@@ -16,13 +18,14 @@ from core.directional.waves import modes
 from core.numbers import significant
 from core.state import BenchState, Vector3
 from core.study.tolerance import cost_map
-from gui.plots.grid import nice_ticks, tick_texts
+from gui.plots.grid import nice_step, nice_ticks, tick_texts
 from gui.presenting.stage import (
     NO_DENSITY,
     PLANES,
     SHEET_NAMES,
     ColourOf,
     plane_choices,
+    pane_title,
     plane_key,
     point_axes,
     quantity_title,
@@ -67,7 +70,7 @@ def section_view(state: BenchState) -> SectionView:
         pin_angle=_pin_angle(state, across, up),
         negative_note=_dotted_note(shown, negative),
         notice="" if curves else NO_DENSITY,
-        legend=tuple((side, side) for side in shown_sides(state)),
+        legend=tuple((side, pane_title(state, side)) for side in shown_sides(state)),
         directions=_rim_directions(state, across, up),
         ticks=_section_ticks(state, shown, across, up),
         plane=plane_key(state.section), planes=plane_choices(state))
@@ -293,10 +296,11 @@ def _hemisphere_marks(state: BenchState, choice: str) -> tuple[
     if specimen.frame.has_basis:
         turn = live.rotation(state.orientation_of(side), specimen)
         marks += [(*_on_disc(unit_vector(turn @ vector), projection), text, "direction")
-                  for text, vector in low_directions(state, side)]
+                  for text, vector in low_directions(state, side)
+                  if _is_upper(turn @ vector)]
     if state.display.marks and specimen.density is not None and (
             quantity(state.quantity).wave):
-        marks += [(*_on_disc(axis.direction, projection), "", "axis")
+        marks += [(*_on_disc(unit_vector(axis.direction), projection), "", "axis")
                   for axis in point_axes(_medium(state, side))]
     return tuple(marks)
 
@@ -315,9 +319,15 @@ def low_directions(state: BenchState, side: str) -> list[tuple[str, FloatArray]]
     return list(found.items())
 
 
+def _is_upper(vector: FloatArray) -> bool:
+    """Return whether a direction is the one of its two ends that the disc shows."""
+    x, y, z = np.round(vector, 9)
+    return bool(z > 0 or (z == 0 and (y > 0 or (y == 0 and x > 0))))
+
+
 _SIMPLE_STEPS = tuple(
-    (i, j, k) for i in (-1, 0, 1) for j in (-1, 0, 1) for k in (-1, 0, 1)
-    if (i, j, k) != (0, 0, 0))
+    step for size in (1, 2, 3) for step in itertools.product((1, 0, -1), repeat=3)
+    if np.abs(step).sum() == size)
 
 
 def _on_disc(direction: Vector3, projection: str) -> tuple[float, float]:
@@ -388,10 +398,11 @@ def source_view(state: BenchState, time_us: float) -> SourceView:
                    for sheet in range(3) if state.display.sheets[sheet]]
     radius = max((float(np.nanmax(np.hypot(*points), initial=0.0))
                   for _, _, points, _ in curves), default=0.0)
-    rings = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
+    step = nice_step(radius, 4) if radius > 0 else 1.0
+    rings = tuple(step * k for k in range(1, math.ceil(radius / step) + 1))
     return SourceView(
         title="Wavefronts from a point source", curves=tuple(curves), time_us=time_us,
-        radius=radius, rings=tuple(zip(rings, tick_texts(rings), strict=True)),
+        rings=tuple(zip(rings, tick_texts(rings), strict=True)),
         axis_labels=(axis_label(across), axis_label(up)),
         notice="" if curves else NO_DENSITY)
 

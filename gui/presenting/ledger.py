@@ -155,7 +155,12 @@ def spectrum_view(specimen: Specimen) -> SpectrumView:
 def class_choices() -> tuple[tuple[str, str], ...]:
     """Return the crystal classes with the number of their constants, for a combo box."""
     named = ((key, crystal_class(key)) for key in CLASS_KEYS)
-    return tuple((key, f"{entry.name} · {len(entry.independent)}") for key, entry in named)
+    return tuple((key, _class_words(entry)) for key, entry in named)
+
+
+def _class_words(entry: CrystalClass) -> str:
+    count = f"{len(entry.independent)} constants"
+    return entry.name if count in entry.name else f"{entry.name}, {count}"
 
 
 def specimen_view(state: BenchState) -> SpecimenView:
@@ -228,16 +233,16 @@ def axis_words(vector: np.ndarray, specimen: Specimen) -> str:
 
 def _misorientation_note(state: BenchState) -> str:
     """Return how far B is turned from A, as it stands and by the crystal's own symmetry."""
-    rotations = tuple(
+    rotation_a, rotation_b = (
         live.rotation(state.orientation_of(side), state.specimen_of(side)) for side in "AB")
-    plain = misorientation(*rotations)
+    plain = misorientation(rotation_a, rotation_b)
     if plain.angle_deg < 1e-9:
         return "the same orientation as A"
     text = f"{significant(plain.angle_deg, 4)}° from A"
     claimed = claimed_class(state.specimen)
     if state.other is not None or claimed.key in ("triclinic", "isotropic"):
         return text
-    least = misorientation(*rotations, laue_rotations(claimed))
+    least = misorientation(rotation_a, rotation_b, laue_rotations(claimed))
     if least.angle_deg < plain.angle_deg - 1e-9:
         text += f", {significant(least.angle_deg, 4)}° by the crystal's symmetry"
     return text

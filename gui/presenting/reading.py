@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from functools import lru_cache
 from typing import Any
 
@@ -25,6 +26,7 @@ from core.tensor.stiffness import Stiffness
 from gui.presenting.stage import SHEET_NAMES, sides
 from gui.viewdata import ExtremeRow, ExtremesView, ReadingRow, ReadingView, TableView
 
+_DUST = 1e-12
 Row = tuple[str, str, str, float, str, str]  # key, label, unit, value, tooltip, group
 
 
@@ -34,12 +36,17 @@ def reading_view(state: BenchState) -> ReadingView:
     values = {side: pin_rows(_medium(state, side), state.pin) for side in sides(state)}
     a, b = values.get("A"), values.get("B")
     first = a or b or ()
-    second = {row[1]: row[3] for row in b} if a and b else {}
-    rows = tuple(_reading_row(row, second.get(row[1])) for row in first)
+    second = {_place_of(row): row[3] for row in b} if a and b else {}
+    rows = tuple(_reading_row(row, second.get(_place_of(row))) for row in first)
     missing = [side for side in sides(state) if state.specimen_of(side).density is None]
     notice = "Waves want a density: enter it in the ledger." if missing else ""
     return ReadingView(pin_words(state.pin), _near_words(state, "A"), _near_words(state, "B"),
                        rows, bool(a and b), notice)
+
+
+def _place_of(row: Row) -> tuple[str, str]:
+    """Return group and label: what a row of A and a row of B have in common."""
+    return row[5], row[1]
 
 
 def _medium(state: BenchState, side: str) -> Medium:
@@ -81,21 +88,13 @@ def pin_rows(medium: Medium, pin: Vector3) -> tuple[Row, ...]:
         if entry.wave:
             continue
         value = float(entry.values(medium, one)[0, 0])
-        rows.append((key, _label(entry), entry.unit, value, entry.definition, "stiffness"))
+        rows.append((key, entry.short, entry.unit, value, entry.definition, "stiffness"))
     if medium.density is not None:
         rows += _wave_rows(medium, one)
     return tuple(rows)
 
 
-def _label(entry: Quantity) -> str:
-    return entry.name[0].lower() + entry.name[1:] if not entry.name.startswith(
-        ("Young", "Poisson")) else entry.name
-
-
-_WAVE_KEYS = ("phase", "slowness", "wave", "power_flow", "polarisation", "focusing")
-_WAVE_LABELS = {"phase": "phase speed", "slowness": "slowness", "wave": "group speed",
-                "power_flow": "power flow off by", "polarisation": "polarisation off by",
-                "focusing": "focusing"}
+_WAVE_KEYS = tuple(key for key, entry in QUANTITIES.items() if entry.wave)
 
 
 def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
@@ -108,21 +107,22 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
         group = f"{name} wave"
         for key in _WAVE_KEYS:
             entry = quantity(key)
-            rows.append((key, f"{name}: {_WAVE_LABELS[key]}", entry.unit,
-                         float(values[key][sheet]), entry.definition, group))
-        rows.append(("phase", f"{name}: how longitudinal", "", float(along[sheet]),
+            rows.append((key, entry.short, entry.unit, float(values[key][sheet]),
+                         entry.definition, group))
+        rows.append(("phase", "longitudinality", "", float(along[sheet]),
                      "|p·n|: 1 for a purely longitudinal wave, 0 for a pure shear wave.", group))
-        rows.append(("phase", f"{name}: impedance", "MRayl", float(impedance[sheet]),
+        rows.append(("phase", "impedance", "MRayl", float(impedance[sheet]),
                      "Z = ρ v, the acoustic impedance of a plane wave.", group))
     splitting = float(waves.shear_splitting(medium, one)[0])
     rows.append(("slowness", "shear splitting", "ns/mm", splitting,
                  "Difference of travel time between the middle and the slowest wave.",
-                 "splitting"))
+                 "middle and slowest wave"))
     return rows
 
 
 def _reading_row(row: Row, other: float | None) -> ReadingRow:
     key, label, unit, value, tooltip, group = row
+    value, other = _without_dust(value), None if other is None else _without_dust(other)
     second = "" if other is None else significant(other)
     difference = None if other is None else other - value
     return ReadingRow(
@@ -130,6 +130,11 @@ def _reading_row(row: Row, other: float | None) -> ReadingRow:
         "" if difference is None else signed(difference, 3),
         (full_precision(value), full_precision(other), full_precision(difference)),
         tooltip, key, group)
+
+
+def _without_dust(value: float) -> float:
+    """Return zero for what only rounding keeps from it: angles and ratios along symmetry axes."""
+    return 0.0 if abs(value) < _DUST else value
 
 
 # ------------------------------------------------------------------ extremes
@@ -239,37 +244,39 @@ def _aggregate(table: Any, density: float | None, cubic: bool) -> TableView:
     means = averages(stiffness)
     bounds = hashin_shtrikman(stiffness)
     index = anisotropy(stiffness, cubic)
-    numbers: list[tuple[str, tuple[float | None, ...]]] = [
-        (name, (mean.bulk, mean.shear, mean.young, mean.poisson))
-        for name, mean in (("Voigt", means.voigt), ("Hill", means.hill), ("Reuss", means.reuss))]
-    numbers.append(("Hashin–Shtrikman, upper", (bounds.bulk_high, bounds.shear_high)))
-    numbers.append(("Hashin–Shtrikman, lower", (bounds.bulk_low, bounds.shear_low)))
-    numbers.append(("universal anisotropy", (index.universal,)))
-    numbers.append(("log-Euclidean anisotropy", (index.log_euclidean,)))
-    numbers.append(("percent anisotropy of K, G", (index.percent_bulk, index.percent_shear)))
+    lines: list[tuple[str, tuple[float, ...], str]] = [
+        (name, (mean.bulk, mean.shear, mean.young, mean.poisson), tip)
+        for name, mean, tip in (
+            ("Voigt", means.voigt, "Uniform strain: the upper bound."),
+            ("Hill", means.hill, "The mean of Voigt and Reuss (Hill 1952)."),
+            ("Reuss", means.reuss, "Uniform stress: the lower bound."))]
+    lines += [
+        ("Hashin–Shtrikman, upper", (bounds.bulk_high, bounds.shear_high),
+         "Closest upper bound on a random polycrystal without texture."),
+        ("Hashin–Shtrikman, lower", (bounds.bulk_low, bounds.shear_low),
+         "Closest lower bound on a random polycrystal without texture."),
+        ("universal anisotropy", (index.universal,),
+         "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic."),
+        ("log-Euclidean anisotropy", (index.log_euclidean,),
+         "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic."),
+        ("percent anisotropy of K, G", (index.percent_bulk, index.percent_shear),
+         "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967)."),
+    ]
     if index.zener is not None:
-        numbers.append(("Zener ratio", (index.zener,)))
+        lines.append(("Zener ratio", (index.zener,), "2 C44/(C11 − C12), cubic crystals only."))
     if density is not None:
-        debye = debye_speed(Medium(stiffness, density))
-        numbers.append(("Debye speed, km/s", (debye.speed,)))
-    rows = tuple((label, *(significant(x) for x in values), *[""] * (4 - len(values)))
-                 for label, values in numbers)
-    full = tuple((label, *(full_precision(x) for x in values), *[""] * (4 - len(values)))
-                 for label, values in numbers)
-    return TableView("Aggregate", ("", "K GPa", "G GPa", "E GPa", "ν"), rows, full,
-                     _AGGREGATE_TIPS)
+        lines.append(("Debye speed, km/s", (debye_speed(Medium(stiffness, density)).speed,),
+                      "(⟨Σ v⁻³⟩/3)^(−1/3) over all directions and the three waves."))
+    return TableView(
+        "Aggregate", ("", "K GPa", "G GPa", "E GPa", "ν"),
+        tuple(_padded(label, values, significant) for label, values, _ in lines),
+        tuple(_padded(label, values, full_precision) for label, values, _ in lines),
+        tuple(tip for *_, tip in lines))
 
 
-_AGGREGATE_TIPS = (
-    "Uniform strain: the upper bound.",
-    "The mean of Voigt and Reuss (Hill 1952).",
-    "Uniform stress: the lower bound.",
-    "Closest upper bound on a random polycrystal without texture.",
-    "Closest lower bound on a random polycrystal without texture.",
-    "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic.",
-    "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic.",
-    "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967).",
-)
+def _padded(label: str, values: tuple[float, ...],
+            text: Callable[[float | None], str]) -> tuple[str, ...]:
+    return label, *(text(value) for value in values), *[""] * (4 - len(values))
 
 
 def part_view(state: BenchState) -> TableView:

@@ -55,8 +55,6 @@ def toolbar_view(state: BenchState, linked: bool) -> ToolbarView:
         sheets=display.sheets if shown.sheets == 3 else None,
         colour_by=display.colour_by if shown.sheets == 3 else "value",
         colours=tuple(COLOURS.items()) if shown.sheets == 3 else (),
-        plane=plane_key(state.section),
-        planes=plane_choices(state),
         shared_scale=display.shared_scale, linked_cameras=linked, cut_away=display.cut_away,
         crystal_axes=display.crystal_axes, marks=display.marks, ticks=display.ticks)
 
@@ -153,7 +151,8 @@ def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[flo
 
 def _squared_length(sheet: Float32Array) -> Float32Array:
     x, y, z = sheet[:3]
-    return x * x + y * y + z * z
+    squared: Float32Array = x * x + y * y + z * z
+    return squared
 
 
 def _visible(rows: Float32Array, state: BenchState) -> list[Float32Array]:
@@ -260,7 +259,8 @@ def unit_vector(vector: FloatArray) -> Vector3:
 def _marks(state: BenchState, shown: Quantity, drawn: Drawn) -> tuple[DirectionMark, ...]:
     marks = [DirectionMark(state.pin, "", "pin")]
     if shown.wave and state.display.marks:
-        marks += [DirectionMark(axis.direction, "", "axis") for axis in point_axes(drawn.medium)]
+        marks += [DirectionMark(unit_vector(np.array(axis.direction)), "", "axis")
+                  for axis in point_axes(drawn.medium)]
     return tuple(marks)
 
 

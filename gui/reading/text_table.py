@@ -162,7 +162,8 @@ class LineDelegate(QStyledItemDelegate):
         painter.setPen(_cell_colour(theme, column, line, model.is_dimmed))
         room = _inside(option.rect, index.column())
         text = str(index.data() or "")
-        shown = shorten(painter.fontMetrics(), text, room.width() + 1)
+        is_label = column.kind == "label"
+        shown = shorten(painter.fontMetrics(), text, room.width() + 1, is_label)
         painter.drawText(room, _alignment(column), shown)
         painter.restore()
 
@@ -189,14 +190,14 @@ def _cell_colour(theme: Theme, column: Column, line: Line, dimmed: bool) -> QCol
     return theme.colour(role, DIMMED if dimmed else 1.0)
 
 
-def shorten(metrics: QFontMetrics, text: str, width: int) -> str:
-    """Return a text elided to a width; what follows a comma is kept, since labels differ there.
+def shorten(metrics: QFontMetrics, text: str, width: int, is_label: bool) -> str:
+    """Return a text elided to a width; labels keep what follows a comma, for they differ there.
 
     "shear modulus, greatest" becomes "shear mo…, greatest".
     """
     head, comma, tail = text.partition(", ")
     room = width - metrics.horizontalAdvance(comma + tail)
-    if comma and metrics.horizontalAdvance(text) > width and room >= LEAST_HEAD:
+    if is_label and comma and metrics.horizontalAdvance(text) > width and room >= LEAST_HEAD:
         return metrics.elidedText(head, Qt.TextElideMode.ElideRight, room) + comma + tail
     return metrics.elidedText(text, Qt.TextElideMode.ElideRight, width)
 

@@ -18,7 +18,7 @@ Size = tuple[int, int]
 Tile = tuple[int, int, int, int]  # x, y, width, height in pixels of the whole picture
 
 DISTANCE = 5.2  # of the eye from the origin: far enough for a calm perspective
-HALF_EXTENT = 1.42  # what half the shorter side shows at the origin: axes and their letters
+HALF_EXTENT = 1.30  # what half the shorter side shows at the origin: axes and their letters
 NEAR, FAR = 1.0, 2.0 * DISTANCE
 LEAST_ZOOM, GREATEST_ZOOM = 0.4, 12.0
 DEGREES_PER_PIXEL = 0.45

@@ -20,11 +20,11 @@ from gui.viewdata import PaneView, SheetView, Triad, Vector3
 
 Ground = Literal["theme", "white", "transparent"]
 
-AXIS_REACH = 1.24  # how far axes come out of the surface
-AXIS_BACK = 1.06  # and at their negative end, where they are faint
-DISC_RADIUS = 1.10
+AXIS_REACH = 1.19  # how far axes come out of the surface
+AXIS_BACK = 1.04  # and at their negative end, where they are faint
+DISC_RADIUS = 1.08
 DISC_OPACITY = 0.10
-_OUTER_OPACITY = (0.46, 0.30)  # of the first and second sheet round the innermost one
+_OUTER_OPACITY = (0.34, 0.20)  # of the first and second sheet round the innermost one
 
 _outlines: Remembered[Float32Array] = Remembered(16)
 _radii: Remembered[float] = Remembered(16)
@@ -157,18 +157,22 @@ def kept_half(view: PaneView, camera: Camera) -> FloatArray | None:
     return -normal if normal @ camera.eye() > 0.0 else normal
 
 
-def outline(view: PaneView, layer: Layer, theme: Theme) -> LineSet | None:
-    """Return the curve in which the section plane cuts a sheet."""
+def outlines(view: PaneView, layer: Layer, theme: Theme) -> tuple[LineSet, ...]:
+    """Return the curve in which the section plane cuts a sheet, with a halo under it."""
     if view.section is None:
-        return None
+        return ()
     rows, triangles, normal = layer.sheet.rows, layer.sheet.triangles, view.section
     segments = _outlines.get(
         (rows, triangles, normal, view.radius),
         lambda: section_segments(rows, triangles, normal) / np.float32(view.radius),
     )
     if layer.is_opened:
-        return LineSet(segments, theme.colour("ink"), 1.8, lift=0.012)
-    return LineSet(segments, theme.side(view.side), 1.4, lift=0.012)
+        width = 1.2 if view.is_wave_surface else 1.8  # folded sheets have many rims
+        return (LineSet(segments, theme.colour("ink"), width, lift=0.012),)
+    return (
+        LineSet(segments, theme.colour("stage", 0.55), 3.2, lift=0.012),
+        LineSet(segments, theme.side(view.side), 1.5, lift=0.013),
+    )
 
 
 def section_segments(

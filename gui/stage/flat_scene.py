@@ -91,9 +91,7 @@ class FlatRenderer:
         shot = _Shot(view, camera, theme, camera.matrix(size, tile), (width, height))
         for layer in composition.layers(view):
             _draw_sheet(canvas, shot, layer)
-            curve = composition.outline(view, layer, theme)
-            if curve is not None:
-                _draw_lines(canvas, shot, (curve,))
+            _draw_lines(canvas, shot, composition.outlines(view, layer, theme))
         _draw_disc(canvas, shot)
         _draw_lines(canvas, shot, composition.free_lines(view, theme))
         return canvas.image if fine == 1 else canvas.image.scaled(
@@ -282,8 +280,9 @@ def _split(
     begins = np.flatnonzero((place == 0) | (hidden != np.roll(hidden, 1)))
     ends = np.append(begins[1:], len(place)) - 1
     who = owner[begins]
-    (x0, y0), _ = shot.project(starts[:, who] + steps[:, who] * (place[begins] / counts[who]))
-    (x1, y1), _ = shot.project(starts[:, who] + steps[:, who] * ((place[ends] + 1) / counts[who]))
+    first, last = place[begins] / counts[who], (place[ends] + 1) / counts[who]
+    (x0, y0), _ = shot.project(starts[:, who] + steps[:, who] * first)
+    (x1, y1), _ = shot.project(starts[:, who] + steps[:, who] * last)
     parts: tuple[list[QLineF], list[QLineF]] = ([], [])
     for number, corners in enumerate(zip(*(c.tolist() for c in (x0, y0, x1, y1)), strict=True)):
         parts[int(hidden[begins[number]])].append(QLineF(*corners))

@@ -17,7 +17,7 @@ AMBIENT, KEY_POWER, FILL_POWER = 0.52, 0.44, 0.14
 WRAP = 0.35  # how far the key light reaches round the shoulder
 SHEEN = 0.07
 RIM = 0.20  # darkening at the outline
-GLASS = 0.50  # how much more a translucent sheet covers at its outline
+GLASS = 0.55  # how much more a translucent sheet covers at its outline
 BACK_TINT = np.array([0.74, 0.75, 0.80])  # the inside of an opened sheet
 
 

@@ -183,10 +183,10 @@ class SceneRenderer:
             item = slot.sheets.setdefault(layer.index, SurfaceItem())
             item.show(layer.sheet.rows, layer.sheet.triangles)
             self._draw_sheet(shot, layer, item)
-            curve = composition.outline(shot.view, layer, shot.theme)
-            if curve is not None:
+            curves = composition.outlines(shot.view, layer, shot.theme)
+            if curves:
                 strokes = slot.outlines.setdefault(layer.index, LineItem())
-                self._draw_lines(shot, strokes, (curve,))
+                self._draw_lines(shot, strokes, curves)
         self._draw_disc(shot, slot)
         key = (shot.view, shot.theme)
         if len(slot.lines_of) != 2 or any(map(_differs, slot.lines_of, key)):

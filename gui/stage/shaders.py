@@ -95,7 +95,7 @@ void main() {
     float side = (gl_VertexID & 1) == 0 ? -1.0 : 1.0;
     float reach = u_half + 0.5;
     vec4 place = is_end ? to : from;
-    vec2 shift = side * reach * vec2(-ahead.y, ahead.x) + (is_end ? 0.5 : -0.5) * ahead;
+    vec2 shift = side * reach * vec2(-ahead.y, ahead.x);
     place.xy += shift / (u_viewport * 0.5) * place.w;
     place.z -= u_lift * place.w;
     v_across = side * reach;

@@ -46,7 +46,7 @@ def test_isotropic_closed_form():
 
 
 def test_a_hexagonal_crystal_in_one_dimension():
-    """Its mean is an integral over cos θ alone, done here adaptively with closed-form speeds."""
+    """Its mean is an integral over cos θ alone, done adaptively with closed-form speeds."""
     c11, c12, c13, c33, c44 = 161.0, 34.2, 50.1, 61.0, 38.3
 
     def slowness_cubed(z):

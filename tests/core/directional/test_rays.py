@@ -2,8 +2,6 @@
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
-from hypothesis import strategies as st
 from scipy.optimize import brentq
 
 from core.directional.medium import Medium
@@ -118,7 +116,7 @@ def test_ring_of_zinc_along_c():
 
 @pytest.mark.parametrize("seed", range(3))
 def test_nothing_is_missed_that_a_fine_scan_sees(seed):
-    """Every random normal, taken as the answer, must come back among the arrivals of its ray."""
+    """Every random normal must come back among the arrivals along its own energy."""
     rng = np.random.default_rng(seed)
     medium = medium_of(random_physical(rng, 0.4))
     dirs = directions(rng.standard_normal((3, 5)))
@@ -136,8 +134,7 @@ def test_nothing_is_missed_that_a_fine_scan_sees(seed):
             assert speeds == sorted(speeds, reverse=True)
 
 
-@settings(max_examples=5, deadline=None)
-@given(st.integers(0, 2**32 - 1))
+@pytest.mark.parametrize("seed", range(5))
 def test_arrivals_turn_with_the_crystal(seed):
     rng = np.random.default_rng(seed)
     table, rotation, ray = (

@@ -1,5 +1,7 @@
 """Drawing into pictures and files, and looking for colours, for the tests of the plots."""
 
+from xml.etree import ElementTree as ET
+
 import numpy as np
 from PySide6.QtCore import QMarginsF, QRect, QRectF, QSize, QSizeF
 from PySide6.QtGui import QColor, QImage, QPageSize, QPainter, QPdfWriter
@@ -55,3 +57,9 @@ def draw_pdf(draw, view, path, theme=LIGHT, width_mm=90.0, resolution=1200, **op
     draw(painter, QRectF(0, 0, side, side), view, theme, scale=side / 500.0, **options)
     painter.end()
     return path.read_bytes()
+
+
+def svg_words(text):
+    """Return the set of all texts that an SVG writes."""
+    return {"".join(node.itertext()).strip() for node in ET.fromstring(text).iter()
+            if node.tag.endswith("text")}  # fmt: skip

@@ -6,7 +6,14 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from gui.plots.grid import angle_ticks, nice_step, nice_ticks, number_text, short_text, tick_texts
+from gui.plots.grid import (
+    angle_ticks,
+    nice_step,
+    nice_ticks,
+    number_text,
+    short_text,
+    tick_texts,
+)
 
 
 @pytest.mark.parametrize(
@@ -29,9 +36,7 @@ def test_ticks_are_clean_numbers():
     assert [repr(t) for t in nice_ticks(-0.2, 0.2, 4)] == ["-0.2", "-0.1", "0.0", "0.1", "0.2"]
 
 
-@given(
-    st.floats(-1e6, 1e6), st.floats(1e-3, 1e6), st.integers(1, 12)
-)
+@given(st.floats(-1e6, 1e6), st.floats(1e-3, 1e6), st.integers(1, 12))
 def test_steps_are_one_two_or_five(low, span, count):
     high = low + span
     ticks = nice_ticks(low, high, count)

@@ -1,4 +1,4 @@
-"""The two projections of the hemisphere: closed forms of Lambert's and the stereographic one."""
+"""The two projections of the hemisphere: Lambert's and the stereographic in closed form."""
 
 import numpy as np
 import pytest

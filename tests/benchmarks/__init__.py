@@ -1,0 +1,1 @@
+"""Timings: `python -m tests.benchmarks` prints them. Nothing here fails a test run."""
