@@ -85,6 +85,20 @@ def signed(value: float | None, digits: int = 4) -> str:
     return f"+{text}" if value is not None and math.isfinite(value) and value > 0 else text
 
 
+def with_deviation(value: float, deviation: float) -> str:
+    """Return "51.37 ± 0.32": two digits of the standard uncertainty, the value to that place.
+
+    A value without an uncertainty, or with one too large or small to write out, has four
+    significant digits.
+    """
+    spread = significant(deviation, 2)
+    if not deviation > 0 or "×" in spread or not math.isfinite(value):
+        return significant(value)
+    place = 1 - int(f"{deviation:.1e}".split("e")[1])  # decimals of the second digit
+    rounded = round(value, place) + 0.0
+    return f"{rounded:.{max(place, 0)}f} ± {spread}".replace("-", MINUS)
+
+
 def full_precision(value: float | None) -> str:
     """Return the shortest text that reads back to the same float, for files and copying.
 

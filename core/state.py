@@ -97,7 +97,8 @@ class Display:
     sheets : tuple of 3 bools
         Which of the fastest, middle and slowest sheets are drawn.
     colour_by : str
-        "value", or the key of another quantity that colours the sheets.
+        "value", "longitudinality", or the key of another quantity of three sheets, that
+        colours the sheets.
     cut_away : bool
         Open the surfaces at the section plane.
     shared_scale : bool
@@ -124,7 +125,7 @@ class Display:
         Which sheet the hemisphere shows of three: 0, 1, 2 from the fastest.
     """
 
-    layout: str = "AB"
+    layout: str = "A"
     sheets: tuple[bool, bool, bool] = (True, True, True)
     colour_by: str = "value"
     cut_away: bool = False
@@ -177,11 +178,11 @@ class BenchState:
     unknown: str = "{}"
 
     def specimen_of(self, side: str) -> Specimen:
-        """The crystal shown on a side, "A" or "B"."""
+        """Return the crystal shown on a side, "A" or "B"."""
         return self.other if side == "B" and self.other is not None else self.specimen
 
     def orientation_of(self, side: str) -> OrientationChoice:
-        """The orientation shown on a side, "A" or "B"."""
+        """Return the orientation shown on a side, "A" or "B"."""
         return self.orientation_a if side == "A" else self.orientation_b
 
 

@@ -1,4 +1,4 @@
-"""The composition root: builds the bench, the window and everything between, nothing else does."""
+"""The composition root: it alone builds the bench, the window and everything between."""
 
 from __future__ import annotations
 
@@ -18,32 +18,34 @@ from types import TracebackType
 for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
     os.environ.setdefault(_variable, "1")
 
-from PySide6.QtCore import QSettings, Qt, QTimer  # noqa: E402 - after the threads are set
-from PySide6.QtGui import QIcon  # noqa: E402
-from PySide6.QtWidgets import QApplication, QMessageBox  # noqa: E402
+from PySide6.QtCore import QSettings, Qt, QTimer
+from PySide6.QtGui import QIcon
+from PySide6.QtWidgets import QApplication, QMessageBox
 
-from core.errors import InputError  # noqa: E402
-from core.files.opening import open_file  # noqa: E402
-from core.state import BenchState  # noqa: E402
-from gui.actions import Entry, MenuBar, Menus  # noqa: E402
-from gui.bench import Bench  # noqa: E402
-from gui.cameras import Cameras  # noqa: E402
-from gui.commands import Commands  # noqa: E402
-from gui.documents import FIRST_DEMO, Documents, first_state, open_demo  # noqa: E402
-from gui.dressing import Dressing  # noqa: E402
-from gui.help import HelpDialog  # noqa: E402
-from gui.intents import DeckIntents, LedgerIntents, StageIntents  # noqa: E402
-from gui.pace import Pace  # noqa: E402
-from gui.presenter import Presenter  # noqa: E402
-from gui.scheduler import Scheduler  # noqa: E402
-from gui.stage.composition import Renderer  # noqa: E402
-from gui.stage.gl_probe import GlReport, probe  # noqa: E402
-from gui.stage.renderer import make_renderer  # noqa: E402
-from gui.window import Window, build_views  # noqa: E402
+from core.errors import InputError
+from core.files.opening import open_file
+from core.state import BenchState
+from gui.actions import Entry, MenuBar, Menus
+from gui.bench import Bench
+from gui.cameras import Cameras
+from gui.commands import Commands
+from gui.documents import FIRST_DEMO, Documents, first_state, open_demo
+from gui.dressing import Dressing
+from gui.help import HelpDialog
+from gui.intents import DeckIntents, LedgerIntents, StageIntents
+from gui.pace import Pace
+from gui.presenter import Presenter
+from gui.scheduler import Scheduler
+from gui.stage.composition import Renderer
+from gui.stage.gl_probe import GlReport, probe
+from gui.stage.renderer import make_renderer
+from gui.window import Window, build_views
 
-NO_SCREEN = ("tricline: there is no screen to open a window on (DISPLAY and WAYLAND_DISPLAY are "
-             "not set). The headless verbs work: try “tricline summary FILE”, or set "
-             "QT_QPA_PLATFORM=offscreen.")
+NO_SCREEN = (
+    "tricline: there is no screen to open a window on (DISPLAY and WAYLAND_DISPLAY are "
+    "not set). The headless verbs work: try “tricline summary FILE”, or set "
+    "QT_QPA_PLATFORM=offscreen."
+)
 log = logging.getLogger("tricline")
 
 
@@ -78,8 +80,9 @@ class Application:
         self.renderer.close()
 
 
-def build(application: QApplication, state: BenchState, settings: QSettings,
-          force_sync: bool = False) -> Application:
+def build(
+    application: QApplication, state: BenchState, settings: QSettings, force_sync: bool = False
+) -> Application:
     """Return a whole bench with its window, not yet shown."""
     report = probe()
     renderer = make_renderer(report)
@@ -96,8 +99,22 @@ def build(application: QApplication, state: BenchState, settings: QSettings,
     deck = DeckIntents(bench, views, stage, window)
     commands = Commands(bench, window, documents, ledger, stage, cameras, dressing)
     help_dialog, menu_bar = _menus(window, commands, drawing_words(report))
-    built = Application(bench, scheduler, pace, window, presenter, documents, cameras, dressing,
-                        renderer, menu_bar, help_dialog, ledger, stage, deck)
+    built = Application(
+        bench,
+        scheduler,
+        pace,
+        window,
+        presenter,
+        documents,
+        cameras,
+        dressing,
+        renderer,
+        menu_bar,
+        help_dialog,
+        ledger,
+        stage,
+        deck,
+    )
     _connect(built)
     if not report.ok:
         window.show_note("drawn without OpenGL")
@@ -114,8 +131,13 @@ def _menus(window: Window, commands: Commands, words: str) -> tuple[HelpDialog, 
     entries = tuple(
         Entry(title, partial(dialog.open_leaf, leaf), keys)
         for title, leaf, keys in (
-            ("&Quantities and formulas", "Quantities", "F1"), ("&Conventions", "Conventions", ""),
-            ("&Keys", "Keys", ""), ("Ca&utions", "Cautions", ""), ("&About", "About", "")))
+            ("&Quantities and formulas", "Quantities", "F1"),
+            ("&Conventions", "Conventions", ""),
+            ("&Keys", "Keys", ""),
+            ("Ca&utions", "Cautions", ""),
+            ("&About", "About", ""),
+        )
+    )
     return dialog, MenuBar(window, commands.menus(entries))
 
 
@@ -172,12 +194,12 @@ def has_screen() -> bool:
 def run(words: list[str]) -> int:
     """Open the window, on a file or on the first demo specimen, and stay until it is closed."""
     if not has_screen():
-        print(NO_SCREEN, file=sys.stderr)  # noqa: T201 - said before there is a window
+        print(NO_SCREEN, file=sys.stderr)
         return 2
     try:
         state = first_state(open_file(Path(words[0])) if words else open_demo(FIRST_DEMO))
     except InputError as error:
-        print(f"tricline: {error}", file=sys.stderr)  # noqa: T201 - likewise
+        print(f"tricline: {error}", file=sys.stderr)
         return 2
     faulthandler.enable()
     QApplication.setAttribute(Qt.ApplicationAttribute.AA_ShareOpenGLContexts)
@@ -212,15 +234,18 @@ def _breathe() -> None:
     """Do nothing: reaching Python is enough for a waiting signal to be seen."""
 
 
-def _report(window: Window, kind: type[BaseException], error: BaseException,
-            trace: TracebackType | None) -> None:
+def _report(
+    window: Window, kind: type[BaseException], error: BaseException, trace: TracebackType | None
+) -> None:
     """Log a defect of the program and say so; the state on the bench is untouched."""
     text = "".join(traceback.format_exception(kind, error, trace))
     log.error("%s", text)
     box = QMessageBox(window)
     box.setIcon(QMessageBox.Icon.Critical)
     box.setWindowTitle("Tricline")
-    box.setText("Something in the program went wrong. Your work is as it was; saving it now is "
-                "a good idea.")
+    box.setText(
+        "Something in the program went wrong. Your work is as it was; saving it now is "
+        "a good idea."
+    )
     box.setDetailedText(text)
     box.exec()

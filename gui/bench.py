@@ -48,8 +48,11 @@ class Bench(QObject):
 
     def _apply(self, state: BenchState) -> None:
         old, self._state = self._state, state
-        names = frozenset(field.name for field in fields(BenchState)
-                          if getattr(old, field.name) != getattr(state, field.name))
+        names = frozenset(
+            field.name
+            for field in fields(BenchState)
+            if getattr(old, field.name) != getattr(state, field.name)
+        )
         if names:
             self.changed.emit(state, names)
 
@@ -57,8 +60,14 @@ class Bench(QObject):
 class _Snapshot(QUndoCommand):
     """One step: the state before, the state after."""
 
-    def __init__(self, apply: Callable[[BenchState], None], old: BenchState, new: BenchState,
-                 label: str, merge: str) -> None:
+    def __init__(
+        self,
+        apply: Callable[[BenchState], None],
+        old: BenchState,
+        new: BenchState,
+        label: str,
+        merge: str,
+    ) -> None:
         super().__init__(label)
         self._apply = apply
         self._old, self._new = old, new

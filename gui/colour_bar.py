@@ -83,8 +83,9 @@ def draw_colour_bar(
     strip = _strip(rect, metrics, scale)
     painter.setPen(theme.colour("secondary"))
     title = metrics.elidedText(view.title, Qt.TextElideMode.ElideRight, rect.width())
-    top = QRectF(rect.left(), strip.top() - metrics.height() - 2 * scale, rect.width(),
-                 metrics.height())
+    top = QRectF(
+        rect.left(), strip.top() - metrics.height() - 2 * scale, rect.width(), metrics.height()
+    )
     painter.drawText(top, Qt.AlignmentFlag.AlignCenter, title)
     painter.setPen(QPen(theme.colour("hairline"), scale))
     painter.setBrush(_gradient(strip, view))

@@ -13,8 +13,8 @@ from core.files.text import write_bytes
 from gui.actions import LINE, Entry, Menus
 from gui.bench import Bench
 from gui.cameras import Cameras
-from gui.dressing import Dressing
 from gui.documents import Documents, demo_files, open_demo
+from gui.dressing import Dressing
 from gui.intents import LedgerIntents, StageIntents
 from gui.pictures import png_bytes, stage_picture
 from gui.window import Window
@@ -23,9 +23,16 @@ from gui.window import Window
 class Commands:
     """What the menus can do; holds the parts they act on."""
 
-    def __init__(self, bench: Bench, window: Window, documents: Documents,
-                 ledger: LedgerIntents, stage: StageIntents, cameras: Cameras,
-                 dressing: Dressing) -> None:
+    def __init__(
+        self,
+        bench: Bench,
+        window: Window,
+        documents: Documents,
+        ledger: LedgerIntents,
+        stage: StageIntents,
+        cameras: Cameras,
+        dressing: Dressing,
+    ) -> None:
         self._bench, self._window, self._documents = bench, window, documents
         self._ledger, self._stage = ledger, stage
         self._cameras, self._dressing = cameras, dressing
@@ -33,24 +40,37 @@ class Commands:
     def menus(self, help_entries: tuple[Entry, ...]) -> Menus:
         """Return the whole menu table."""
         return (
-            ("&File", self._file_menu()), ("&Edit", self._edit_menu()),
-            ("&Specimen", self._specimen_menu()), ("&Orientation", self._orientation_menu()),
-            ("&View", self._view_menu()), ("&Help", help_entries),
+            ("&File", self._file_menu()),
+            ("&Edit", self._edit_menu()),
+            ("&Specimen", self._specimen_menu()),
+            ("&Orientation", self._orientation_menu()),
+            ("&View", self._view_menu()),
+            ("&Help", help_entries),
         )
 
     def _file_menu(self) -> tuple[Entry, ...]:
         documents = self._documents
         return (
-            Entry("&Open…", documents.ask_open, "Ctrl+O", "Open a specimen, a bench or a table"),
+            Entry(
+                "&Open…", documents.ask_open, "Ctrl+O", "Open a specimen, a bench or a table"
+            ),
             Entry("Open &recent", submenu=self._fill_recent),
             Entry("Open a &demo specimen", submenu=self._fill_demos),
             LINE,
             Entry("&Save", documents.save, "Ctrl+S", "Save to the file it came from"),
-            Entry("Save &as…", documents.ask_save, "Ctrl+Shift+S",
-                  "Save a bench with its view, or the specimen alone"),
+            Entry(
+                "Save &as…",
+                documents.ask_save,
+                "Ctrl+Shift+S",
+                "Save a bench with its view, or the specimen alone",
+            ),
             LINE,
-            Entry("Save stage &picture…", self.save_picture, "Ctrl+E",
-                  "Save what the stage shows as a PNG file"),
+            Entry(
+                "Save stage &picture…",
+                self.save_picture,
+                "Ctrl+E",
+                "Save what the stage shows as a PNG file",
+            ),
             LINE,
             Entry("&Quit", self._window.close, "Ctrl+Q", "Close the window"),
         )
@@ -61,63 +81,131 @@ class Commands:
             Entry("&Undo", history.undo, "Ctrl+Z", "Take the last change back"),
             Entry("&Redo", history.redo, "Ctrl+Shift+Z", "Make it again"),
             LINE,
-            Entry("Copy the &matrix", views.constants.table.copy_matrix, "Ctrl+M",
-                  "Copy the shown face of the 6×6, tab-separated, at full precision"),
-            Entry("Copy the r&eading", views.pin.table.copy_table, "Ctrl+R",
-                  "Copy the table at the pin"),
-            Entry("Copy stage &picture", self.copy_picture, "Ctrl+Shift+C",
-                  "Copy what the stage shows"),
-            Entry("&Paste constants", views.constants.table.paste, "Ctrl+Shift+V",
-                  "Put a pasted 6×6, triangle or list into the grid"),
+            Entry(
+                "Copy the &matrix",
+                views.constants.table.copy_matrix,
+                "Ctrl+M",
+                "Copy the shown face of the 6×6, tab-separated, at full precision",
+            ),
+            Entry(
+                "Copy the r&eading",
+                views.pin.table.copy_table,
+                "Ctrl+R",
+                "Copy the table at the pin",
+            ),
+            Entry(
+                "Copy stage &picture",
+                self.copy_picture,
+                "Ctrl+Shift+C",
+                "Copy what the stage shows",
+            ),
+            Entry(
+                "&Paste constants",
+                views.constants.table.paste,
+                "Ctrl+Shift+V",
+                "Put a pasted 6×6, triangle or list into the grid",
+            ),
         )
 
     def _specimen_menu(self) -> tuple[Entry, ...]:
         documents, ledger = self._documents, self._ledger
         return (
-            Entry("Make the class &exact", ledger.make_exact, "",
-                  "Replace the table by the nearest one of its class"),
+            Entry(
+                "Make the class &exact",
+                ledger.make_exact,
+                "",
+                "Replace the table by the nearest one of its class",
+            ),
             LINE,
-            Entry("&Another crystal in B…", documents.ask_other, "",
-                  "Compare with a second specimen"),
+            Entry(
+                "&Another crystal in B…",
+                documents.ask_other,
+                "",
+                "Compare with a second specimen",
+            ),
             Entry("Another crystal in B, from the &demos", submenu=self._fill_other),
-            Entry("&One crystal for A and B", ledger.one_crystal, "",
-                  "Let B show the crystal of A again"),
+            Entry(
+                "&One crystal for A and B",
+                ledger.one_crystal,
+                "",
+                "Let B show the crystal of A again",
+            ),
         )
 
     def _orientation_menu(self) -> tuple[Entry, ...]:
         ledger = self._ledger
         return (
             Entry("&Swap A and B", ledger.swap, "Ctrl+T", "Exchange the two sides"),
-            Entry("Copy A to &B", partial(ledger.copy_from, "A"), "",
-                  "Give B the orientation of A"),
-            Entry("Copy B to &A", partial(ledger.copy_from, "B"), "",
-                  "Give A the orientation of B"),
-            Entry("&Reset both", ledger.reset_orientations, "",
-                  "Part axes along the crystal axes"),
+            Entry(
+                "Copy A to &B",
+                partial(ledger.copy_from, "A"),
+                "",
+                "Give B the orientation of A",
+            ),
+            Entry(
+                "Copy B to &A",
+                partial(ledger.copy_from, "B"),
+                "",
+                "Give A the orientation of B",
+            ),
+            Entry(
+                "&Reset both", ledger.reset_orientations, "", "Part axes along the crystal axes"
+            ),
         )
 
     def _view_menu(self) -> tuple[Entry, ...]:
         look, theme = self._cameras.look_from, self._dressing
         layouts = tuple(
-            Entry(words, partial(self._stage.choose_layout, layout), keys, group="layout",
-                  is_on=partial(self._has_layout, layout))
-            for words, layout, keys in (("Pane &A", "A", "Ctrl+1"),
-                                        ("Panes A &and B", "AB", "Ctrl+2"),
-                                        ("Pane &B", "B", "Ctrl+3")))
+            Entry(
+                words,
+                partial(self._stage.choose_layout, layout),
+                keys,
+                group="layout",
+                is_on=partial(self._has_layout, layout),
+            )
+            for words, layout, keys in (
+                ("Pane &A", "A", "Ctrl+1"),
+                ("Panes A &and B", "AB", "Ctrl+2"),
+                ("Pane &B", "B", "Ctrl+3"),
+            )
+        )
         looks = tuple(
             Entry(f"Look along part &{axis}", partial(look, axis), f"Ctrl+Shift+{axis}")
-            for axis in "XY") + (Entry("Look along part &Z", partial(look, "Z"), "Ctrl+Alt+Z"),)
+            for axis in "XY"
+        ) + (Entry("Look along part &Z", partial(look, "Z"), "Ctrl+Alt+Z"),)
         return (
-            *layouts, LINE, *looks, Entry("&First view", partial(look, "home"), "Home"), LINE,
-            Entry("&Light theme", partial(theme.choose, "light"), group="theme",
-                  is_on=partial(theme.is_chosen, "light")),
-            Entry("&Night theme", partial(theme.choose, "night"), group="theme",
-                  is_on=partial(theme.is_chosen, "night")),
+            *layouts,
             LINE,
-            Entry("&Ledger", self._toggle_ledger, "F8", "Show or hide the ledger",
-                  is_on=self._window.ledger_panel.isVisible),
-            Entry("&Reading", self._toggle_reading, "F9", "Show or hide the reading",
-                  is_on=self._window.reading_panel.isVisible),
+            *looks,
+            Entry("&First view", partial(look, "home"), "Home"),
+            LINE,
+            Entry(
+                "&Light theme",
+                partial(theme.choose, "light"),
+                group="theme",
+                is_on=partial(theme.is_chosen, "light"),
+            ),
+            Entry(
+                "&Night theme",
+                partial(theme.choose, "night"),
+                group="theme",
+                is_on=partial(theme.is_chosen, "night"),
+            ),
+            LINE,
+            Entry(
+                "&Ledger",
+                self._toggle_ledger,
+                "F8",
+                "Show or hide the ledger",
+                is_on=self._window.ledger_panel.isVisible,
+            ),
+            Entry(
+                "&Reading",
+                self._toggle_reading,
+                "F9",
+                "Show or hide the reading",
+                is_on=self._window.reading_panel.isVisible,
+            ),
         )
 
     def _has_layout(self, layout: str) -> bool:
@@ -161,13 +249,16 @@ class Commands:
     # -------------------------------------------------------------- pictures
     def copy_picture(self) -> None:
         """Put what the stage shows on the clipboard."""
-        QGuiApplication.clipboard().setImage(stage_picture(self._window.views, self._bench.state))
+        QGuiApplication.clipboard().setImage(
+            stage_picture(self._window.views, self._bench.state)
+        )
         self._window.show_message("Picture of the stage copied")
 
     def save_picture(self) -> None:
         """Ask for a file and save what the stage shows as PNG."""
         path, _ = QFileDialog.getSaveFileName(
-            self._window, "Save stage picture", "stage.png", "PNG picture (*.png)")
+            self._window, "Save stage picture", "stage.png", "PNG picture (*.png)"
+        )
         if not path:
             return
         target = Path(path) if path.lower().endswith(".png") else Path(path + ".png")

@@ -40,6 +40,8 @@ class Deck(QWidget):
             choice.activated.connect(self._choose)
             self.choices.append(choice)
             plot.header.insertWidget(0, choice)
+            plot.header.insertStretch(1)
+            plot.title.hide()  # the colour bar and the axes say what is plotted
             self._stack.addWidget(plot)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)

@@ -20,9 +20,10 @@ from core.state import BenchState, OrientationChoice
 from gui.bench import Bench
 from gui.window import Window
 
-FIRST_DEMO = "blank_lm7_triclinic.json"
-_FILTERS = ("Everything Tricline reads (*.tricline *.json *.txt *.csv *.dat *.tsv);;"
-            "All files (*)")
+FIRST_DEMO = "two_cuts_lm7.tricline"
+_FILTERS = (
+    "Everything Tricline reads (*.tricline *.json *.txt *.csv *.dat *.tsv);;All files (*)"
+)
 _BENCH_FILTER = f"Bench, with orientations and view (*{SUFFIX})"
 _SPECIMEN_FILTER = "Specimen only (*.json)"
 _MOST_RECENT = 8
@@ -31,10 +32,16 @@ _MOST_RECENT = 8
 def demo_files() -> list[tuple[str, str]]:
     """Return (file name, specimen name) of the demo materials."""
     folder = resources.files("demo_materials")
-    names = sorted(entry.name for entry in folder.iterdir() if entry.name.endswith(".json"))
+    names = sorted(
+        entry.name for entry in folder.iterdir() if entry.name.endswith((".json", SUFFIX))
+    )
     with resources.as_file(folder) as path:
-        found = [(name, open_file(path / name).specimen.name) for name in names]
+        found = [(name, _demo_words(open_file(path / name))) for name in names]
     return sorted(found, key=lambda pair: pair[0] != FIRST_DEMO)
+
+
+def _demo_words(opened: Opened) -> str:
+    return opened.specimen.name + (", two cuts" if opened.bench is not None else "")
 
 
 def open_demo(name: str) -> Opened:
@@ -106,8 +113,9 @@ class Documents(QObject):
 
     def ask_other(self) -> None:
         """Let the user choose another crystal for B."""
-        path, _ = QFileDialog.getOpenFileName(self._window, "Another crystal for B",
-                                              self._folder(), _FILTERS)
+        path, _ = QFileDialog.getOpenFileName(
+            self._window, "Another crystal for B", self._folder(), _FILTERS
+        )
         if path:
             try:
                 self.use_other(open_file(Path(path)))
@@ -118,17 +126,24 @@ class Documents(QObject):
         """Show another crystal in B, in its own crystal axes."""
         state = self._bench.state
         display = replace(state.display, layout="AB")
-        self._bench.edit("Show another crystal in B", replace(
-            state, other=opened.specimen, orientation_b=OrientationChoice(), display=display))
+        self._bench.edit(
+            "Show another crystal in B",
+            replace(
+                state, other=opened.specimen, orientation_b=OrientationChoice(), display=display
+            ),
+        )
 
-    def _take(self, state: BenchState, path: Path | None, guesses: tuple[str, ...] = ()) -> None:
+    def _take(
+        self, state: BenchState, path: Path | None, guesses: tuple[str, ...] = ()
+    ) -> None:
         self.path = path if not guesses else None
         self._bench.load(state)
         if path is not None:
             self._remember(path)
         said = "; ".join(guesses)
-        self._window.show_message(f"Read with guesses: {said}" if said else
-                                  f"Opened {state.specimen.name}")
+        self._window.show_message(
+            f"Read with guesses: {said}" if said else f"Opened {state.specimen.name}"
+        )
         self.named.emit()
 
     def _open_dropped(self, paths: list[str]) -> None:
@@ -147,8 +162,11 @@ class Documents(QObject):
         """Let the user choose where to save a bench or a specimen."""
         stem = self.path.stem if self.path else _file_stem(self._bench.state.specimen.name)
         path, kind = QFileDialog.getSaveFileName(
-            self._window, "Save as", str(Path(self._folder()) / f"{stem}{SUFFIX}"),
-            f"{_BENCH_FILTER};;{_SPECIMEN_FILTER}")
+            self._window,
+            "Save as",
+            str(Path(self._folder()) / f"{stem}{SUFFIX}"),
+            f"{_BENCH_FILTER};;{_SPECIMEN_FILTER}",
+        )
         if not path:
             return False
         chosen = Path(path)
@@ -170,8 +188,11 @@ class Documents(QObject):
         self.path = path
         self._bench.history.setClean()
         self._remember(path)
-        part = " (the specimen only; a bench file keeps orientations and view)" if (
-            path.suffix == ".json" and state != BenchState(state.specimen)) else ""
+        part = (
+            " (the specimen only; a bench file keeps orientations and view)"
+            if (path.suffix == ".json" and state != BenchState(state.specimen))
+            else ""
+        )
         self._window.show_message(f"Saved {path.name}{part}")
         self.named.emit()
         return True
@@ -205,8 +226,11 @@ class Documents(QObject):
             event.ignore()
 
     def _folder(self) -> str:
-        return str(self.path.parent) if self.path else str(
-            self._settings.value("folder", str(Path.home())))
+        return (
+            str(self.path.parent)
+            if self.path
+            else str(self._settings.value("folder", str(Path.home())))
+        )
 
     def _remember(self, path: Path) -> None:
         whole = str(path.resolve())

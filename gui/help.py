@@ -27,8 +27,11 @@ CAUTIONS = (
 )
 _KEYS = (
     ("in the grid", "arrows, Tab and Enter move; typing replaces; F2 edits; Escape takes back"),
-    ("in a pane", "arrows turn; + and − zoom; a click puts the pin; a double click looks along "
-                  "the nearest part axis"),
+    (
+        "in a pane",
+        "arrows turn; + and − zoom; a click puts the pin; a double click looks along "
+        "the nearest part axis",
+    ),
     ("in a table", "Ctrl+C copies the selected lines at full precision"),
     ("in a turn field", "drag its letter sideways; Shift drags finely"),
 )
@@ -73,7 +76,8 @@ def quantities_html() -> str:
     return "".join(
         f"<h3>{entry.name} <i>{entry.symbol}</i>{', ' if entry.unit else ''}{entry.unit}</h3>"
         f"<p>{entry.definition}</p><p><small>{entry.source}</small></p>"
-        for entry in QUANTITIES.values()) + (
+        for entry in QUANTITIES.values()
+    ) + (
         "<h3>Averages and indices</h3>"
         "<p>Voigt (uniform strain), Reuss (uniform stress), Hill (their mean) and "
         "Hashin–Shtrikman (closest bounds without texture) of a random polycrystal; universal "
@@ -83,7 +87,8 @@ def quantities_html() -> str:
         "<h3>Strain spectrum</h3><p>The six eigenvalues of the stiffness in Kelvin form, with "
         "the strains they belong to. The crystal is stable when all six are positive.</p>"
         "<h3>Cutting error</h3><p>The least and the greatest value of a quantity when the part "
-        "is cut anywhere within a cone about the direction that was meant.</p>")
+        "is cut anywhere within a cone about the direction that was meant.</p>"
+    )
 
 
 def conventions_html() -> str:
@@ -101,17 +106,24 @@ def conventions_html() -> str:
         "said as:</p><ul>" + ways + "</ul>"
         "<h3>Directions</h3><p>[u v w] follows the cell's vectors, (h k l) is the normal of the "
         "plane; four indices for hexagonal and trigonal crystals, the third minus the sum of the "
-        "first two; 0.3,0.4,0.87 are components along the crystal axes.</p>")
+        "first two; 0.3,0.4,0.87 are components along the crystal axes.</p>"
+    )
 
 
 def keys_html(menus: Menus) -> str:
     """Return the list of keys, read from the menus themselves."""
-    rows = [(entry.words.replace("&", "").rstrip("…"), entry.keys)
-            for _, entries in menus for entry in entries if entry.keys]
-    lines = "".join(f"<tr><td>{words}&nbsp;&nbsp;</td><td><b>{keys}</b></td></tr>"
-                    for words, keys in rows)
-    places = "".join(f"<tr><td>{where}&nbsp;&nbsp;</td><td>{what}</td></tr>"
-                     for where, what in _KEYS)
+    rows = [
+        (entry.words.replace("&", "").rstrip("…"), entry.keys)
+        for _, entries in menus
+        for entry in entries
+        if entry.keys
+    ]
+    lines = "".join(
+        f"<tr><td>{words}&nbsp;&nbsp;</td><td><b>{keys}</b></td></tr>" for words, keys in rows
+    )
+    places = "".join(
+        f"<tr><td>{where}&nbsp;&nbsp;</td><td>{what}</td></tr>" for where, what in _KEYS
+    )
     return f"<table cellpadding='3'>{lines}</table><hr><table cellpadding='3'>{places}</table>"
 
 
@@ -128,4 +140,5 @@ def about_html(renderer_words: str) -> str:
         f"<p>Python {platform.python_version()}, numpy {np.__version__}, "
         f"scipy {scipy.__version__}, Qt for Python {PySide6.__version__}</p>"
         f"<p>Drawing: {renderer_words}</p>"
-        "<p>The diverging colour map is CET-D1A by Peter Kovesi (CC-BY).</p>")
+        "<p>The diverging colour map is CET-D1A by Peter Kovesi (CC-BY).</p>"
+    )

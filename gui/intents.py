@@ -25,8 +25,13 @@ from gui.presenting.stage import unit_vector
 from gui.window import Views
 
 _FIELD_WORDS = {
-    "crystal_class": "crystal class", "unique_axis": "unique axis", "density": "density",
-    "temperature": "temperature", "name": "name", "source": "source", "notes": "notes",
+    "crystal_class": "crystal class",
+    "unique_axis": "unique axis",
+    "density": "density",
+    "temperature": "temperature",
+    "name": "name",
+    "source": "source",
+    "notes": "notes",
 }
 
 
@@ -51,8 +56,13 @@ class Intents(QObject):
         super().__init__(parent)
         self.bench = bench
 
-    def attempt(self, build: Callable[[BenchState], BenchState], label: str,
-                refuse: Callable[[str], None], merge: str = "") -> None:
+    def attempt(
+        self,
+        build: Callable[[BenchState], BenchState],
+        label: str,
+        refuse: Callable[[str], None],
+        merge: str = "",
+    ) -> None:
         """Edit the bench; an input that cannot be used is refused in place."""
         try:
             self.bench.edit(label, build(self.bench.state), merge)
@@ -92,17 +102,21 @@ class LedgerIntents(Intents):
         face = self.bench.state.display.face
         self.attempt(
             lambda state: with_specimen(
-                state, edits.set_constant(self.specimen, face, row, column, text)),
+                state, edits.set_constant(self.specimen, face, row, column, text)
+            ),
             ledger.edit_label(face, row, column),
-            lambda message: self._views.constants.show_error(row, column, message))
+            lambda message: self._views.constants.show_error(row, column, message),
+        )
 
     def _paste(self, row: int, column: int, text: str) -> None:
         face = self.bench.state.display.face
         self.attempt(
             lambda state: with_specimen(
-                state, edits.set_block(self.specimen, face, row, column, text)),
+                state, edits.set_block(self.specimen, face, row, column, text)
+            ),
             "Paste constants",
-            lambda message: self._views.constants.show_error(row, column, message))
+            lambda message: self._views.constants.show_error(row, column, message),
+        )
 
     def _choose_face(self, face: str) -> None:
         self.show_choice(f"Show {ledger.NAMES[face].lower()}", face=face)
@@ -114,33 +128,37 @@ class LedgerIntents(Intents):
         self.attempt(
             lambda state: with_specimen(state, edits.set_field(self.specimen, field, text)),
             f"Change the {_FIELD_WORDS[field]}",
-            lambda message: self._views.specimen.show_error(field, message))
+            lambda message: self._views.specimen.show_error(field, message),
+        )
 
     def _set_cell(self, field: str, text: str) -> None:
         texts = self._views.cell.texts()
         self.attempt(
             lambda state: with_specimen(state, edits.set_cell(self.specimen, texts)),
             "Change the unit cell",
-            lambda message: self._views.cell.show_error(field, message))
+            lambda message: self._views.cell.show_error(field, message),
+        )
 
     def _set_axes(self, axes: str, re_express: bool) -> None:
         self.attempt(
-            lambda state: with_specimen(
-                state, edits.set_axes(self.specimen, axes, re_express)),
+            lambda state: with_specimen(state, edits.set_axes(self.specimen, axes, re_express)),
             "Turn the numbers into other axes" if re_express else "Rename the crystal axes",
-            lambda message: self._views.cell.show_error("axes", message))
+            lambda message: self._views.cell.show_error("axes", message),
+        )
 
     def make_exact(self) -> None:
         """Replace the table by the nearest one of its class."""
         state = self.bench.state
-        self.bench.edit("Make the class exact",
-                        with_specimen(state, edits.make_exact(self.specimen)))
+        self.bench.edit(
+            "Make the class exact", with_specimen(state, edits.make_exact(self.specimen))
+        )
 
     def swap(self) -> None:
         """Exchange A and B, crystals included."""
         state = self.bench.state
-        swapped = replace(state, orientation_a=state.orientation_b,
-                          orientation_b=state.orientation_a)
+        swapped = replace(
+            state, orientation_a=state.orientation_b, orientation_b=state.orientation_a
+        )
         if state.other is not None:
             swapped = replace(swapped, specimen=state.other, other=state.specimen)
         self.bench.edit("Swap A and B", swapped)
@@ -152,7 +170,8 @@ class LedgerIntents(Intents):
         self.attempt(
             lambda s: with_orientation(s, target, self._carried(state, side, target)),
             f"Copy the orientation of {side} to {target}",
-            lambda message: self._views.orientations[target].show_error("text", message))
+            lambda message: self._views.orientations[target].show_error("text", message),
+        )
 
     def _carried(self, state: BenchState, side: str, target: str) -> OrientationChoice:
         """Return the orientation of a side in words that the other side's crystal can read."""
@@ -160,7 +179,9 @@ class LedgerIntents(Intents):
         if state.other is None:
             return choice
         turn = live.rotation(choice, state.specimen_of(side))
-        return OrientationChoice(orientation_texts(turn, state.specimen_of(target).frame)["matrix"])
+        return OrientationChoice(
+            orientation_texts(turn, state.specimen_of(target).frame)["matrix"]
+        )
 
     def one_crystal(self) -> None:
         """Let B show the crystal of A again."""
@@ -171,8 +192,12 @@ class LedgerIntents(Intents):
     def reset_orientations(self) -> None:
         """Put both parts back along the crystal axes."""
         state = self.bench.state
-        self.bench.edit("Reset the orientations", replace(
-            state, orientation_a=OrientationChoice(), orientation_b=OrientationChoice()))
+        self.bench.edit(
+            "Reset the orientations",
+            replace(
+                state, orientation_a=OrientationChoice(), orientation_b=OrientationChoice()
+            ),
+        )
 
 
 class _OrientationIntents(Intents):
@@ -194,9 +219,14 @@ class _OrientationIntents(Intents):
     def _set_text(self, _field: str, text: str) -> None:
         frame = self.bench.state.specimen_of(self._side).frame
         self.attempt(
-            lambda state: with_orientation(state, self._side, replace(
-                self._choice, text=parse_orientation(text, frame).text)),
-            f"Orient {self._side}", lambda message: self._form.show_error("text", message))
+            lambda state: with_orientation(
+                state,
+                self._side,
+                replace(self._choice, text=parse_orientation(text, frame).text),
+            ),
+            f"Orient {self._side}",
+            lambda message: self._form.show_error("text", message),
+        )
 
     def _say_otherwise(self, way: str) -> None:
         """Say the same orientation, turns included, in another way."""
@@ -207,16 +237,20 @@ class _OrientationIntents(Intents):
             text = "identity"
         if text is None:
             return
-        self.bench.edit(f"Say {self._side} in another way", with_orientation(
-            self.bench.state, self._side, OrientationChoice(text)))
+        self.bench.edit(
+            f"Say {self._side} in another way",
+            with_orientation(self.bench.state, self._side, OrientationChoice(text)),
+        )
 
     def _turn(self, axis: int, degrees: float) -> None:
         turn = list(self._choice.turn)
         turn[axis] = degrees
         choice = replace(self._choice, turn=(turn[0], turn[1], turn[2]))
-        self.bench.edit(f"Turn {self._side} about part {'XYZ'[axis]}",
-                        with_orientation(self.bench.state, self._side, choice),
-                        merge=f"turn {self._side} {axis} {self._drag}")
+        self.bench.edit(
+            f"Turn {self._side} about part {'XYZ'[axis]}",
+            with_orientation(self.bench.state, self._side, choice),
+            merge=f"turn {self._side} {axis} {self._drag}",
+        )
 
     def _end_drag(self) -> None:
         self._drag += 1
@@ -242,8 +276,7 @@ class StageIntents(Intents):
         """Put another quantity on the stage."""
         from core.directional.quantities import quantity
 
-        self.bench.edit(f"Show {quantity(key).name}",
-                        replace(self.bench.state, quantity=key))
+        self.bench.edit(f"Show {quantity(key).name}", replace(self.bench.state, quantity=key))
 
     def choose_layout(self, layout: str) -> None:
         """Show pane A, B or both."""
@@ -252,22 +285,27 @@ class StageIntents(Intents):
 
     def toggle(self, name: str, on: bool) -> None:
         """Turn a display option on or off; see `core.state.Display`."""
-        self.show_choice(f"{'Turn on' if on else 'Turn off'} {name.replace('_', ' ')}",
-                         **{name: on})
+        self.show_choice(
+            f"{'Turn on' if on else 'Turn off'} {name.replace('_', ' ')}", **{name: on}
+        )
 
     def _toggle_sheet(self, sheet: int, on: bool) -> None:
         sheets = list(self.bench.state.display.sheets)
         sheets[sheet] = on
-        self.show_choice("Show a sheet" if on else "Hide a sheet",
-                         sheets=(sheets[0], sheets[1], sheets[2]))
+        self.show_choice(
+            "Show a sheet" if on else "Hide a sheet", sheets=(sheets[0], sheets[1], sheets[2])
+        )
 
     def _colour_by(self, key: str) -> None:
         self.show_choice("Colour by another value", colour_by=key)
 
     def choose_plane(self, text: str) -> None:
         """Cut by a listed plane or by the plane whose normal is typed."""
-        self.attempt(lambda state: self._with_plane(state, text), "Move the section plane",
-                     self._refuse_plane)
+        self.attempt(
+            lambda state: self._with_plane(state, text),
+            "Move the section plane",
+            self._refuse_plane,
+        )
 
     def _with_plane(self, state: BenchState, text: str) -> BenchState:
         normal = deck.plane_normal(state, text) or self.part_direction(state, text)
@@ -279,13 +317,15 @@ class StageIntents(Intents):
     def move_pin(self, direction: Vector3) -> None:
         """Put the pin on another direction, part axes."""
         pin = unit_vector(np.array(direction))
-        self.bench.edit("Move the pin", replace(self.bench.state, pin=pin))
+        self.bench.edit("Move the pin", replace(self.bench.state, pin=pin), merge="pin")
 
     def type_pin(self, text: str) -> None:
         """Put the pin on a direction said in the crystal's words (of A, or the one shown)."""
-        self.attempt(lambda state: replace(state, pin=self.part_direction(state, text)),
-                     "Move the pin",
-                     lambda message: self._views.pin.show_error("direction", message))
+        self.attempt(
+            lambda state: replace(state, pin=self.part_direction(state, text)),
+            "Move the pin",
+            lambda message: self._views.pin.show_error("direction", message),
+        )
 
     @staticmethod
     def part_direction(state: BenchState, text: str) -> Vector3:
@@ -299,8 +339,9 @@ class StageIntents(Intents):
 class DeckIntents(Intents):
     """Edits from the section, the hemisphere, the sweep and the reading."""
 
-    def __init__(self, bench: Bench, views: Views, stage: StageIntents,
-                 parent: QObject | None = None) -> None:
+    def __init__(
+        self, bench: Bench, views: Views, stage: StageIntents, parent: QObject | None = None
+    ) -> None:
         super().__init__(bench, parent)
         self._views, self._stage = views, stage
         views.section.angle_picked.connect(self._pick_angle)
@@ -346,16 +387,20 @@ class DeckIntents(Intents):
         self.show_choice("Sweep about another axis", sweep_about=deck.sweep_choice(key))
 
     def _set_cutting_error(self, _field: str, text: str) -> None:
-        self.attempt(self._with_cutting_error(text), "Change the cutting error",
-                     lambda message: self._views.cutting_error.show_error(
-                         "cutting_error", message))
+        self.attempt(
+            self._with_cutting_error(text),
+            "Change the cutting error",
+            lambda message: self._views.cutting_error.show_error("cutting_error", message),
+        )
 
     @staticmethod
     def _with_cutting_error(text: str) -> Callable[[BenchState], BenchState]:
         def build(state: BenchState) -> BenchState:
             degrees = parse_number(text.replace("°", "").replace("±", ""), "cutting error")
             if not 0.0 < degrees <= 30.0:
-                raise InputError("A cutting error lies above 0° and goes up to 30°.",
-                                 where="cutting error")
+                raise InputError(
+                    "A cutting error lies above 0° and goes up to 30°.", where="cutting error"
+                )
             return replace(state, cutting_error_deg=degrees)
+
         return build

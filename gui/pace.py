@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+import time
+
 from PySide6.QtCore import QObject, QTimer, Signal
 
 REST_MS = 150
+FOLLOW_MS = 80.0  # panels of numbers follow a movement about this often
 FRAME_BUDGET_MS = 16.0
 _MEMORY = 0.7  # weight of the past in the running mean of frame times
 
@@ -24,6 +27,7 @@ class Pace(QObject):
         super().__init__(parent)
         self._fine_frame_ms: float | None = None
         self._moving = False
+        self._followed = 0.0
         self._timer = QTimer(self, singleShot=True, interval=REST_MS)
         self._timer.timeout.connect(self._rest)
 
@@ -38,6 +42,14 @@ class Pace(QObject):
         """Whether a change came within the last moment."""
         return self._moving
 
+    def may_follow(self) -> bool:
+        """Return whether what need not be seen in every frame should be shown now."""
+        now = 1e3 * time.perf_counter()
+        if now - self._followed < FOLLOW_MS:
+            return False
+        self._followed = now
+        return True
+
     def move(self) -> None:
         """Note that something changes right now."""
         self._moving = True
@@ -48,8 +60,9 @@ class Pace(QObject):
         if not fine:
             return
         past = self._fine_frame_ms
-        self._fine_frame_ms = milliseconds if past is None else (
-            _MEMORY * past + (1 - _MEMORY) * milliseconds)
+        self._fine_frame_ms = (
+            milliseconds if past is None else (_MEMORY * past + (1 - _MEMORY) * milliseconds)
+        )
 
     def stop(self) -> None:
         """Let no timer run on."""

@@ -32,9 +32,7 @@ class Disclosure(QAbstractButton):
     def sizeHint(self) -> QSize:
         """Ask for the arrow and the words."""
         metrics = self.fontMetrics()
-        return QSize(
-            metrics.horizontalAdvance(self.text()) + INDENT + 6, metrics.height() + 6
-        )
+        return QSize(metrics.horizontalAdvance(self.text()) + INDENT + 6, metrics.height() + 6)
 
     def minimumSizeHint(self) -> QSize:
         """Never cut a heading."""
@@ -124,7 +122,11 @@ class Section(_Folding):
     """
 
     def __init__(
-        self, title: str, widget: QWidget, aside: str = "", is_open: bool = True,
+        self,
+        title: str,
+        widget: QWidget,
+        aside: str = "",
+        is_open: bool = True,
         ruled: bool = True,
     ) -> None:
         super().__init__(title, widget, is_open, bold=True)

@@ -1,7 +1,8 @@
-"""The presenter: whenever the state changes, every view that draws a changed name is shown anew.
+"""The presenter: whenever the state changes, the views that draw a changed name are shown anew.
 
 A table says which region of the window draws which fields of the state. While something moves
-only the live regions follow, on the coarse mesh; the rest follows once it rests.
+the stage follows in every frame, on the coarse mesh; tables follow several times a second and
+the costly ones once it rests.
 """
 
 from __future__ import annotations
@@ -40,20 +41,26 @@ class Region:
         Fields of the state that it draws.
     show : callable
         Draws it; takes the state and whether to draw finely.
-    is_live : bool
-        Whether it follows while something moves.
+    follows : "always", "often" or "at rest"
+        How closely it follows while something moves.
     """
 
     watches: frozenset[str]
     show: Callable[[BenchState, bool], None]
-    is_live: bool = True
+    follows: str
 
 
 class Presenter(QObject):
     """Keeps the window in step with the bench."""
 
-    def __init__(self, bench: Bench, scheduler: Scheduler, pace: Pace, window: Window,
-                 parent: QObject | None = None) -> None:
+    def __init__(
+        self,
+        bench: Bench,
+        scheduler: Scheduler,
+        pace: Pace,
+        window: Window,
+        parent: QObject | None = None,
+    ) -> None:
         super().__init__(parent)
         self._bench, self._scheduler, self._pace, self._window = bench, scheduler, pace, window
         self._views = window.views
@@ -77,19 +84,22 @@ class Presenter(QObject):
         """Return which region draws what."""
         stage_names = _PARTS | {"pin", "section", "quantity", "display"}
         table = (
-            (_CRYSTALS | {"display"}, self._show_ledger, True),
-            (_PARTS | {"display"}, self._show_orientations, True),
-            (_CRYSTALS | {"quantity", "section", "display"}, self._show_toolbar, True),
-            (stage_names, self._show_panes, True),
-            (stage_names, self._show_section, True),
-            (stage_names | {"cutting_error_deg"}, self._show_deck, True),
-            (_PARTS | {"pin", "display"}, self._show_reading, True),
-            (_PARTS | {"pin", "quantity", "display", "cutting_error_deg"},
-             self._show_cutting_error, False),
-            (_PARTS | {"display"}, self._show_tables, False),
-            (_PARTS | {"display"}, self._show_extremes, False),
+            (_CRYSTALS | {"display"}, self._show_ledger, "always"),
+            (_PARTS | {"display"}, self._show_orientations, "always"),
+            (_CRYSTALS | {"quantity", "section", "display"}, self._show_toolbar, "always"),
+            (stage_names, self._show_panes, "always"),
+            (stage_names, self._show_section, "always"),
+            (stage_names | {"cutting_error_deg"}, self._show_deck, "often"),
+            (_PARTS | {"pin", "display"}, self._show_reading, "often"),
+            (
+                _PARTS | {"pin", "quantity", "display", "cutting_error_deg"},
+                self._show_cutting_error,
+                "at rest",
+            ),
+            (_PARTS | {"display"}, self._show_tables, "at rest"),
+            (_PARTS | {"display"}, self._show_extremes, "at rest"),
         )
-        return tuple(Region(frozenset(names), show, is_live) for names, show, is_live in table)
+        return tuple(Region(frozenset(names), show, follows) for names, show, follows in table)
 
     # -------------------------------------------------------------- when to show
     def show_all(self) -> None:
@@ -106,14 +116,16 @@ class Presenter(QObject):
     @Slot(object, object)
     def _on_changed(self, state: BenchState, names: frozenset[str]) -> None:
         self._started = time.perf_counter()
+        first = not self._pace.is_moving
         self._pace.move()
         fine = self._pace.is_fine
+        now = {"always": True, "often": self._pace.may_follow() or first, "at rest": False}
         for number, region in enumerate(self._regions):
             if not names & region.watches:
                 continue
-            if region.is_live:
+            if now[region.follows]:
                 region.show(state, fine)
-            if not (region.is_live and fine):
+            if not (now[region.follows] and fine):
                 self._stale.add(number)
 
     @Slot()
@@ -167,6 +179,7 @@ class Presenter(QObject):
         self._views.pin.show_view(reading.reading_view(state))
 
     def _show_cutting_error(self, state: BenchState, _fine: bool) -> None:
+        self._views.cutting_error.show_half_angle(f"{state.cutting_error_deg:g}")
         self._views.cutting_error.show_view(reading.cutting_error_view(state))
 
     def _show_tables(self, state: BenchState, _fine: bool) -> None:
@@ -191,11 +204,13 @@ class Presenter(QObject):
         found = self._extremes.get(key)
         shown = found if found is not None else next(iter(self._extremes.values()), None)
         self._views.extremes.show_view(
-            reading.extremes_view(specimen, turn, shown, pending=found is None))
+            reading.extremes_view(specimen, turn, shown, pending=found is None)
+        )
         if found is None:
             medium = live.crystal_medium(*key)
-            self._scheduler.submit(Job(_EXTREMES, (key, medium), _find_extremes,
-                                       "Extremes over all directions"))
+            self._scheduler.submit(
+                Job(_EXTREMES, (key, medium), _find_extremes, "Extremes over all directions")
+            )
 
     @Slot(str, object, object)
     def _on_finished(self, kind: str, request: Any, result: Any) -> None:

@@ -155,19 +155,21 @@ class Scheduler(QObject):
 class _Worker(QRunnable):
     """Carries one job to the worker thread and speaks only through the scheduler's signals."""
 
-    def __init__(self, serial: int, job: Job, stop: threading.Event, reported: Any,
-                 ended: Any) -> None:
+    def __init__(
+        self, serial: int, job: Job, stop: threading.Event, reported: Any, ended: Any
+    ) -> None:
         super().__init__()
         self._serial, self._job, self._stop = serial, job, stop
         self._reported, self._ended = reported, ended
 
     def run(self) -> None:
         """Run the job and send its result or its error back."""
-        ticker = Ticker(lambda fraction: self._reported.emit(self._serial, fraction),
-                        self._stop.is_set)
+        ticker = Ticker(
+            lambda fraction: self._reported.emit(self._serial, fraction), self._stop.is_set
+        )
         result, error = None, None
         try:
             result = self._job.run(self._job.request, ticker)
-        except Exception as caught:  # noqa: BLE001 - the worker's boundary: sent on, raised there
+        except Exception as caught:
             error = caught
         self._ended.emit(self._serial, result, error)

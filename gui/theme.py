@@ -7,7 +7,7 @@ from functools import lru_cache
 
 import numpy as np
 import numpy.typing as npt
-from PySide6.QtGui import QColor, QFont, QPalette
+from PySide6.QtGui import QColor, QFont, QFontInfo, QPalette
 from PySide6.QtWidgets import QApplication
 
 SEQUENTIAL_MAP = "viridis"
@@ -47,11 +47,13 @@ class Theme:
 
     @staticmethod
     def font(size: str = "body", scale: float = 1.0, bold: bool = False) -> QFont:
-        """Return the one type family in one of three sizes: "small", "body", "title"."""
+        """Return the one type family in one of three sizes: "small", "body", "title".
+
+        In pixels, so that it comes out alike on the screen and on a page of 1200 dots an inch.
+        """
         font = QApplication.font()
-        base = font.pointSizeF() if font.pointSizeF() > 0 else 10.0
         factor = {"small": 0.88, "body": 1.0, "title": 1.2}[size]
-        font.setPointSizeF(base * factor * scale)
+        font.setPixelSize(max(1, round(QFontInfo(font).pixelSize() * factor * scale)))
         font.setBold(bold)
         return font
 
@@ -139,8 +141,11 @@ def palette(theme: Theme) -> QPalette:
     result = QPalette()
     for role, colour in roles.items():
         result.setColor(role, QColor(colour))
-    for role in (QPalette.ColorRole.WindowText, QPalette.ColorRole.Text,
-                 QPalette.ColorRole.ButtonText):
+    for role in (
+        QPalette.ColorRole.WindowText,
+        QPalette.ColorRole.Text,
+        QPalette.ColorRole.ButtonText,
+    ):
         result.setColor(QPalette.ColorGroup.Disabled, role, QColor(theme.faint))
     return result
 
@@ -189,12 +194,14 @@ QPushButton:checked, QToolButton:checked {{ background: {hover}; border: 1px sol
 QPushButton:disabled, QToolButton:disabled {{ color: {faint}; }}
 QPushButton[role="link"], QToolButton[role="link"] {{ border: none; color: {a};
     background: transparent; padding: 0 2px; text-decoration: underline; }}
+QPushButton[role="link"]:disabled {{ color: {faint}; }}
 QPushButton[role="link"]:focus {{ border: 1px dotted {a}; }}
 QPushButton[role="face"] {{ border: none; border-bottom: 2px solid transparent;
     background: transparent; color: {secondary}; padding: 2px 1px; border-radius: 0; }}
 QPushButton[role="face"]:checked {{ color: {a}; border-bottom: 2px solid {a};
     font-weight: bold; }}
 QPushButton[role="face"]:focus {{ border-bottom: 2px dotted {a}; }}
+QAbstractSpinBox::up-button, QAbstractSpinBox::down-button {{ width: 0; border: none; }}
 QCheckBox {{ background: transparent; spacing: 5px; }}
 QCheckBox:focus {{ color: {a}; }}
 QTableView {{ background: {panel}; gridline-color: {hairline}; border: 1px solid {hairline};
@@ -219,7 +226,7 @@ QProgressBar::chunk {{ background: {a}; }}
 """
 
 
-def style_sheet(theme: Theme, arrow: str = "") -> str:
+def style_sheet(theme: Theme, arrow: str) -> str:
     """Return the application's style sheet; `arrow` is the file of the combo box arrow."""
     roles = {name: getattr(theme, name) for name in Theme.__dataclass_fields__}
     return _STYLE_SHEET.format(arrow=arrow, **roles)

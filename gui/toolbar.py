@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import NamedTuple
 
 from PySide6.QtCore import QPoint, QRect, QSize, Qt, Signal
-from PySide6.QtGui import QAction, QPainter, QPaintEvent, QResizeEvent, QStandardItemModel
+from PySide6.QtGui import QAction, QResizeEvent, QStandardItemModel
 from PySide6.QtWidgets import (
     QButtonGroup,
     QHBoxLayout,
@@ -15,7 +15,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, current_theme, label
+from gui.forms import Choice, label
 from gui.viewdata import ToolbarView
 
 MARGIN = 8
@@ -34,25 +34,41 @@ class Option(NamedTuple):
     tooltip: str
     on_row: bool = False  # has a button on the row when there is room
     waves_only: bool = False
+    pairs_only: bool = False  # means nothing while one pane is shown
 
 
 OPTIONS = (
-    Option("linked_cameras", "Turn together", "Turn A and B with one camera.", on_row=True),
     Option(
-        "shared_scale", "Same scale", "Draw A and B at one size and with one range of colours.",
+        "linked_cameras",
+        "Turn together",
+        "Turn A and B with one camera.",
         on_row=True,
+        pairs_only=True,
     ),
     Option(
-        "cut_away", "Cut open", "Open the surfaces at the section plane to see inside.",
+        "shared_scale",
+        "Same scale",
+        "Draw A and B at one size and with one range of colours.",
+        on_row=True,
+        pairs_only=True,
+    ),
+    Option(
+        "cut_away",
+        "Cut open",
+        "Open the surfaces at the section plane to see inside.",
         on_row=True,
     ),
     Option("crystal_axes", "Crystal axes a, b, c", "Draw a, b, c beside the part axes."),
     Option(
-        "marks", "Axes of degeneracy", "Mark the directions in which two sheets touch.",
+        "marks",
+        "Axes of degeneracy",
+        "Mark the directions in which two sheets touch.",
         waves_only=True,
     ),
     Option(
-        "ticks", "Polarisation ticks", "Draw the direction of motion on the sheets.",
+        "ticks",
+        "Polarisation ticks",
+        "Draw the direction of motion on the sheets.",
         waves_only=True,
     ),
 )
@@ -161,6 +177,7 @@ class StageToolbar(QWidget):
         self._sheets: list[QToolButton] = []
         self._actions: dict[str, QAction] = {}
         self._option_buttons: dict[str, QToolButton] = {}
+        self._in_use: dict[Group, bool] = {}
         self._make_groups()
         self._connect()
 
@@ -170,15 +187,17 @@ class StageToolbar(QWidget):
         self._quantity.elide_mode = Qt.TextElideMode.ElideMiddle
         self._colour.setMinimumContentsLength(8)
         self._plane.setMinimumContentsLength(7)
+        self._colour_group = Group("Colour", self._colour)
+        self._plane_group = Group("Section", self._plane)
         self._sheets_group = self._make_sheets()
         self._option_groups = self._make_options()
         self._groups = [
             Group("Quantity", self._quantity),
             self._sheets_group,
             self._make_layouts(),
-            Group("Colour", self._colour),
-            Group("Section", self._plane),
-            *self._option_groups,
+            self._colour_group,
+            self._plane_group,
+            *self._option_groups.values(),
             Group("", self._make_view_button()),
         ]
         for group in self._groups:
@@ -201,7 +220,7 @@ class StageToolbar(QWidget):
             self._sheets.append(button)
         return Group("Sheets", *self._sheets, spacing=2)
 
-    def _make_options(self) -> list[Group]:
+    def _make_options(self) -> dict[str, Group]:
         for option in OPTIONS:
             action = QAction(option.words, self)
             action.setCheckable(True)
@@ -212,7 +231,7 @@ class StageToolbar(QWidget):
                 button = _tool(option.words, option.tooltip)
                 button.setDefaultAction(action)
                 self._option_buttons[option.name] = button
-        return [Group("", button) for button in self._option_buttons.values()]
+        return {name: Group("", button) for name, button in self._option_buttons.items()}
 
     def _make_view_button(self) -> QToolButton:
         self._view_menu = QMenu(self)
@@ -254,11 +273,19 @@ class StageToolbar(QWidget):
         has_sheets = view.sheets is not None
         for button, is_shown in zip(self._sheets, view.sheets or (False,) * 3, strict=True):
             button.setChecked(is_shown)
-        self._sheets_group.setVisible(has_sheets)
+        self._in_use = {
+            self._sheets_group: has_sheets,
+            self._colour_group: len(view.colours) > 1,
+            self._plane_group: bool(view.planes),
+        }
         for option in OPTIONS:
             action = self._actions[option.name]
             action.setChecked(bool(getattr(view, option.name)))
-            action.setEnabled(has_sheets or not option.waves_only)
+            is_apt = has_sheets or not option.waves_only
+            is_apt = is_apt and (view.layout == "AB" or not option.pairs_only)
+            action.setEnabled(is_apt)
+            if group := self._option_groups.get(option.name):
+                self._in_use[group] = is_apt or not option.pairs_only
         self._place()
 
     def _show_quantity_items(self, view: ToolbarView) -> None:
@@ -298,34 +325,24 @@ class StageToolbar(QWidget):
         super().resizeEvent(event)
         self._place()
 
-    def paintEvent(self, event: QPaintEvent) -> None:
-        """Draw the panel under the controls."""
-        theme = current_theme()
-        painter = QPainter(self)
-        painter.fillRect(self.rect(), theme.colour("panel"))
-        painter.setPen(theme.colour("hairline"))
-        painter.drawRect(self.rect().adjusted(0, 0, -1, -1))
-
     def _used_groups(self) -> list[Group]:
-        """Return the groups that mean something for the quantity."""
-        return [
-            box for box in self._groups
-            if box is not self._sheets_group or not self._sheets_group.isHidden()
-        ]
+        """Return the groups that offer a choice now."""
+        return [box for box in self._groups if self._in_use.get(box, True)]
 
     def _arrangement(self, width: int) -> tuple[list[Group], bool]:
         """Return the groups that stand in a width, and whether they go without their words."""
         groups = self._used_groups()
-        for optional in reversed(self._option_groups):
+        for optional in reversed(self._option_groups.values()):
             if _row_width(groups, is_bare=False) <= width:
                 return groups, False
-            groups.remove(optional)
+            if optional in groups:
+                groups.remove(optional)
         return groups, _row_width(groups, is_bare=False) > width
 
     def _place(self) -> None:
         groups, is_bare = self._arrangement(self.width())
-        for optional in self._option_groups:
-            optional.setVisible(optional in groups)
+        for box in self._groups:
+            box.setVisible(box in groups)
         places, height = flow([box.size_at(is_bare) for box in groups], self.width())
         self._widen_quantity(places)
         for box, place in zip(groups, places, strict=True):

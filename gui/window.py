@@ -34,14 +34,14 @@ from gui.reading.extremes_table import ExtremesTable
 from gui.reading.pin_table import PinTable
 from gui.reading.small_table import SmallTable
 from gui.stage.camera import Camera
-from gui.stage.pane import StagePane
 from gui.stage.composition import Renderer
+from gui.stage.pane import StagePane
 from gui.theme import Theme
 from gui.toolbar import StageToolbar
 from gui.verdict_band import VerdictBand
 
-LEDGER_WIDTH = 362
-READING_WIDTH = 320
+LEDGER_WIDTH = 360
+READING_WIDTH = 338
 _NARROWER_BY = 14
 _LAYOUT_VERSION = 2  # a layout saved by an older arrangement is not restored
 
@@ -76,13 +76,23 @@ def build_views(renderer: Renderer) -> Views:
     """Return all widgets of the bench, not yet placed."""
     camera = Camera()
     return Views(
-        verdict=VerdictBand(), specimen=SpecimenForm(), constants=ConstantsGrid(),
-        spectrum=StrainSpectrum(), cell=CellForm(),
+        verdict=VerdictBand(),
+        specimen=SpecimenForm(),
+        constants=ConstantsGrid(),
+        spectrum=StrainSpectrum(),
+        cell=CellForm(),
         orientations={side: OrientationForm(side) for side in "AB"},
-        orientation_buttons=OrientationButtons(), toolbar=StageToolbar(),
+        orientation_buttons=OrientationButtons(),
+        toolbar=StageToolbar(),
         panes={side: StagePane(side, renderer, camera) for side in "AB"},
-        section=SectionPlot(), deck=Deck(), pin=PinTable(), extremes=ExtremesTable(),
-        cutting_error=CuttingErrorPanel(), aggregate=SmallTable(), part=SmallTable())
+        section=SectionPlot(),
+        deck=Deck(),
+        pin=PinTable(),
+        extremes=ExtremesTable(),
+        cutting_error=CuttingErrorPanel(),
+        aggregate=SmallTable(),
+        part=SmallTable(),
+    )
 
 
 class Window(QMainWindow):
@@ -106,6 +116,7 @@ class Window(QMainWindow):
         self.setAcceptDrops(True)
         self.setMinimumSize(1120, 680)
         self.resize(1440, 900)
+        self._pane_frames = {side: _framed(pane) for side, pane in views.panes.items()}
         self._columns = QSplitter(Qt.Orientation.Horizontal)
         self._centre = QSplitter(Qt.Orientation.Vertical)
         self._stage = QSplitter(Qt.Orientation.Horizontal)
@@ -120,8 +131,8 @@ class Window(QMainWindow):
         self._fill_status_line()
 
     def _place(self) -> None:
-        for side in "AB":
-            self._stage.addWidget(_framed(self.views.panes[side]))
+        for frame in self._pane_frames.values():
+            self._stage.addWidget(frame)
         self._plots.addWidget(_framed(self.views.section))
         self._plots.addWidget(_framed(self.views.deck))
         for splitter in (self._stage, self._plots):
@@ -174,8 +185,8 @@ class Window(QMainWindow):
     # -------------------------------------------------------------- what others may ask
     def show_panes(self, layout: str) -> None:
         """Show pane A, pane B or both."""
-        for side, pane in self.views.panes.items():
-            pane.parentWidget().setVisible(side in layout)
+        for side, frame in self._pane_frames.items():
+            frame.setVisible(side in layout)
 
     def show_message(self, text: str, is_error: bool = False) -> None:
         """Say one sentence in the status line."""
@@ -223,8 +234,12 @@ class Window(QMainWindow):
             splitter.restoreState(settings.value(f"layout/{name}"))
 
     def _splitters(self) -> tuple[tuple[str, QSplitter], ...]:
-        return (("columns", self._columns), ("centre", self._centre),
-                ("stage", self._stage), ("plots", self._plots))
+        return (
+            ("columns", self._columns),
+            ("centre", self._centre),
+            ("stage", self._stage),
+            ("plots", self._plots),
+        )
 
     # -------------------------------------------------------------- events
     def closeEvent(self, event: QCloseEvent) -> None:
@@ -291,9 +306,14 @@ def _ledger(views: Views) -> QWidget:
         Section("Ledger", views.specimen, ruled=False),
         Section("Constants", views.constants),
         Section("Strain spectrum", views.spectrum, "eigenstiffness, GPa (Kelvin)"),
-        Section("Orientations of the part", _stacked(
-            views.orientations["A"], views.orientations["B"], views.orientation_buttons)),
-        Section("Unit cell and crystal axes", views.cell))
+        Section(
+            "Orientations of the part",
+            _stacked(
+                views.orientations["A"], views.orientations["B"], views.orientation_buttons
+            ),
+        ),
+        Section("Unit cell and crystal axes", views.cell),
+    )
 
 
 def _reading(views: Views) -> QWidget:
@@ -302,4 +322,5 @@ def _reading(views: Views) -> QWidget:
         Section("Extremes", views.extremes),
         Section("Cutting error", views.cutting_error),
         Section("Aggregate", views.aggregate, "random polycrystal"),
-        Section("Part", views.part, "along X, Y, Z", is_open=False))
+        Section("Part", views.part, "along X, Y, Z", is_open=False),
+    )

@@ -42,7 +42,8 @@ class AcousticAxis:
         Of internal conical refraction: half the greatest angle between opposite rays of the
         cone. 0 for a tangential axis, None for a line or "all".
     curve : (3, K) array or None
-        Points all along a line, for drawing; None for the other kinds.
+        Points all along a line that is a circle, for drawing; of another curve one point only.
+        None for the other kinds.
     """
 
     direction: FloatArray

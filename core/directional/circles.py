@@ -21,7 +21,7 @@ _ZOOMS = 12  # each narrows the azimuth fourfold, from 0.1 rad to below rounding
 # Least over greatest change on the small circle. A ring is at most half a probe spacing from a
 # probe, so that the change there is 0.05 of the greatest (at a cusp; 0.0025 elsewhere).
 _SUSPICION = 0.1
-_TRIALS = 6  # directions from which a ring is followed
+_FAILURES = 2  # directions that prove to be on no ring, before no more are tried
 _NEAR_CIRCLE = 1e-3  # radians: how far the first circle may miss directions that are on it
 _SPREAD = 0.1  # second singular value of directions that are well spread round a circle
 _SAME_VALUE = 1e-9  # of the scale: what counts as the same value all along a ring
@@ -159,9 +159,8 @@ def rings_through(
     greatest, least = change.max(axis=1), change.min(axis=1)
     waiting = (least < _SUSPICION * greatest) | (greatest < _SAME_VALUE * scale)
     found: list[Circle] = []
-    for _ in range(_TRIALS):
-        if not waiting.any():
-            break
+    failures = 0
+    while waiting.any() and failures < _FAILURES:
         i = int(np.argmax(waiting))
         waiting[i] = False
         centre, frame = centres[i : i + 1], frames[i : i + 1]
@@ -172,6 +171,8 @@ def rings_through(
         if np.abs(around - extreme).max() <= _SAME_VALUE * scale:
             found.append(circle)
             waiting &= circle.distance(centres) > _NEAR_CIRCLE
+        else:
+            failures += 1
     return found
 
 

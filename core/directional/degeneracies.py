@@ -29,8 +29,14 @@ CURVE_POINTS = 72  # at which a circle is checked, and drawn
 
 _ISOTROPIC = 1e-9  # gap over the fastest ρv²: less, everywhere, and the two sheets are one
 _CLOSED = 1e-10  # gap over the fastest ρv² at which two sheets have met
+_CLOSED_PART = 1e-5  # the same in parts of the greatest gap, for all but isotropic crystals
+_ROUNDING = 1e-14  # of the fastest ρv²: a smaller gap is none
 _CLOSED_CURVE = 1e-8  # the same along a circle, which is known less exactly
 _FLAT = 1e-4  # of the greatest gap: a slower opening of the gap is no cone
+_LEANING = 0.1  # slower over faster opening of a cone that may have a partner close by
+_LEVEL = 1e-7  # the same ratio below which it is rounding: the point of a line
+_PARTNER_DISTANCES = np.array([0.02, -0.02, 0.05, -0.05, 0.1, -0.1, 0.2, -0.2])  # radians
+_LINE_PROBES = np.array([0.1, -0.1])  # radians
 _SEEDS = 160  # starts for one pair: a line of degeneracy would ask for thousands
 _STEPS = 16
 _LONGEST_STEP = 0.15  # radians
@@ -97,14 +103,21 @@ def _search(
     if gap.max() <= _ISOTROPIC * largest:
         return Degeneracies(True, empty, np.empty(0, dtype=bool), (), empty)
     turning = vectors[:, 0 if pair == 0 else 2]
-    n = _converge(operator, _seeds(mesh, gap, turning), pair)
-    closing = sheet_frames(operator, n).values
-    n = canonical(n[closing[:, pair] - closing[:, pair + 1] <= _CLOSED * largest])
-    n = n[distinct(n)]
-    slope = np.linalg.svd(_jacobian(operator, n, pair)[0], compute_uv=False)
+    closed = min(_CLOSED * largest, max(_CLOSED_PART * gap.max(), _ROUNDING * largest))
+    n = _meetings(operator, _seeds(mesh, gap, turning), pair, closed)
+    slope, weak = _openings(operator, n, pair)
+    leaning = (slope[:, 1] < _LEANING * slope[:, 0]) & (slope[:, 1] > _LEVEL * slope[:, 0])
+    if leaning.any():
+        beside = _beside(n[leaning], weak[leaning], _PARTNER_DISTANCES).reshape(-1, 3)
+        n = np.concatenate([n, _meetings(operator, beside, pair, closed)])
+        n = n[distinct(n)]
+        slope, weak = _openings(operator, n, pair)
     steep = slope > _FLAT * gap.max()
-    circles, strays = _curves(operator, n[steep[:, 0] & ~steep[:, 1]], pair, largest)
-    conical, touching = n[steep[:, 1]], n[~steep[:, 0]]
+    lined = np.flatnonzero(steep[:, 0] & ~steep[:, 1])
+    lined = lined[_stays_closed(operator, n[lined], weak[lined], pair, largest)]
+    on_line = np.isin(np.arange(len(n)), lined)
+    circles, strays = _curves(operator, n[on_line], pair, largest)
+    conical, touching = n[steep[:, 0] & ~on_line], n[~steep[:, 0]]
     touching = canonical(_centre_tangential(operator, touching, pair))
     touching = touching[distinct(touching)]
     axes = np.concatenate([conical, touching])
@@ -113,6 +126,41 @@ def _search(
     for circle in circles:
         off_circles &= circle.distance(axes) > SAME_DIRECTION
     return Degeneracies(False, axes[off_circles], is_conical[off_circles], circles, strays)
+
+
+def _meetings(operator: FloatArray, starts: FloatArray, pair: int, closed: float) -> FloatArray:
+    """Return the distinct directions (M, 3) where Newton's method closes the gap."""
+    n = _converge(operator, starts, pair)
+    values = sheet_frames(operator, n).values
+    n = canonical(n[values[:, pair] - values[:, pair + 1] <= closed])
+    return n[distinct(n)]
+
+
+def _openings(operator: FloatArray, n: FloatArray, pair: int) -> tuple[FloatArray, FloatArray]:
+    """Return the slopes (M, 2) of the gap about axes (M, 3), and the slower way (M, 3)."""
+    jacobian, _, frames = _jacobian(operator, n, pair)
+    _, slope, ways = np.linalg.svd(jacobian)
+    weak: FloatArray = (ways[:, None, 1] @ frames)[:, 0]
+    return slope, weak
+
+
+def _beside(n: FloatArray, way: FloatArray, distances: FloatArray) -> FloatArray:
+    """Return directions (M, K, 3) at some distances from n (M, 3) along tangents (M, 3)."""
+    beside = n[:, None] + distances[:, None] * way[:, None]
+    result: FloatArray = beside / np.linalg.norm(beside, axis=2, keepdims=True)
+    return result
+
+
+def _stays_closed(
+    operator: FloatArray, n: FloatArray, weak: FloatArray, pair: int, largest: float
+) -> BoolArray:
+    """Tell the points (M, 3) of lines from very flat cones: the gap is closed beside them too."""
+    ends = _converge(operator, _beside(n, weak, _LINE_PROBES).reshape(-1, 3), pair)
+    values = sheet_frames(operator, ends).values
+    closed = values[:, pair] - values[:, pair + 1] <= _CLOSED_CURVE * largest
+    moved = chords(ends.reshape(-1, 2, 3), n[:, None]) > 0.5 * _LINE_PROBES[0]
+    result: BoolArray = (closed.reshape(-1, 2) & moved).all(axis=1)
+    return result
 
 
 def _seeds(mesh: SphereMesh, gap: FloatArray, turning: FloatArray) -> FloatArray:
@@ -239,11 +287,9 @@ def _curves(
 
 def _circle_from(operator: FloatArray, n: FloatArray, pair: int) -> Circle:
     """Return the circle through a point (3,) of a line of degeneracy and two beside it."""
-    jacobian, _, frames = _jacobian(operator, n[None], pair)
-    along = np.linalg.svd(jacobian[0])[2][1] @ frames[0]
-    beside = n + np.array([[0.1], [-0.1]]) * along
-    beside /= np.linalg.norm(beside, axis=1, keepdims=True)
-    return circle_through(np.concatenate([n[None], _converge(operator, beside, pair)]))
+    _, weak = _openings(operator, n[None], pair)
+    beside = _converge(operator, _beside(n[None], weak, _LINE_PROBES)[0], pair)
+    return circle_through(np.concatenate([n[None], beside]))
 
 
 def _chains(points: FloatArray, reach: float = 0.15) -> list[int]:

@@ -2,26 +2,42 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import fields
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 
+from core.crystal.turning import unit
+from core.directional.quantities import quantity
 from core.errors import InputError
 from core.files.specimen import (
     check_format,
     json_text,
     parse_json,
+    read_number,
     specimen_from_dict,
     specimen_to_dict,
+    unknown_keys,
 )
 from core.files.text import read_text, write_text
-from core.state import BenchState, Display, OrientationChoice, Vector3, to_plain
+from core.numbers import shortened
+from core.state import (
+    BenchState,
+    Display,
+    OrientationChoice,
+    Specimen,
+    Vector3,
+    as_vector,
+    rotation_of,
+    to_plain,
+)
 
 FORMAT = "tricline-bench"
 VERSION = 1
 SUFFIX = ".tricline"
+WIDEST_CONE = 30.0  # degrees; a larger error of cutting is a different cut
 
 
 def read_bench(path: Path) -> BenchState:
@@ -36,104 +52,162 @@ def write_bench(path: Path, state: BenchState) -> None:
 
 def bench_to_dict(state: BenchState) -> dict[str, Any]:
     """Return the JSON object of a bench."""
-    return {
-        "format": FORMAT,
-        "version": VERSION,
-        "specimen": specimen_to_dict(state.specimen),
-        "other": None if state.other is None else specimen_to_dict(state.other),
-        "orientation_a": to_plain(state.orientation_a),
-        "orientation_b": to_plain(state.orientation_b),
-        "pin": list(state.pin),
-        "section": list(state.section),
-        "quantity": state.quantity,
-        "cutting_error_deg": state.cutting_error_deg,
-        "display": to_plain(state.display),
-    }
+    data: dict[str, Any] = {"format": FORMAT, "version": VERSION}
+    for field in fields(BenchState):
+        value = getattr(state, field.name)
+        if isinstance(value, Specimen):
+            data[field.name] = specimen_to_dict(value)
+        elif field.name != "unknown":
+            data[field.name] = to_plain(value)
+    kept: dict[str, Any] = parse_json(state.unknown, "unknown keys")
+    return data | {key: value for key, value in kept.items() if key not in data}
 
 
 def bench_from_dict(data: dict[str, Any], where: str) -> BenchState:
-    """Return the bench that a JSON object describes; what is left out takes its default."""
+    """Return the bench that a JSON object describes; what is left out takes its default.
+
+    Raises
+    ------
+    InputError
+        Naming the file and the key that cannot be used.
+    """
     check_format(data, FORMAT, VERSION, where)
-    if not isinstance(data.get("specimen"), dict):
+    if data.get("specimen") is None:
         raise InputError("“specimen” is missing.", where=where)
-    other = data.get("other")
-    default = BenchState(specimen_from_dict(data["specimen"], f"{where}, specimen"))
-    return BenchState(
-        specimen=default.specimen,
-        other=specimen_from_dict(other, f"{where}, other") if isinstance(other, dict) else None,
-        orientation_a=_orientation(data.get("orientation_a"), f"{where}, orientation_a"),
-        orientation_b=_orientation(data.get("orientation_b"), f"{where}, orientation_b"),
-        pin=_unit_vector(data.get("pin", default.pin), f"{where}, pin"),
-        section=_unit_vector(data.get("section", default.section), f"{where}, section"),
-        quantity=_text(data.get("quantity", default.quantity), f"{where}, quantity"),
-        cutting_error_deg=_angle(data.get("cutting_error_deg", default.cutting_error_deg),
-                                 f"{where}, cutting_error_deg"),
-        display=_display(data.get("display"), f"{where}, display"),
+    known: dict[str, Any] = {}
+    for key, read in _READERS.items():
+        if data.get(key) is not None:
+            known[key] = _reading(read, data[key], f"{where}, {key}")
+    known["unknown"] = _reading(
+        lambda value: unknown_keys(value, {"format", "version", *_READERS}), data, where
+    )
+    state = BenchState(**known)
+    for side in "AB":  # an orientation speaks of its own crystal's cell
+        place = f"{where}, orientation_{side.lower()}"
+        _reading(
+            lambda s: rotation_of(state.orientation_of(s), state.specimen_of(s)), side, place
+        )
+    return state
+
+
+def _reading(read: Callable[[Any], Any], value: Any, where: str) -> Any:
+    """Return what a reader makes of a value; its refusal names the place."""
+    try:
+        return read(value)
+    except InputError as error:
+        place = where if error.where in ("", "quantity") else f"{where}, {error.where}"
+        raise InputError(error.message, error.hint, place) from None
+
+
+# --- one reader a key -----------------------------------------------------------------------
+
+
+def _specimen(value: Any) -> Specimen:
+    if not isinstance(value, dict):
+        raise InputError("A specimen was expected.")
+    return specimen_from_dict(value, "")
+
+
+def _orientation(value: Any) -> OrientationChoice:
+    if not isinstance(value, dict) or not isinstance(value.get("text", ""), str):
+        raise InputError("An object with “text” and “turn” was expected.")
+    default = OrientationChoice()
+    return OrientationChoice(
+        value.get("text", default.text), _three_numbers(value.get("turn", list(default.turn)))
     )
 
 
-def _orientation(value: Any, where: str) -> OrientationChoice:
-    if value is None:
-        return OrientationChoice()
-    if not isinstance(value, dict):
-        raise InputError("An object with “text” and “turn” was expected.", where=where)
-    text = _text(value.get("text", "identity"), where)
-    return OrientationChoice(text, _three(value.get("turn", [0.0, 0.0, 0.0]), where))
+def _three_numbers(value: Any) -> Vector3:
+    if not isinstance(value, list) or len(value) != 3:
+        raise InputError("Three numbers were expected.")
+    return read_number(value[0]), read_number(value[1]), read_number(value[2])
 
 
-def _display(value: Any, where: str) -> Display:
-    """Return the display choices; a choice of the wrong kind is refused, an unknown one left."""
-    if value is None:
-        return Display()
+def _unit_vector(value: Any) -> Vector3:
+    given = _three_numbers(value)
+    if not any(given):
+        raise InputError("A direction of length zero points nowhere.")
+    # One that was saved as a unit vector comes back as the very same numbers.
+    is_unit = abs(float(np.dot(given, given)) - 1.0) < 1e-14
+    return given if is_unit else as_vector(unit(np.array(given)))
+
+
+def _quantity(value: Any) -> str:
+    if not isinstance(value, str):
+        raise InputError(f"The name of a quantity was expected, not {shortened(repr(value))}.")
+    return quantity(value).key
+
+
+def _cone(value: Any) -> float:
+    degrees = read_number(value)
+    if not 0.0 < degrees <= WIDEST_CONE:
+        raise InputError(f"An angle above 0° and up to {WIDEST_CONE:g}° was expected.")
+    return degrees
+
+
+_OTHER_COLOURS = ("value", "longitudinality")
+_ONE_OF: dict[str, tuple[object, ...]] = {
+    "layout": ("A", "AB", "B"),
+    "deck": ("hemisphere", "sweep", "source"),
+    "hemisphere": ("A", "B", "difference", "cost"),
+    "projection": ("equal_area", "stereographic"),
+    "ledger": ("A", "B"),
+    "face": ("stiffness", "compliance", "uncertainty"),
+    "hemisphere_sheet": (0, 1, 2),
+}
+"""The display choices that are one of a few."""
+
+
+def _display(value: Any) -> Display:
+    """Return the display choices; one that cannot be used is refused, an unknown one left."""
     if not isinstance(value, dict):
-        raise InputError("An object of display choices was expected.", where=where)
+        raise InputError("An object of display choices was expected.")
     known: dict[str, Any] = {}
     for choice in fields(Display):
-        if choice.name not in value:
-            continue
-        given = value[choice.name]
-        if choice.name == "sweep_about":
-            known[choice.name] = None if given is None else _unit_vector(given, where)
-        elif choice.name == "sheets":
-            known[choice.name] = _three_flags(given, where)
-        elif type(given) is type(choice.default):
-            known[choice.name] = given
-        else:
-            raise InputError(f"“{choice.name}” cannot be {given!r}.", where=where)
+        if choice.name in value:
+            known[choice.name] = _choice(choice.name, value[choice.name], choice.default)
     return Display(**known)
 
 
-def _three_flags(value: Any, where: str) -> tuple[bool, bool, bool]:
+def _choice(name: str, given: Any, default: Any) -> Any:
+    if name == "sweep_about":
+        return None if given is None else _unit_vector(given)
+    if name == "sheets":
+        return _three_flags(given)
+    if name == "colour_by" and given not in _OTHER_COLOURS:
+        return _sheet_quantity(given)
+    if type(given) is not type(default):
+        raise InputError(f"“{name}” cannot be {shortened(repr(given))}.")
+    if name in _ONE_OF and given not in _ONE_OF[name]:
+        choices = ", ".join(map(str, _ONE_OF[name]))
+        raise InputError(
+            f"“{name}” cannot be {shortened(repr(given))}.", f"It is one of {choices}."
+        )
+    return given
+
+
+def _sheet_quantity(value: Any) -> str:
+    key = _quantity(value)
+    if quantity(key).sheets != 3:
+        raise InputError(f"“colour_by” cannot be “{key}”: it has not three sheets.")
+    return key
+
+
+def _three_flags(value: Any) -> tuple[bool, bool, bool]:
     if isinstance(value, list) and len(value) == 3 and all(type(x) is bool for x in value):
         return value[0], value[1], value[2]
-    raise InputError("“sheets” should be three of true or false.", where=where)
+    raise InputError("“sheets” should be three of true or false.")
 
 
-def _text(value: Any, where: str) -> str:
-    if not isinstance(value, str):
-        raise InputError("Text was expected.", where=where)
-    return value
-
-
-def _angle(value: Any, where: str) -> float:
-    good = isinstance(value, (int, float)) and not isinstance(value, bool)
-    if not good or not 0.0 < value <= 30.0:
-        raise InputError("An angle above 0° and up to 30° was expected.", where=where)
-    return float(value)
-
-
-def _three(value: Any, where: str) -> Vector3:
-    good = isinstance(value, (list, tuple)) and len(value) == 3
-    if not good or not all(
-            isinstance(x, (int, float)) and not isinstance(x, bool) and np.isfinite(x)
-            for x in value):
-        raise InputError("Three numbers were expected.", where=where)
-    return float(value[0]), float(value[1]), float(value[2])
-
-
-def _unit_vector(value: Any, where: str) -> Vector3:
-    x, y, z = _three(value, where)
-    length = float(np.sqrt(x * x + y * y + z * z))
-    if length == 0.0:
-        raise InputError("A direction of length zero points nowhere.", where=where)
-    return (x, y, z) if abs(length - 1) < 1e-12 else (x / length, y / length, z / length)
+_READERS: dict[str, Callable[[Any], Any]] = {
+    "specimen": _specimen,
+    "other": _specimen,
+    "orientation_a": _orientation,
+    "orientation_b": _orientation,
+    "pin": _unit_vector,
+    "section": _unit_vector,
+    "quantity": _quantity,
+    "cutting_error_deg": _cone,
+    "display": _display,
+}
+"""Key in the file, which is the attribute of `BenchState`, and how it is read."""

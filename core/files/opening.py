@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from pathlib import Path
 
-from core.errors import InputError
+from core import limits
 from core.files import bench, specimen
 from core.files.matrices import read_table
 from core.files.text import read_text
 from core.state import BenchState, Specimen, as_matrix
+
+_OBJECT = re.compile(r'\s*\{\s*["}]')  # how JSON begins; {{1, 2, …}} is a table in braces
+_JSON_SUFFIXES = (".json", bench.SUFFIX)
 
 
 @dataclass(frozen=True)
@@ -40,15 +44,18 @@ def open_file(path: Path) -> Opened:
         When it is none of the kinds that Tricline reads, or has a fault.
     """
     text = read_text(path)
-    if not text.lstrip().startswith("{"):
-        if path.suffix.lower() in (".json", bench.SUFFIX):
-            raise InputError("A JSON object {…} was expected.", where=path.name)
-        table = read_table(text, path.name)
-        known = Specimen(name=path.stem, stiffness=as_matrix(table.stiffness),
-                         source=f"read from {path.name}")
-        return Opened(known, guesses=table.guesses)
+    if path.suffix.lower() not in _JSON_SUFFIXES and not _OBJECT.match(text):
+        return _open_table(text, path)
     data = specimen.parse_json(text, path.name)
     if data.get("format") == bench.FORMAT:
         state = bench.bench_from_dict(data, path.name)
         return Opened(state.specimen, state)
     return Opened(specimen.specimen_from_dict(data, path.name))
+
+
+def _open_table(text: str, path: Path) -> Opened:
+    """Return the specimen of a text table, named after its file."""
+    table = read_table(text, path.name)
+    stiffness = limits.stiffness(table.stiffness, path.name)
+    known = Specimen(path.stem, as_matrix(stiffness), source=f"read from {path.name}")
+    return Opened(known, guesses=table.guesses)

@@ -15,7 +15,10 @@ from core.tensor.notation import VOIGT_PAIRS
 from core.tensor.stiffness import Stiffness
 
 PAIR_NAMES = tuple(f"{i + 1}{j + 1}" if i != j else f"{i + 1}" for i, j in VOIGT_PAIRS)
-SHEAR_NAMES = ("23", "13", "12")
+"""What each of the six strains is called: "1", "2", "3", "23", "13", "12"."""
+SHEAR_NAMES = PAIR_NAMES[3:]
+_AXES = "XYZ"
+_WAVES = ("fastest", "middle", "slowest")
 
 
 @dataclass(frozen=True, eq=False)
@@ -32,8 +35,9 @@ class EngineeringConstants:
         G₂₃, G₁₃, G₁₂ in GPa.
     response : ndarray, shape (6, 6)
         Strain I per strain J when only stress J acts: S_IJ / S_JJ, engineering shears.
-        Off its normal block these are the coupling coefficients (of mutual influence, after
-        Lekhnitskii, *Theory of Elasticity of an Anisotropic Body*, 1963; shear–shear: Chentsov).
+        Off its normal block these are the coupling coefficients: of mutual influence after
+        Lekhnitskii (*Theory of Elasticity of an Anisotropic Body*, 1963), between two shears
+        after Chentsov.
     """
 
     young: FloatArray
@@ -46,7 +50,8 @@ class EngineeringConstants:
         """Coupling coefficients by name: "23,1" is the 23 shear caused by stress along 1."""
         return {
             f"{PAIR_NAMES[i]},{PAIR_NAMES[j]}": float(self.response[i, j])
-            for i in range(6) for j in range(6)
+            for i in range(6)
+            for j in range(6)
             if i != j and (i > 2 or j > 2)
         }
 
@@ -107,40 +112,60 @@ def part_table(medium: Medium) -> tuple[PartRow, ...]:
 def _moduli_rows(constants: EngineeringConstants) -> list[PartRow]:
     rows = [
         PartRow(f"young_{axis}_gpa", f"E along {axis}", "GPa", float(value), "stiffness")
-        for axis, value in zip("XYZ", constants.young, strict=True)
+        for axis, value in zip(_AXES, constants.young, strict=True)
     ]
     rows += [
-        PartRow(f"shear_{pair}_gpa", f"G in {'XYZ'[int(pair[0]) - 1]}{'XYZ'[int(pair[1]) - 1]}",
-                "GPa", float(value), "stiffness")
+        PartRow(
+            f"shear_{pair}_gpa", f"G in {_lettered(pair)}", "GPa", float(value), "stiffness"
+        )
         for pair, value in zip(SHEAR_NAMES, constants.shear, strict=True)
     ]
     rows += [
-        PartRow(f"poisson_{i + 1}{j + 1}", f"ν loaded {'XYZ'[i]}, across {'XYZ'[j]}", "",
-                float(constants.poisson[i, j]), "stiffness")
-        for i in range(3) for j in range(3) if i != j
+        PartRow(
+            f"poisson_{i + 1}{j + 1}",
+            f"ν loaded {_AXES[i]}, across {_AXES[j]}",
+            "",
+            float(constants.poisson[i, j]),
+            "stiffness",
+        )
+        for i in range(3)
+        for j in range(3)
+        if i != j
     ]
     return rows
 
 
+def _lettered(pair: str) -> str:
+    return "".join(_AXES[int(digit) - 1] for digit in pair)
+
+
 def _coupling_rows(constants: EngineeringConstants) -> list[PartRow]:
-    """Return how much each stretch and each shear of a part drives the other shears."""
+    """Return how much each stretch and each shear of a part drives the other shears.
+
+    How a shear drives a stretch is left out: it follows from these and the moduli.
+    """
     return [
         PartRow(f"coupling_{name.replace(',', '_')}", f"η {name}", "", value, "coupling")
         for name, value in constants.coupling.items()
-        if len(name.split(",")[0]) == 2  # a shear responds: the others follow from these
+        if name.split(",")[0] in SHEAR_NAMES
     ]
 
 
 def _wave_rows(medium: Medium) -> list[PartRow]:
     axes = directions(np.eye(3))
-    speed, flow = speeds(medium, axes), power_flow(medium, axes)
-    names = ("fastest", "middle", "slowest")
+    measures = (
+        ("speed", "wave along", "km_s", "km/s", speeds(medium, axes)),
+        ("power_flow", "wave: power flow off", "deg", "°", power_flow(medium, axes)),
+    )
     return [
-        PartRow(f"{key}_{axis}_{name}_{unit_key}", f"{name} {what} {axis}", unit,
-                float(values[sheet, column]), "waves")
-        for key, what, unit_key, unit, values in (
-            ("speed", "wave along", "km_s", "km/s", speed),
-            ("power_flow", "wave: power flow off", "deg", "°", flow))
-        for column, axis in enumerate("XYZ")
-        for sheet, name in enumerate(names)
+        PartRow(
+            f"{key}_{axis}_{name}_{unit_key}",
+            f"{name} {what} {axis}",
+            unit,
+            float(values[sheet, column]),
+            "waves",
+        )
+        for key, what, unit_key, unit, values in measures
+        for column, axis in enumerate(_AXES)
+        for sheet, name in enumerate(_WAVES)
     ]

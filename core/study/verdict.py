@@ -2,20 +2,26 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
 
 from core.arrays import FloatArray
-from core.numbers import significant
+from core.numbers import significant, with_deviation
+from core.study.uncertainty import independent_covariance
 from core.tensor.averages import anisotropy, averages
-from core.tensor.notation import KELVIN_WEIGHTS
+from core.tensor.notation import KELVIN_WEIGHTS, upper_triangle
 from core.tensor.stability import Stability, assess, criteria
 from core.tensor.stiffness import Stiffness
-from core.tensor.symmetry import CrystalClass, distance
+from core.tensor.symmetry import CrystalClass, crystal_class, distance
 
 NOTABLE_DISTANCE = 1e-6  # relative: below it a table has its class exactly
+_ZERO = 1e-12  # of the largest |eigenstiffness|: what lies below resists nothing
+_SURE = 2.0  # standard uncertainties between the softest strain and zero
+
+Mark = Literal["stable", "doubtful", "unstable"]
 
 
 @dataclass(frozen=True)
@@ -33,7 +39,7 @@ class Verdict:
         Paragraphs: the eigenstiffnesses with their strains, the criteria of the class.
     """
 
-    mark: Literal["stable", "doubtful", "unstable"]
+    mark: Mark
     headline: str
     facts: tuple[str, ...]
     detail: str
@@ -45,45 +51,54 @@ class Verdict:
 
 
 def judge(
-    stiffness: Stiffness, claimed: CrystalClass, deviation: FloatArray | None = None
+    stiffness: Stiffness,
+    claimed: CrystalClass,
+    deviations: FloatArray | None = None,
+    covariance: FloatArray | None = None,
 ) -> Verdict:
     """Return the verdict on a table.
 
     Parameters
     ----------
     stiffness : Stiffness
-        Crystal axes, GPa.
+        GPa, crystal axes.
     claimed : CrystalClass
         The symmetry the specimen claims.
-    deviation : ndarray, shape (6, 6), optional
-        Standard uncertainties of the constants, GPa, taken as independent.
+    deviations : ndarray, shape (6, 6), optional
+        Standard uncertainties of the constants, GPa, those of the free constants taken as
+        independent: of the class where the table has its form, else of all 21.
+    covariance : ndarray, shape (21, 21), optional
+        GPa², along the upper triangle by rows; read in place of `deviations`.
     """
     stability = assess(stiffness)
-    softest = float(stability.eigenstiffness[0])
-    sigma = None if deviation is None else softest_deviation(stability, deviation)
-    mark, headline = _mark(stability, softest, sigma)
-    return Verdict(mark, headline, _facts(stiffness, claimed, stability, sigma),
-                   _detail(stiffness, claimed, stability))
+    fits = distance(stiffness.voigt, claimed) <= NOTABLE_DISTANCE
+    if covariance is None and deviations is not None:
+        form = claimed if fits else crystal_class("triclinic")
+        covariance = independent_covariance(deviations, form)
+    sigma = None if covariance is None else softest_deviation(stability, covariance)
+    mark, headline = _mark(stability, sigma)
+    facts = _facts(stiffness, claimed, stability, sigma)
+    return Verdict(mark, headline, facts, _detail(stiffness, claimed, stability))
 
 
-def softest_deviation(stability: Stability, deviation: FloatArray) -> float:
+def softest_deviation(stability: Stability, covariance: FloatArray) -> float:
     """Return the standard uncertainty of the least eigenstiffness, GPa, to first order.
 
-    With e the Kelvin eigenstrain, ∂λ/∂C_IJ = w_I w_J e_I e_J, twice that off the diagonal.
+    With e its Kelvin eigenstrain and w the Kelvin weights, ∂λ/∂C_IJ = w_I w_J e_I e_J, twice
+    that off the diagonal, for C_IJ and C_JI are one constant.
     """
     strain = stability.eigenstrains[:, 0] * KELVIN_WEIGHTS
-    slope = np.outer(strain, strain) * (2.0 - np.eye(6))
-    rows, columns = np.triu_indices(6)
-    return float(np.linalg.norm((slope * deviation)[rows, columns]))
+    slope = upper_triangle(np.outer(strain, strain) * (2.0 - np.eye(6)))
+    variance = float(slope @ covariance @ slope)
+    return math.sqrt(max(variance, 0.0))
 
 
-def _mark(
-    stability: Stability, softest: float, sigma: float | None
-) -> tuple[Literal["stable", "doubtful", "unstable"], str]:
+def _mark(stability: Stability, sigma: float | None) -> tuple[Mark, str]:
     if not stability.stable:
-        count = int((stability.eigenstiffness <= 0).sum())
+        values = stability.eigenstiffness
+        count = int((values <= _ZERO * np.abs(values).max()).sum())
         return "unstable", "Unstable" if count == 1 else f"Unstable in {count} strains"
-    if sigma is not None and softest < 2 * sigma:
+    if sigma is not None and float(stability.eigenstiffness[0]) < _SURE * sigma:
         return "doubtful", "Stable, but not beyond the uncertainties"
     if stability.near:
         return "doubtful", "Stable, but only just"
@@ -93,9 +108,9 @@ def _mark(
 def _facts(
     stiffness: Stiffness, claimed: CrystalClass, stability: Stability, sigma: float | None
 ) -> tuple[str, ...]:
-    softest = significant(float(stability.eigenstiffness[0]), 3)
-    spread = "" if sigma is None else f" ± {significant(sigma, 2)}"
-    facts = [f"softest strain {softest}{spread} GPa ({stability.descriptions[0]})"]
+    least = float(stability.eigenstiffness[0])
+    softest = significant(least, 3) if not sigma else with_deviation(least, sigma)
+    facts = [f"softest strain {softest} GPa ({stability.descriptions[0]})"]
     off = distance(stiffness.voigt, claimed)
     if off > NOTABLE_DISTANCE:
         facts.append(f"{significant(100 * off, 2)} % away from {claimed.name} in these axes")
@@ -105,7 +120,9 @@ def _facts(
         hill = averages(stiffness).hill
         index = anisotropy(stiffness, claimed.key == "cubic").universal
         facts.append(f"universal anisotropy {significant(index, 3)}")
-        facts.append(f"K {significant(hill.bulk, 3)}, G {significant(hill.shear, 3)} GPa (Hill)")
+        facts.append(
+            f"K {significant(hill.bulk, 3)}, G {significant(hill.shear, 3)} GPa (Hill)"
+        )
     return tuple(facts)
 
 
@@ -121,5 +138,7 @@ def _detail(stiffness: Stiffness, claimed: CrystalClass, stability: Stability) -
         f"({significant(item.value)} {item.unit})"
         for item in criteria(stiffness.voigt, claimed)
     ]
+    if distance(stiffness.voigt, claimed) > NOTABLE_DISTANCE:
+        lines += ["   They read the free cells only; this table departs from the class."]
     lines += ["", "A crystal is stable when all six eigenstiffnesses are positive."]
     return "\n".join(lines)

@@ -44,7 +44,6 @@ LEAST_CELL = 52
 HEADER_WIDTH = 16
 HEADER_HEIGHT = 18
 LEAST_FONT = 0.7  # of the body size: numbers shrink to this before they are elided
-FONT_STEP = 0.25  # points; hinted widths do not shrink in proportion, so they are tried
 FACES = (
     ("stiffness", "Stiffness C", "The stiffness matrix, Voigt order 11 22 33 23 13 12."),
     (
@@ -119,9 +118,10 @@ class ConstantsTable(QTableView):
             if not self.cells.fault(row, column)
         ]
         free = room // SIZE - 1 - 2 * PADDING
-        least = font.pointSizeF() * LEAST_FONT
-        while text_width(QFontMetricsF(font), texts) > free and font.pointSizeF() > least:
-            font.setPointSizeF(font.pointSizeF() - FONT_STEP)
+        least = font.pixelSize() * LEAST_FONT
+        # Hinted widths do not shrink in proportion, so sizes are tried.
+        while text_width(QFontMetricsF(font), texts) > free and font.pixelSize() > least:
+            font.setPixelSize(font.pixelSize() - 1)
         self.setFont(font)
 
     def resizeEvent(self, event: QResizeEvent) -> None:

@@ -13,10 +13,13 @@ UNIQUE_AXES = (("x", "along x"), ("y", "along y"), ("z", "along z"))
 
 
 class SpecimenForm(QWidget):
-    """Name, density, symmetry, source, notes; and which of two crystals is looked at."""
+    """Name, density, symmetry, source, notes; and which of two crystals is looked at.
+
+    `edited(field, text)`; the field "chosen" comes with the side, "A" or "B", whose crystal
+    the ledger shall show.
+    """
 
     edited = Signal(str, str)
-    chosen = Signal(str)
 
     def __init__(self) -> None:
         super().__init__()
@@ -37,7 +40,7 @@ class SpecimenForm(QWidget):
         self._axis = Choice(
             "unique_axis", "Unique axis", "The crystal axis of the two-fold symmetry."
         )
-        self._crystal = Choice("crystal", "Crystal looked at")
+        self._crystal = Choice("chosen", "Crystal of", "Whose crystal the ledger shows.")
         self._crystal_label = label("Crystal of", "secondary")
         self._axis_label = label("Unique axis", "secondary")
         self._class_note = label(role="secondary", wrap=True)
@@ -98,7 +101,7 @@ class SpecimenForm(QWidget):
         self._notes.finished.connect(self.edited)
         self._class.chosen.connect(self.edited)
         self._axis.chosen.connect(self.edited)
-        self._crystal.chosen.connect(self._choose)
+        self._crystal.chosen.connect(self.edited)
 
     def show_view(self, view: SpecimenView) -> None:
         """Show what is known."""
@@ -128,6 +131,3 @@ class SpecimenForm(QWidget):
     def _marked(self, field: str) -> TextField | Choice:
         choices = {"crystal_class": self._class, "unique_axis": self._axis}
         return choices[field] if field in choices else self._fields[field]
-
-    def _choose(self, field: str, side: str) -> None:
-        self.chosen.emit(side)

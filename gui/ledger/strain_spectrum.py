@@ -26,7 +26,7 @@ from gui.viewdata import SpectrumBar, SpectrumView
 ROW = 21.0  # height of one bar with its gap, unscaled pixels
 GAP = 8.0
 MARK = 9.0  # side of the triangle that flags a bar near zero
-BARS_SHARE = 0.32  # of the width is for the bars, the rest for words
+BARS_SHARE = 0.3  # of the width is for the bars, the rest for words
 NEAR_ZERO = 0.02  # of the mean of the positive bars: too short to be seen as a bar
 
 
@@ -81,7 +81,8 @@ def _place(
     span = (high - low) or 1.0
     room = rect.width() * BARS_SHARE
     per_unit = room / span
-    numbers = rect.x() + room + GAP * scale + (MARK + 2) * scale
+    is_flagged = any(bar_role(bar, view) != "a" for bar in view.bars)
+    numbers = rect.x() + room + (GAP + (MARK + 2 if is_flagged else 0)) * scale
     right = numbers + text_width(metrics, (bar.text for bar in view.bars))
     return _Places(rect.x() - low * per_unit, per_unit, right, right + GAP * scale, ROW * scale)
 

@@ -10,11 +10,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QColor, QFont, QFontMetricsF, QGuiApplication, QPainter, QPen
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPen
 
 from gui.theme import Theme
 
-_POINTS_PER_INCH = 72.0
 _TABULAR_FIGURES = QFont.Tag("tnum")
 
 
@@ -23,12 +22,6 @@ def lettering(
 ) -> QFont:
     """Return a font of the theme with its size in pixels, figures of even width."""
     font = theme.font(size, scale, bold)
-    if font.pixelSize() > 0:
-        font.setFeature(_TABULAR_FIGURES, 1)
-        return font
-    screen = QGuiApplication.primaryScreen()
-    dots = screen.logicalDotsPerInchY() if screen is not None else 96.0
-    font.setPixelSize(max(1, round(font.pointSizeF() * dots / _POINTS_PER_INCH)))
     font.setFeature(_TABULAR_FIGURES, 1)
     return font
 

@@ -126,7 +126,7 @@ class SourcePicture(PlotFrame):
         self.time.setSuffix(" µs")
         self.time.setDecimals(2)
         self.time.setRange(_SHORTEST_US, _LONGEST_US)
-        # Qt gives a styled spin box without buttons a field one pixel wide; so: no width of them.
+        # Not NoButtons: in a styled spin box Qt then makes the field one pixel wide.
         self.time.setStyleSheet(_NO_ARROWS)
         self.time.setStepType(QAbstractSpinBox.StepType.AdaptiveDecimalStepType)
         self.time.setKeyboardTracking(False)

@@ -10,6 +10,7 @@ import numpy as np
 
 from core import live
 from core.arrays import FloatArray, IntArray
+from core.crystal.cell import CrystalFrame
 from core.crystal.directions import nearest_indices
 from core.directional.medium import Medium
 from core.directional.quantities import Quantity, quantity
@@ -24,8 +25,9 @@ from gui.presenting.stage import (
     PLANES,
     SHEET_NAMES,
     ColourOf,
-    plane_choices,
+    drawable_limit,
     pane_title,
+    plane_choices,
     plane_key,
     point_axes,
     quantity_title,
@@ -44,8 +46,11 @@ _COST_LEVEL = 5
 def shown_sides(state: BenchState) -> tuple[str, ...]:
     """Return the sides whose quantity can be computed."""
     shown = quantity(state.quantity)
-    return tuple(side for side in sides(state)
-                 if not shown.wave or state.specimen_of(side).density is not None)
+    return tuple(
+        side
+        for side in sides(state)
+        if not shown.wave or state.specimen_of(side).density is not None
+    )
 
 
 def _medium(state: BenchState, side: str) -> Medium:
@@ -57,49 +62,57 @@ def section_view(state: BenchState) -> SectionView:
     """Return the polar section of A and B."""
     shown = quantity(state.quantity)
     curves = [curve for side in shown_sides(state) for curve in _curves(state, shown, side)]
-    radius = max((float(np.nanmax(np.hypot(*curve.points), initial=0.0)) for curve in curves),
-                 default=0.0)
+    radius = max(
+        (float(np.nanmax(np.hypot(*curve.points), initial=0.0)) for curve in curves),
+        default=0.0,
+    )
     ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
     across, up = plane_axes(np.array(state.section))
     negative = any(curve.negative is not None and curve.negative.any() for curve in curves)
     return SectionView(
         title=quantity_title(shown),
-        curves=tuple(curves), radius=radius,
+        curves=tuple(curves),
+        radius=radius,
         rings=tuple(zip(ticks, tick_texts(ticks), strict=True)),
-        axis_labels=(axis_label(across), axis_label(up)), unit=shown.unit,
+        axis_labels=(axis_label(across), axis_label(up)),
+        unit=shown.unit,
         pin_angle=_pin_angle(state, across, up),
         negative_note=_dotted_note(shown, negative),
         notice="" if curves else NO_DENSITY,
         legend=tuple((side, pane_title(state, side)) for side in shown_sides(state)),
         directions=_rim_directions(state, across, up),
         ticks=_section_ticks(state, shown, across, up),
-        plane=plane_key(state.section), planes=plane_choices(state))
+        plane=plane_key(state.section),
+        planes=plane_choices(state),
+    )
 
 
 def _curves(state: BenchState, shown: Quantity, side: str) -> list[Curve]:
     found = live.section(_medium(state, side), state.quantity, state.section)
-    limit = _SECTION_CLIP.get(shown.key)
+    limit = _SECTION_CLIP.get(shown.key, drawable_limit(found.values))
     curves = []
     for sheet, (points, values) in enumerate(zip(found.points, found.values, strict=True)):
         if shown.sheets == 3 and not state.display.sheets[sheet]:
             continue
-        drawn = points
-        if limit is not None:
-            with np.errstate(invalid="ignore"):
-                drawn = np.where(np.abs(values) > limit, np.nan, points)
+        with np.errstate(invalid="ignore"):
+            drawn = np.where(np.abs(values) > limit, np.nan, points)
         negative = values < 0 if shown.signed else None
         label = SHEET_NAMES[sheet] if shown.sheets == 3 else ""
         faint = found.out_of_plane[sheet] if shown.shape == "wave" else None
-        curves.append(Curve(drawn, side, sheet, label, negative=negative if faint is None
-                            else faint))
+        curves.append(
+            Curve(drawn, side, sheet, label, negative=negative if faint is None else faint)
+        )
     return curves
 
 
 def _dotted_note(shown: Quantity, dotted: bool) -> str:
     if not dotted:
         return ""
-    return "dotted where the ray leaves the plane" if shown.shape == "wave" else (
-        "dotted where negative")
+    return (
+        "dotted where the ray leaves the plane"
+        if shown.shape == "wave"
+        else ("dotted where negative")
+    )
 
 
 def axis_label(vector: FloatArray) -> str:
@@ -123,8 +136,9 @@ def section_direction(state: BenchState, angle: float) -> Vector3:
     return unit_vector(np.cos(angle) * across + np.sin(angle) * up)
 
 
-def _rim_directions(state: BenchState, across: FloatArray,
-                    up: FloatArray) -> tuple[tuple[float, str], ...]:
+def _rim_directions(
+    state: BenchState, across: FloatArray, up: FloatArray
+) -> tuple[tuple[float, str], ...]:
     """Return the simplest lattice directions of A's crystal that lie in the plane."""
     side = sides(state)[0]
     specimen = state.specimen_of(side)
@@ -146,8 +160,9 @@ def _rim_directions(state: BenchState, across: FloatArray,
     return tuple(marks[:8])
 
 
-def _section_ticks(state: BenchState, shown: Quantity, across: FloatArray,
-                   up: FloatArray) -> FloatArray | None:
+def _section_ticks(
+    state: BenchState, shown: Quantity, across: FloatArray, up: FloatArray
+) -> FloatArray | None:
     """Return polarisation ticks on the curves of the first side, shape (2, 2, M)."""
     if not state.display.ticks or shown.sheets == 1 or not shown_sides(state):
         return None
@@ -200,17 +215,30 @@ def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
         about = ColourOf(title)
     else:
         picture, about = _hemisphere_picture(state, shown, choice, sheet, size)
-    low = float(np.nanmin(picture)) if np.isfinite(picture).any() else 0.0
-    high = float(np.nanmax(picture)) if np.isfinite(picture).any() else 1.0
-    scale = scale_view(about, low, high)
+    scale = scale_view(about, *_picture_range(picture, projection, size))
     levels = [value for value, _ in scale.ticks]
     return HemisphereView(
-        title=about.title, picture=picture, scale=scale,
+        title=about.title,
+        picture=picture,
+        scale=scale,
         contours=_contour_lines(picture, levels) if known and fine else (),
-        marks=_hemisphere_marks(state, choice), projection=projection,  # type: ignore[arg-type]
-        shown=choice, choices=_hemisphere_choices(state), sheet=sheet,
+        marks=_hemisphere_marks(state, choice),
+        projection=projection,  # type: ignore[arg-type]
+        shown=choice,
+        choices=_hemisphere_choices(state),
+        sheet=sheet,
         sheets=tuple(enumerate(SHEET_NAMES)) if shown.sheets == 3 else (),
-        notice="" if known else NO_DENSITY)
+        notice="" if known else NO_DENSITY,
+    )
+
+
+def _picture_range(picture: FloatArray, projection: str, size: int) -> tuple[float, float]:
+    """Return the least and the greatest value of a picture that its colours tell apart."""
+    if not np.isfinite(picture).any():
+        return 0.0, 1.0
+    limit = drawable_limit(picture[live.disc(projection, size)[1]])
+    low, high = float(np.nanmin(picture)), float(np.nanmax(picture))
+    return max(low, -limit), min(high, limit)
 
 
 def _hemisphere_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
@@ -227,29 +255,35 @@ def _hemisphere_choice(state: BenchState, known: tuple[str, ...]) -> str:
     return choice
 
 
-def _hemisphere_picture(state: BenchState, shown: Quantity, choice: str, sheet: int,
-                        size: int) -> tuple[FloatArray, ColourOf]:
+def _hemisphere_picture(
+    state: BenchState, shown: Quantity, choice: str, sheet: int, size: int
+) -> tuple[FloatArray, ColourOf]:
     projection = state.display.projection
     known = shown_sides(state)
     title = quantity_title(shown)
     if choice == "difference":
-        a, b = (live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
-                for side in ("A", "B"))
+        a, b = (
+            live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
+            for side in ("A", "B")
+        )
         return b - a, ColourOf(f"B − A: {title}", diverging=True)
     side = choice if choice in known else known[0]
     if choice == "cost":
-        picture = _cost_picture(_medium(state, side), shown.key, projection,
-                                state.cutting_error_deg, size)[sheet]
+        picture = _cost_picture(
+            _medium(state, side), shown.key, projection, state.cutting_error_deg, size
+        )[sheet]
         return picture, ColourOf(
-            f"change of {title} within ±{state.cutting_error_deg:g}° ({side})")
+            f"change of {title} within ±{state.cutting_error_deg:g}° ({side})"
+        )
     picture = live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
     return picture, ColourOf(title, shown.signed, shown.logarithmic)
 
 
 @lru_cache(maxsize=4)
-def _cost_picture(medium: Medium, key: str, projection: str, delta: float,
-                  size: int) -> FloatArray:
-    """Return the cost of a cutting error on the disc: the mesh's values at the nearest vertex."""
+def _cost_picture(
+    medium: Medium, key: str, projection: str, delta: float, size: int
+) -> FloatArray:
+    """Return the cost of a cutting error on the disc, taken from the nearest vertices."""
     mesh = sphere_mesh(_COST_LEVEL)
     costs = cost_map(medium, mesh, delta, key)
     inside = live.disc(projection, size)[1]
@@ -270,8 +304,9 @@ def _nearest_vertices(projection: str, size: int) -> IntArray:
     return np.asarray(index % half.shape[1])
 
 
-def _contour_lines(picture: FloatArray, levels: list[float]) -> tuple[
-        tuple[float, FloatArray], ...]:
+def _contour_lines(
+    picture: FloatArray, levels: list[float]
+) -> tuple[tuple[float, FloatArray], ...]:
     """Return contour lines of the picture in disc coordinates."""
     import pyqtgraph as pg
 
@@ -286,8 +321,9 @@ def _contour_lines(picture: FloatArray, levels: list[float]) -> tuple[
     return tuple(lines)
 
 
-def _hemisphere_marks(state: BenchState, choice: str) -> tuple[
-        tuple[float, float, str, str], ...]:
+def _hemisphere_marks(
+    state: BenchState, choice: str
+) -> tuple[tuple[float, float, str, str], ...]:
     """Return the pin, the low-index directions and the acoustic axes on the disc."""
     projection = state.display.projection
     side = choice if choice in ("A", "B") else sides(state)[0]
@@ -295,19 +331,22 @@ def _hemisphere_marks(state: BenchState, choice: str) -> tuple[
     marks = [(*_on_disc(state.pin, projection), "", "pin")]
     if specimen.frame.has_basis:
         turn = live.rotation(state.orientation_of(side), specimen)
-        marks += [(*_on_disc(unit_vector(turn @ vector), projection), text, "direction")
-                  for text, vector in low_directions(state, side)
-                  if _is_upper(turn @ vector)]
-    if state.display.marks and specimen.density is not None and (
-            quantity(state.quantity).wave):
-        marks += [(*_on_disc(unit_vector(axis.direction), projection), "", "axis")
-                  for axis in point_axes(_medium(state, side))]
+        marks += [
+            (*_on_disc(unit_vector(turn @ vector), projection), text, "direction")
+            for text, vector in low_directions(specimen.frame)
+            if _is_upper(turn @ vector)
+        ]
+    if state.display.marks and specimen.density is not None and (quantity(state.quantity).wave):
+        marks += [
+            (*_on_disc(unit_vector(axis.direction), projection), "", "axis")
+            for axis in point_axes(_medium(state, side))
+        ]
     return tuple(marks)
 
 
-def low_directions(state: BenchState, side: str) -> list[tuple[str, FloatArray]]:
-    """Return the simplest lattice directions of a side's crystal, crystal axes."""
-    frame = state.specimen_of(side).frame
+@lru_cache(maxsize=4)
+def low_directions(frame: CrystalFrame) -> tuple[tuple[str, FloatArray], ...]:
+    """Return the simplest lattice directions of a crystal with their unit vectors."""
     basis = frame.basis()
     found: dict[str, FloatArray] = {}
     for steps in _SIMPLE_STEPS:
@@ -316,7 +355,7 @@ def low_directions(state: BenchState, side: str) -> list[tuple[str, FloatArray]]
         near = nearest_indices(vector, frame, largest=1)
         if near.angle_deg < 1e-6:
             found.setdefault(near.text.replace("-", "−"), np.array(near.vector))
-    return list(found.items())
+    return tuple(found.items())
 
 
 def _is_upper(vector: FloatArray) -> bool:
@@ -326,8 +365,11 @@ def _is_upper(vector: FloatArray) -> bool:
 
 
 _SIMPLE_STEPS = tuple(
-    step for size in (1, 2, 3) for step in itertools.product((1, 0, -1), repeat=3)
-    if np.abs(step).sum() == size)
+    step
+    for size in (1, 2, 3)
+    for step in itertools.product((1, 0, -1), repeat=3)
+    if np.abs(step).sum() == size
+)
 
 
 def _on_disc(direction: Vector3, projection: str) -> tuple[float, float]:
@@ -342,8 +384,11 @@ def disc_direction(state: BenchState, x: float, y: float) -> Vector3:
 
 # ------------------------------------------------------------------ sweep
 _SWEEP = np.linspace(-90.0, 90.0, 361)
-_SWEEP_AXES: dict[str, Vector3] = {"X": (1.0, 0.0, 0.0), "Y": (0.0, 1.0, 0.0),
-                                   "Z": (0.0, 0.0, 1.0)}
+_SWEEP_AXES: dict[str, Vector3] = {
+    "X": (1.0, 0.0, 0.0),
+    "Y": (0.0, 1.0, 0.0),
+    "Z": (0.0, 0.0, 1.0),
+}
 
 
 def sweep_axis(state: BenchState) -> Vector3:
@@ -364,19 +409,30 @@ def sweep_view(state: BenchState) -> SweepView:
     curves = []
     for side in shown_sides(state):
         values = quantity(shown.key).values(_medium(state, side), dirs)
-        curves += [(side, sheet, row) for sheet, row in enumerate(values)
-                   if shown.sheets == 1 or state.display.sheets[sheet]]
-    chosen = next((key for key, vector in _SWEEP_AXES.items()
-                   if state.display.sweep_about == vector), "normal")
+        curves += [
+            (side, sheet, row)
+            for sheet, row in enumerate(values)
+            if shown.sheets == 1 or state.display.sheets[sheet]
+        ]
+    chosen = next(
+        (key for key, vector in _SWEEP_AXES.items() if state.display.sweep_about == vector),
+        "normal",
+    )
     parallel = abs(np.dot(axis, state.pin)) > 1 - 1e-9
     notice = "The pin lies on this axis: turning about it moves nothing." if parallel else ""
     return SweepView(
-        title=f"{shown.name} away from the pin", angles=_SWEEP, curves=tuple(curves),
+        title=f"{shown.name} away from the pin",
+        angles=_SWEEP,
+        curves=tuple(curves),
         axis=f"turned about {axis_label(np.array(axis))}",
-        choices=(("normal", "about the section's normal"),
-                 *((key, f"about part {key}") for key in _SWEEP_AXES)),
-        chosen=chosen, value_label=f"{shown.symbol}{', ' if shown.unit else ''}{shown.unit}",
-        notice=notice if curves else NO_DENSITY)
+        choices=(
+            ("normal", "about the section's normal"),
+            *((key, f"about part {key}") for key in _SWEEP_AXES),
+        ),
+        chosen=chosen,
+        value_label=f"{shown.symbol}{', ' if shown.unit else ''}{shown.unit}",
+        notice=notice if curves else NO_DENSITY,
+    )
 
 
 def sweep_direction(state: BenchState, degrees: float) -> Vector3:
@@ -394,16 +450,22 @@ def source_view(state: BenchState, time_us: float) -> SourceView:
         if state.specimen_of(side).density is None:
             continue
         found = live.section(_medium(state, side), "wave", state.section)
-        curves += [(side, sheet, found.points[sheet] * time_us, found.out_of_plane[sheet])
-                   for sheet in range(3) if state.display.sheets[sheet]]
-    radius = max((float(np.nanmax(np.hypot(*points), initial=0.0))
-                  for _, _, points, _ in curves), default=0.0)
+        curves += [
+            (side, sheet, found.points[sheet] * time_us, found.out_of_plane[sheet])
+            for sheet in range(3)
+            if state.display.sheets[sheet]
+        ]
+    radius = max(
+        (float(np.nanmax(np.hypot(*points), initial=0.0)) for _, _, points, _ in curves),
+        default=0.0,
+    )
     step = nice_step(radius, 4) if radius > 0 else 1.0
     rings = tuple(step * k for k in range(1, math.ceil(radius / step) + 1))
     return SourceView(
-        title="Wavefronts from a point source", curves=tuple(curves), time_us=time_us,
+        title="Wavefronts from a point source",
+        curves=tuple(curves),
+        time_us=time_us,
         rings=tuple(zip(rings, tick_texts(rings), strict=True)),
         axis_labels=(axis_label(across), axis_label(up)),
-        notice="" if curves else NO_DENSITY)
-
-
+        notice="" if curves else NO_DENSITY,
+    )

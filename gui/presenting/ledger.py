@@ -7,13 +7,27 @@ from functools import lru_cache
 import numpy as np
 
 from core import live
-from core.crystal.cell import AXES_CONVENTIONS, axes_note, axes_text, axes_words, cell_mismatch
+from core.arrays import FloatArray
+from core.crystal.cell import (
+    AXES_CONVENTIONS,
+    CrystalFrame,
+    axes_note,
+    axes_text,
+    axes_words,
+    cell_mismatch,
+)
 from core.crystal.directions import nearest_indices
-from core.crystal.orientation import WAYS, misorientation, orientation_texts, parse_orientation
-from core.edits import FITS, claimed_class
+from core.crystal.orientation import (
+    WAYS,
+    misorientation,
+    orientation_texts,
+    parse_orientation,
+    turned,
+)
+from core.edits import FITS
 from core.errors import InputError
-from core.numbers import full_precision, significant
-from core.state import BenchState, Specimen
+from core.numbers import full_precision, significant, with_deviation
+from core.state import BenchState, OrientationChoice, Specimen, claimed_class
 from core.study.verdict import Verdict, judge
 from core.tensor.notation import constant_name
 from core.tensor.stability import assess
@@ -76,15 +90,21 @@ def constants_view(specimen: Specimen, face: str) -> ConstantsView:
     claimed = claimed_class(specimen)
     table, note = _face_table(specimen, face)
     expected = _expected(specimen, claimed) if face == "stiffness" else table
+    known = face == "stiffness" and specimen.stiffness_std is not None
+    std = np.array(specimen.stiffness_std) if known else np.zeros((6, 6))
     slack = _OFF_PATTERN * float(np.abs(np.array(specimen.stiffness)).max())
     cells = tuple(
-        tuple(_cell(face, claimed, table, expected, slack, i, j) for j in range(6))
-        for i in range(6))
+        tuple(
+            _cell(face, claimed, table, expected, slack, i, j, float(std[i, j]))
+            for j in range(6)
+        )
+        for i in range(6)
+    )
     known_face = face if face in UNITS else "stiffness"
     return ConstantsView(known_face, UNITS[known_face], cells, not note, note)  # type: ignore[arg-type]
 
 
-def _face_table(specimen: Specimen, face: str) -> tuple[np.ndarray, str]:
+def _face_table(specimen: Specimen, face: str) -> tuple[FloatArray, str]:
     stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
     if face == "uncertainty":
         known = specimen.stiffness_std
@@ -97,12 +117,20 @@ def _face_table(specimen: Specimen, face: str) -> tuple[np.ndarray, str]:
     return np.array(stiffness.voigt), ""
 
 
-def _expected(specimen: Specimen, claimed: CrystalClass) -> np.ndarray:
+def _expected(specimen: Specimen, claimed: CrystalClass) -> FloatArray:
     return complete(np.array(specimen.stiffness), claimed)
 
 
-def _cell(face: str, claimed: CrystalClass, table: np.ndarray, expected: np.ndarray,
-          slack: float, row: int, column: int) -> CellView:
+def _cell(
+    face: str,
+    claimed: CrystalClass,
+    table: FloatArray,
+    expected: FloatArray,
+    slack: float,
+    row: int,
+    column: int,
+    deviation: float,
+) -> CellView:
     """Return one cell; a number that breaks the class's pattern shows as a free one."""
     i, j = sorted((row, column))
     kind = claimed.kinds[i][j]
@@ -110,8 +138,11 @@ def _cell(face: str, claimed: CrystalClass, table: np.ndarray, expected: np.ndar
     letter = "S" if face == "compliance" else "C"
     tooltip = f"{letter}{i + 1}{j + 1}"
     if kind != "independent":
-        tooltip = dependence_text(claimed, i, j) if face != "compliance" else (
-            f"{tooltip}: follows from the {claimed.name} class")
+        tooltip = (
+            dependence_text(claimed, i, j)
+            if face != "compliance"
+            else (f"{tooltip}: follows from the {claimed.name} class")
+        )
         if abs(table[i, j] - expected[i, j]) > slack:
             kind = "independent"
             tooltip = f"{tooltip}, but the table has {significant(value)}"
@@ -120,8 +151,14 @@ def _cell(face: str, claimed: CrystalClass, table: np.ndarray, expected: np.ndar
         tooltip = f"equal to {letter}{i + 1}{j + 1}"
     if kind == "zero":
         return CellView("·", "zero", "0.0", f"{letter}{i + 1}{j + 1}: zero by symmetry")
-    text = "·" if face == "uncertainty" and value == 0.0 else significant(value)
-    return CellView(text, kind, full_precision(value), tooltip)  # type: ignore[arg-type]
+    return CellView(_cell_text(face, value, deviation), kind, full_precision(value), tooltip)  # type: ignore[arg-type]
+
+
+def _cell_text(face: str, value: float, deviation: float) -> str:
+    """Return a number with the digits that its uncertainty leaves it."""
+    if face == "uncertainty":
+        return "·" if value == 0.0 else significant(value, 2)
+    return with_deviation(value, deviation).split(" ")[0]
 
 
 def edit_label(face: str, row: int, column: int) -> str:
@@ -140,13 +177,20 @@ def spectrum_view(specimen: Specimen) -> SpectrumView:
     stability = assess(Stiffness.from_voigt(np.array(specimen.stiffness)))
     bars = tuple(
         SpectrumBar(
-            float(value), significant(float(value), 3), words,
+            float(value),
+            significant(float(value), 3),
+            words,
             f"{significant(float(value), 6)} GPa: {words}. An eigenvalue of the stiffness in "
-            "Kelvin form; the crystal is stable when all six are positive.")
-        for value, words in zip(stability.eigenstiffness, stability.descriptions, strict=True))
+            "Kelvin form; the crystal is stable when all six are positive.",
+        )
+        for value, words in zip(stability.eigenstiffness, stability.descriptions, strict=True)
+    )
     count = int((stability.eigenstiffness <= 0).sum())
-    note = "" if stability.stable else (
-        f"{count} of 6 strains release energy instead of storing it")
+    note = (
+        ""
+        if stability.stable
+        else (f"{count} of 6 strains release energy instead of storing it")
+    )
     return SpectrumView(bars, note)
 
 
@@ -168,20 +212,32 @@ def specimen_view(state: BenchState) -> SpecimenView:
     specimen = ledger_specimen(state)
     claimed = claimed_class(specimen)
     off = distance(np.array(specimen.stiffness), claimed)
-    note = "" if off < FITS else (
-        f"The table is {significant(100 * off, 2)} % away from {claimed.name} in these axes.")
-    choices = () if state.other is None else (
-        ("A", state.specimen.name), ("B", state.other.name))
+    note = (
+        ""
+        if off < FITS
+        else (
+            f"The table is {significant(100 * off, 2)} % away from {claimed.name} in these axes."
+        )
+    )
+    choices = (
+        () if state.other is None else (("A", state.specimen.name), ("B", state.other.name))
+    )
     temperature = specimen.temperature_c
     return SpecimenView(
-        name=specimen.name, source=specimen.source, notes=specimen.notes,
-        density="" if specimen.density is None else significant(specimen.density, 6),
+        name=specimen.name,
+        source=specimen.source,
+        notes=specimen.notes,
+        density="" if specimen.density is None else f"{specimen.density:.10g}",
         temperature="" if temperature is None else f"{temperature:g}".replace("-", "−"),
-        crystal_class=specimen.crystal_class, classes=class_choices(),
+        crystal_class=specimen.crystal_class,
+        classes=class_choices(),
         unique_axis=specimen.unique_axis,
         has_unique_axis=specimen.crystal_class == "monoclinic",
-        class_note=note, sides="A and B" if state.other is None else state.display.ledger,
-        choices=choices, chosen=state.display.ledger)
+        class_note=note,
+        sides="A and B" if state.other is None else state.display.ledger,
+        choices=choices,
+        chosen=state.display.ledger,
+    )
 
 
 def cell_form_view(specimen: Specimen) -> CellFormView:
@@ -191,37 +247,57 @@ def cell_form_view(specimen: Specimen) -> CellFormView:
     if specimen.crystal_axes not in AXES_CONVENTIONS:
         conventions = (*conventions, (specimen.crystal_axes, axes_words(specimen.crystal_axes)))
     if cell is None:
-        note = ("No cell: indices follow the unit cube." if specimen.frame.has_basis else
-                "No cell: [u v w] and (h k l) cannot be read.")
-        return CellFormView(("",) * 3, ("",) * 3, axes_text(specimen.crystal_axes),  # type: ignore[arg-type]
-                            conventions, note)
+        note = (
+            "No cell: indices follow the unit cube."
+            if specimen.frame.has_basis
+            else "No cell: [u v w] and (h k l) cannot be read."
+        )
+        return CellFormView(
+            ("",) * 3,
+            ("",) * 3,
+            axes_text(specimen.crystal_axes),  # type: ignore[arg-type]
+            conventions,
+            note,
+        )
     mismatch = cell_mismatch(cell, specimen.crystal_class, specimen.unique_axis)
-    notes = (f"volume {significant(cell.volume)} Å³", mismatch,
-             axes_note(cell, specimen.crystal_axes))
+    notes = (
+        f"volume {significant(cell.volume)} Å³",
+        mismatch,
+        axes_note(cell, specimen.crystal_axes),
+    )
     return CellFormView(
         (f"{cell.a:g}", f"{cell.b:g}", f"{cell.c:g}"),
         (f"{cell.alpha:g}", f"{cell.beta:g}", f"{cell.gamma:g}"),
-        axes_text(specimen.crystal_axes), conventions,
-        " · ".join(note for note in notes if note))
+        axes_text(specimen.crystal_axes),
+        conventions,
+        " · ".join(note for note in notes if note),
+    )
 
 
 def orientation_view(state: BenchState, side: str) -> OrientationView:
     """Return the form of one orientation."""
     specimen, choice = state.specimen_of(side), state.orientation_of(side)
-    said = parse_orientation(choice.text, specimen.frame)
-    turned = live.rotation(choice, specimen)
-    others = tuple(
-        (WAYS[way], text) for way, text in orientation_texts(turned, specimen.frame).items())
-    axes = (axis_words(turned[0], specimen), axis_words(turned[1], specimen),
-            axis_words(turned[2], specimen))
+    way, others, axes = _said(choice, specimen.frame)
     note = _misorientation_note(state) if side == "B" else ""
-    return OrientationView(side, choice.text, said.way, tuple(WAYS.items()), choice.turn,
-                           others, axes, note)
+    return OrientationView(
+        side, choice.text, way, tuple(WAYS.items()), choice.turn, others, axes, note
+    )
 
 
-def axis_words(vector: np.ndarray, specimen: Specimen) -> str:
+@lru_cache(maxsize=8)
+def _said(
+    choice: OrientationChoice, frame: CrystalFrame
+) -> tuple[str, tuple[tuple[str, str], ...], tuple[str, str, str]]:
+    """Return the way an orientation is said, the same said otherwise, and its axes in words."""
+    said = parse_orientation(choice.text, frame)
+    turn = turned(said.rotation, choice.turn)
+    others = tuple((WAYS[way], text) for way, text in orientation_texts(turn, frame).items())
+    axes = (axis_words(turn[0], frame), axis_words(turn[1], frame), axis_words(turn[2], frame))
+    return said.way, others, axes
+
+
+def axis_words(vector: FloatArray, frame: CrystalFrame) -> str:
     """Return the low-index direction nearest to a vector (crystal axes), with how far off."""
-    frame = specimen.frame
     if not frame.has_basis:
         return "  ".join(significant(round(float(x), 4), 3) for x in vector)
     near = nearest_indices(vector, frame)
@@ -234,7 +310,8 @@ def axis_words(vector: np.ndarray, specimen: Specimen) -> str:
 def _misorientation_note(state: BenchState) -> str:
     """Return how far B is turned from A, as it stands and by the crystal's own symmetry."""
     rotation_a, rotation_b = (
-        live.rotation(state.orientation_of(side), state.specimen_of(side)) for side in "AB")
+        live.rotation(state.orientation_of(side), state.specimen_of(side)) for side in "AB"
+    )
     plain = misorientation(rotation_a, rotation_b)
     if plain.angle_deg < 1e-9:
         return "the same orientation as A"
@@ -246,5 +323,3 @@ def _misorientation_note(state: BenchState) -> str:
     if least.angle_deg < plain.angle_deg - 1e-9:
         text += f", {significant(least.angle_deg, 4)}° by the crystal's symmetry"
     return text
-
-

@@ -14,11 +14,10 @@ from core.directional import waves
 from core.directional.debye import debye_speed
 from core.directional.extremes import Extreme
 from core.directional.medium import Medium
-from core.directional.quantities import QUANTITIES, Quantity, quantity
+from core.directional.quantities import QUANTITIES, quantity
 from core.directional.sphere import Directions, directions
-from core.edits import claimed_class
-from core.numbers import full_precision, significant, signed
-from core.state import BenchState, Specimen, Vector3
+from core.numbers import full_precision, signed, significant
+from core.state import BenchState, Specimen, Vector3, claimed_class
 from core.study.part import PartRow, part_table
 from core.study.tolerance import cone_extremes
 from core.tensor.averages import anisotropy, averages, hashin_shtrikman
@@ -40,8 +39,14 @@ def reading_view(state: BenchState) -> ReadingView:
     rows = tuple(_reading_row(row, second.get(_place_of(row))) for row in first)
     missing = [side for side in sides(state) if state.specimen_of(side).density is None]
     notice = "Waves want a density: enter it in the ledger." if missing else ""
-    return ReadingView(pin_words(state.pin), _near_words(state, "A"), _near_words(state, "B"),
-                       rows, bool(a and b), notice)
+    return ReadingView(
+        pin_words(state.pin),
+        _near_words(state, "A"),
+        _near_words(state, "B"),
+        rows,
+        bool(a and b),
+        notice,
+    )
 
 
 def _place_of(row: Row) -> tuple[str, str]:
@@ -75,8 +80,11 @@ def near_words(vector: np.ndarray, specimen: Specimen) -> str:
     plane = nearest_indices(vector, specimen.frame, plane=True)
     near = plane if plane.angle_deg < direction.angle_deg - 1e-6 else direction
     text = near.text.replace("-", "−")
-    return f"along {text}" if near.angle_deg < 5e-3 else (
-        f"near {text}, {significant(near.angle_deg, 2)}° off")
+    return (
+        f"along {text}"
+        if near.angle_deg < 5e-3
+        else (f"near {text}, {significant(near.angle_deg, 2)}° off")
+    )
 
 
 @lru_cache(maxsize=4)
@@ -107,16 +115,47 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
         group = f"{name} wave"
         for key in _WAVE_KEYS:
             entry = quantity(key)
-            rows.append((key, entry.short, entry.unit, float(values[key][sheet]),
-                         entry.definition, group))
-        rows.append(("phase", "longitudinality", "", float(along[sheet]),
-                     "|p·n|: 1 for a purely longitudinal wave, 0 for a pure shear wave.", group))
-        rows.append(("phase", "impedance", "MRayl", float(impedance[sheet]),
-                     "Z = ρ v, the acoustic impedance of a plane wave.", group))
+            rows.append(
+                (
+                    key,
+                    entry.short,
+                    entry.unit,
+                    float(values[key][sheet]),
+                    entry.definition,
+                    group,
+                )
+            )
+        rows.append(
+            (
+                "phase",
+                "longitudinality",
+                "",
+                float(along[sheet]),
+                "|p·n|: 1 for a purely longitudinal wave, 0 for a pure shear wave.",
+                group,
+            )
+        )
+        rows.append(
+            (
+                "phase",
+                "impedance",
+                "MRayl",
+                float(impedance[sheet]),
+                "Z = ρ v, the acoustic impedance of a plane wave.",
+                group,
+            )
+        )
     splitting = float(waves.shear_splitting(medium, one)[0])
-    rows.append(("slowness", "shear splitting", "ns/mm", splitting,
-                 "Difference of travel time between the middle and the slowest wave.",
-                 "middle and slowest wave"))
+    rows.append(
+        (
+            "slowness",
+            "shear splitting",
+            "ns/mm",
+            splitting,
+            "Difference of travel time between the middle and the slowest wave.",
+            "middle and slowest wave",
+        )
+    )
     return rows
 
 
@@ -126,14 +165,20 @@ def _reading_row(row: Row, other: float | None) -> ReadingRow:
     second = "" if other is None else significant(other)
     difference = None if other is None else other - value
     return ReadingRow(
-        label, unit, significant(value), second,
+        label,
+        unit,
+        significant(value),
+        second,
         "" if difference is None else signed(difference, 3),
         (full_precision(value), full_precision(other), full_precision(difference)),
-        tooltip, key, group)
+        tooltip,
+        key,
+        group,
+    )
 
 
 def _without_dust(value: float) -> float:
-    """Return zero for what only rounding keeps from it: angles and ratios along symmetry axes."""
+    """Return zero for what only rounding keeps from it, as along symmetry axes."""
     return 0.0 if abs(value) < _DUST else value
 
 
@@ -143,15 +188,16 @@ _EXTREMES = (
     ("compressibility", "β", "1/TPa"),
     ("shear", "G", "GPa"),
     ("poisson", "ν", ""),
-    ("fast", "fastest wave", "km/s"),
-    ("middle", "middle wave", "km/s"),
-    ("slow", "slowest wave", "km/s"),
+    ("fast", "fastest v", "km/s"),
+    ("middle", "middle v", "km/s"),
+    ("slow", "slowest v", "km/s"),
 )
 Extremes = dict[str, tuple[Extreme | None, Extreme | None]]
 
 
-def extremes_view(specimen: Specimen, turn: np.ndarray, found: Extremes | None,
-                  pending: bool) -> ExtremesView:
+def extremes_view(
+    specimen: Specimen, turn: np.ndarray, found: Extremes | None, pending: bool
+) -> ExtremesView:
     """Return the extremes over all directions.
 
     Parameters
@@ -164,31 +210,46 @@ def extremes_view(specimen: Specimen, turn: np.ndarray, found: Extremes | None,
     pending : bool
         Whether a newer result is on its way.
     """
-    rows = [] if found is None else [
-        _extreme_row(specimen, turn, f"{label} {word}", unit, pair[which])
-        for key, label, unit in _EXTREMES if (pair := found.get(key)) is not None
-        for which, word in ((0, "least"), (1, "greatest"))
-        if not (pair[0] is None and pair[1] is None)
-    ]
-    return ExtremesView("Extremes", tuple(rows), pending,
-                        "being found …" if found is None else "")
+    rows = (
+        []
+        if found is None
+        else [
+            _extreme_row(specimen, turn, f"{label} {word}", unit, pair[which])
+            for key, label, unit in _EXTREMES
+            if (pair := found.get(key)) is not None
+            for which, word in ((0, "least"), (1, "greatest"))
+            if not (pair[0] is None and pair[1] is None)
+        ]
+    )
+    return ExtremesView(
+        "Extremes", tuple(rows), pending, "being found …" if found is None else ""
+    )
 
 
-def _extreme_row(specimen: Specimen, turn: np.ndarray, label: str, unit: str,
-                 extreme: Extreme | None) -> ExtremeRow:
+def _extreme_row(
+    specimen: Specimen, turn: np.ndarray, label: str, unit: str, extreme: Extreme | None
+) -> ExtremeRow:
     name = f"{label}{', ' if unit else ''}{unit}"
     if extreme is None:
-        return ExtremeRow(name, "–", "not defined", None,
-                          "Not defined: the table is unstable.", "")
+        return ExtremeRow(
+            name, "–", "not defined", None, "Not defined: the table is unstable.", ""
+        )
     crystal = np.array(extreme.direction)
     place = {"all": "every direction", "ring": f"ring through {_place(crystal, specimen)}"}.get(
-        extreme.where, _place(crystal, specimen))
+        extreme.where, _place(crystal, specimen)
+    )
     tooltip = f"{extreme.value!r} along {extreme.direction} in crystal axes"
     if extreme.transverse is not None:
         tooltip += f", transverse direction {extreme.transverse}"
     x, y, z = (turn @ crystal).tolist()
-    return ExtremeRow(name, significant(extreme.value), place, (x, y, z), tooltip,
-                      full_precision(extreme.value))
+    return ExtremeRow(
+        name,
+        significant(extreme.value),
+        place,
+        (x, y, z),
+        tooltip,
+        full_precision(extreme.value),
+    )
 
 
 def _place(vector: np.ndarray, specimen: Specimen) -> str:
@@ -208,17 +269,40 @@ def cutting_error_view(state: BenchState) -> TableView:
         medium = _medium(state, side)
         for key in _cone_keys(state, medium):
             entry = quantity(key)
-            for sheet, cone in enumerate(cone_extremes(medium, np.array(state.pin), delta, key)):
-                label = entry.symbol if entry.sheets == 1 else (
-                    f"{SHEET_NAMES[sheet]} {entry.symbol}")
-                rows.append((side, label, significant(cone.least), significant(cone.greatest),
-                             significant(abs(cone.slope), 3), entry.unit))
-                full.append((side, label, full_precision(cone.least),
-                             full_precision(cone.greatest), full_precision(cone.slope),
-                             entry.unit))
-    return TableView("Cutting error", ("", "", "least", "greatest", "per °", "unit"),
-                     tuple(rows), tuple(full),
-                     notice=f"within ±{delta:g}° of the pin")
+            for sheet, cone in enumerate(
+                cone_extremes(medium, np.array(state.pin), delta, key)
+            ):
+                label = (
+                    entry.symbol
+                    if entry.sheets == 1
+                    else (f"{SHEET_NAMES[sheet]} {entry.symbol}")
+                )
+                rows.append(
+                    (
+                        side,
+                        label,
+                        significant(cone.least),
+                        significant(cone.greatest),
+                        significant(abs(cone.slope), 3),
+                        entry.unit,
+                    )
+                )
+                full.append(
+                    (
+                        side,
+                        label,
+                        full_precision(cone.least),
+                        full_precision(cone.greatest),
+                        full_precision(cone.slope),
+                        entry.unit,
+                    )
+                )
+    return TableView(
+        "Cutting error",
+        ("", "", "least", "greatest", "per °", "unit"),
+        tuple(rows),
+        tuple(full),
+    )
 
 
 def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
@@ -226,7 +310,8 @@ def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
     keys = ["young"] + (["phase"] if medium.density is not None else [])
     shown = quantity(state.quantity)
     if state.quantity not in (*keys, "slowness", "wave") and (
-            medium.density is not None or not shown.wave):
+        medium.density is not None or not shown.wave
+    ):
         keys.insert(0, state.quantity)
     return tuple(keys)
 
@@ -234,8 +319,9 @@ def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
 # ------------------------------------------------------------------ aggregates and part
 def aggregate_view(specimen: Specimen) -> TableView:
     """Return averages, bounds and indices of anisotropy."""
-    return _aggregate(specimen.stiffness, specimen.density,
-                      claimed_class(specimen).key == "cubic")
+    return _aggregate(
+        specimen.stiffness, specimen.density, claimed_class(specimen).key == "cubic"
+    )
 
 
 @lru_cache(maxsize=8)
@@ -249,33 +335,58 @@ def _aggregate(table: Any, density: float | None, cubic: bool) -> TableView:
         for name, mean, tip in (
             ("Voigt", means.voigt, "Uniform strain: the upper bound."),
             ("Hill", means.hill, "The mean of Voigt and Reuss (Hill 1952)."),
-            ("Reuss", means.reuss, "Uniform stress: the lower bound."))]
+            ("Reuss", means.reuss, "Uniform stress: the lower bound."),
+        )
+    ]
     lines += [
-        ("Hashin–Shtrikman, upper", (bounds.bulk_high, bounds.shear_high),
-         "Closest upper bound on a random polycrystal without texture."),
-        ("Hashin–Shtrikman, lower", (bounds.bulk_low, bounds.shear_low),
-         "Closest lower bound on a random polycrystal without texture."),
-        ("universal anisotropy", (index.universal,),
-         "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic."),
-        ("log-Euclidean anisotropy", (index.log_euclidean,),
-         "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic."),
-        ("percent anisotropy of K, G", (index.percent_bulk, index.percent_shear),
-         "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967)."),
+        (
+            "Hashin–Shtrikman, upper",
+            (bounds.bulk_high, bounds.shear_high),
+            "Closest upper bound on a random polycrystal without texture.",
+        ),
+        (
+            "Hashin–Shtrikman, lower",
+            (bounds.bulk_low, bounds.shear_low),
+            "Closest lower bound on a random polycrystal without texture.",
+        ),
+        (
+            "universal anisotropy",
+            (index.universal,),
+            "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic.",
+        ),
+        (
+            "log-Euclidean anisotropy",
+            (index.log_euclidean,),
+            "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic.",
+        ),
+        (
+            "percent anisotropy of K, G",
+            (index.percent_bulk, index.percent_shear),
+            "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967).",
+        ),
     ]
     if index.zener is not None:
         lines.append(("Zener ratio", (index.zener,), "2 C44/(C11 − C12), cubic crystals only."))
     if density is not None:
-        lines.append(("Debye speed, km/s", (debye_speed(Medium(stiffness, density)).speed,),
-                      "(⟨Σ v⁻³⟩/3)^(−1/3) over all directions and the three waves."))
+        lines.append(
+            (
+                "Debye speed, km/s",
+                (debye_speed(Medium(stiffness, density)).speed,),
+                "(⟨Σ v⁻³⟩/3)^(−1/3) over all directions and the three waves.",
+            )
+        )
     return TableView(
-        "Aggregate", ("", "K GPa", "G GPa", "E GPa", "ν"),
+        "Aggregate",
+        ("", "K GPa", "G GPa", "E GPa", "ν"),
         tuple(_padded(label, values, significant) for label, values, _ in lines),
         tuple(_padded(label, values, full_precision) for label, values, _ in lines),
-        tuple(tip for *_, tip in lines))
+        tuple(tip for *_, tip in lines),
+    )
 
 
-def _padded(label: str, values: tuple[float, ...],
-            text: Callable[[float | None], str]) -> tuple[str, ...]:
+def _padded(
+    label: str, values: tuple[float, ...], text: Callable[[float | None], str]
+) -> tuple[str, ...]:
     return label, *(text(value) for value in values), *[""] * (4 - len(values))
 
 
@@ -295,8 +406,9 @@ def _part(medium: Medium) -> tuple[PartRow, ...]:
     return part_table(medium)
 
 
-def _part_row(row: PartRow, second: dict[str, float], text: Any,
-              difference_text: Any) -> tuple[str, ...]:
+def _part_row(
+    row: PartRow, second: dict[str, float], text: Any, difference_text: Any
+) -> tuple[str, ...]:
     label = f"{row.label}{', ' if row.unit else ''}{row.unit}"
     if not second:
         return label, text(row.value)

@@ -27,8 +27,11 @@ from gui.viewdata import (
     Triad,
 )
 
-PLANES: dict[str, Vector3] = {"XY": (0.0, 0.0, 1.0), "XZ": (0.0, 1.0, 0.0),
-                              "YZ": (1.0, 0.0, 0.0)}
+PLANES: dict[str, Vector3] = {
+    "XY": (0.0, 0.0, 1.0),
+    "XZ": (0.0, 1.0, 0.0),
+    "YZ": (1.0, 0.0, 0.0),
+}
 COLOURS = {
     "value": "the value",
     "longitudinality": "how longitudinal",
@@ -37,7 +40,9 @@ COLOURS = {
 }
 SHEET_NAMES = ("fastest", "middle", "slowest")
 NO_DENSITY = "Waves want a density. Enter it in the ledger; the stiffness side works without."
+LEFT_OUT = "Left out where it is not defined or has no bound: the table is unstable."
 _TICK_LEVEL = 2  # 162 vertices: enough ticks to read, few enough to see the sheet
+_TALLEST = 3.0  # times the median: where a quantity runs off to infinity, it is cut there
 _FOCUSING_RANGE = (0.05, 20.0)  # focusing is infinite on caustics: colours stop here
 
 
@@ -48,15 +53,22 @@ def toolbar_view(state: BenchState, linked: bool) -> ToolbarView:
     display = state.display
     return ToolbarView(
         quantity=state.quantity,
-        quantities=tuple((key, entry.name, f"{entry.definition} ({entry.unit or 'no unit'})")
-                         for key, entry in QUANTITIES.items()),
+        quantities=tuple(
+            (key, entry.name, f"{entry.definition} ({entry.unit or 'no unit'})")
+            for key, entry in QUANTITIES.items()
+        ),
         enabled=tuple(key for key, entry in QUANTITIES.items() if known or not entry.wave),
         layout=display.layout,
         sheets=display.sheets if shown.sheets == 3 else None,
         colour_by=display.colour_by if shown.sheets == 3 else "value",
         colours=tuple(COLOURS.items()) if shown.sheets == 3 else (),
-        shared_scale=display.shared_scale, linked_cameras=linked, cut_away=display.cut_away,
-        crystal_axes=display.crystal_axes, marks=display.marks, ticks=display.ticks)
+        shared_scale=display.shared_scale,
+        linked_cameras=linked,
+        cut_away=display.cut_away,
+        crystal_axes=display.crystal_axes,
+        marks=display.marks,
+        ticks=display.ticks,
+    )
 
 
 def has_density(state: BenchState) -> bool:
@@ -118,7 +130,7 @@ def pane_views(state: BenchState, fine: bool) -> dict[str, PaneView]:
 
 def coloured_rows(medium: Medium, state: BenchState, level: int) -> Float32Array:
     """Return the surface rows with the values that the colours follow in the last row."""
-    rows = live.surface(medium, state.quantity, level)
+    rows = bounded_rows(medium, state.quantity, level)
     colour = state.display.colour_by
     if colour == "value" or len(rows) == 1 or colour == state.quantity:
         return rows
@@ -127,10 +139,13 @@ def coloured_rows(medium: Medium, state: BenchState, level: int) -> Float32Array
 
 @lru_cache(maxsize=4)
 def _recoloured(medium: Medium, key: str, colour: str, level: int) -> Float32Array:
-    rows = live.surface(medium, key, level).copy()
+    rows = bounded_rows(medium, key, level).copy()
     half = sphere_mesh(level).half
-    values = (longitudinality(medium, half) if colour == "longitudinality"
-              else quantity(colour).values(medium, half))
+    values = (
+        longitudinality(medium, half)
+        if colour == "longitudinality"
+        else quantity(colour).values(medium, half)
+    )
     rows[:, 6, :] = np.concatenate([values, values], axis=1)
     return rows
 
@@ -141,12 +156,42 @@ def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[flo
     if not seen:
         seen = [sheet for one in group for sheet in one.rows]
     # Squares summed by planes: a (3, N) temporary would cost as much as the surface.
-    radius = max((float(np.sqrt(np.nanmax(_squared_length(sheet), initial=0.0)))
-                  for sheet in seen), default=1.0)
+    radius = max(
+        (float(np.sqrt(np.nanmax(_squared_length(sheet), initial=0.0))) for sheet in seen),
+        default=1.0,
+    )
     values = [sheet[6] for sheet in seen]
     low = min((float(np.nanmin(v, initial=np.inf)) for v in values), default=0.0)
     high = max((float(np.nanmax(v, initial=-np.inf)) for v in values), default=1.0)
     return radius or 1.0, scale_view(_colour_quantity(state, shown), low, high)
+
+
+def drawable_limit(sizes: FloatArray) -> float:
+    """Return the largest size that is drawn, infinity where nothing is undefined.
+
+    Beside directions in which a quantity is not defined it grows without bound, as 1/E towards
+    zero in an unstable table; drawn whole, everything else would shrink to a point.
+    """
+    defined = np.abs(sizes[np.isfinite(sizes)])
+    if defined.size == sizes.size or defined.size == 0:
+        return np.inf
+    return float(_TALLEST * np.median(defined))
+
+
+@lru_cache(maxsize=8)
+def bounded_rows(medium: Medium, key: str, level: int) -> Float32Array:
+    """Return the surface rows, what runs off beyond `drawable_limit` drawn back to it."""
+    rows = live.surface(medium, key, level)
+    lengths = np.sqrt(np.stack([_squared_length(sheet) for sheet in rows]))
+    limit = drawable_limit(lengths)
+    if limit == np.inf:
+        return rows
+    with np.errstate(invalid="ignore"):
+        shrink = np.minimum(np.float32(limit) / lengths, np.float32(1.0))
+    bounded = rows.copy()
+    bounded[:, :3] *= shrink[:, np.newaxis, :]
+    bounded[:, 6] *= shrink
+    return bounded
 
 
 def _squared_length(sheet: Float32Array) -> Float32Array:
@@ -196,32 +241,62 @@ def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
     else:
         ticks = nice_ticks(low, high, 5)
         texts = tick_texts(ticks)
-    return ScaleView(low, high, significant(low), significant(high), about.title,
-                     about.diverging and low < 0, tuple(zip(ticks, texts, strict=True)),
-                     about.logarithmic)
+    return ScaleView(
+        low,
+        high,
+        significant(low),
+        significant(high),
+        about.title,
+        about.diverging and low < 0,
+        tuple(zip(ticks, texts, strict=True)),
+        about.logarithmic,
+    )
 
 
-def _pane(state: BenchState, shown: Quantity, drawn: Drawn, radius: float, scale: ScaleView,
-          level: int) -> PaneView:
+def _pane(
+    state: BenchState,
+    shown: Quantity,
+    drawn: Drawn,
+    radius: float,
+    scale: ScaleView,
+    level: int,
+) -> PaneView:
     triangles = sphere_mesh(level).triangles
     on = state.display.sheets if shown.sheets == 3 else (True,)
-    sheets = tuple(SheetView(rows, triangles, visible)
-                   for rows, visible in zip(drawn.rows, on, strict=True))
-    missing = bool(np.isnan(drawn.rows[:, 0]).any())
+    sheets = tuple(
+        SheetView(rows, triangles, visible)
+        for rows, visible in zip(drawn.rows, on, strict=True)
+    )
+    missing = bool(np.isnan(drawn.rows[:, 0]).any()) and not drawn.medium.stiffness.is_stable
     return PaneView(
-        side=drawn.side, title=pane_title(state, drawn.side), sheets=sheets, radius=radius,
-        scale=scale, triads=_triads(state, drawn.side), marks=_marks(state, shown, drawn),
-        section=state.section, cut_away=state.display.cut_away,
+        side=drawn.side,
+        title=pane_title(state, drawn.side),
+        sheets=sheets,
+        radius=radius,
+        scale=scale,
+        triads=_triads(state, drawn.side),
+        marks=_marks(state, shown, drawn),
+        section=state.section,
+        cut_away=state.display.cut_away,
         ticks=_polarisation_ticks(state, shown, drawn, radius),
-        notice="Left out where it is not defined: the table is unstable." if missing else "",
-        is_wave_surface=shown.shape == "wave")
+        notice=LEFT_OUT if missing else "",
+        is_wave_surface=shown.shape == "wave",
+    )
 
 
 def _empty_pane(state: BenchState, side: str, shown: Quantity) -> PaneView:
     scale = ScaleView(0.0, 1.0, "", "", quantity_title(shown), False)
-    return PaneView(side=side, title=pane_title(state, side), sheets=(), radius=1.0,
-                    scale=scale, triads=_triads(state, side), marks=(), section=None,
-                    notice=NO_DENSITY)
+    return PaneView(
+        side=side,
+        title=pane_title(state, side),
+        sheets=(),
+        radius=1.0,
+        scale=scale,
+        triads=_triads(state, side),
+        marks=(),
+        section=None,
+        notice=NO_DENSITY,
+    )
 
 
 def pane_title(state: BenchState, side: str) -> str:
@@ -231,8 +306,11 @@ def pane_title(state: BenchState, side: str) -> str:
     if any(choice.turn):
         words += ", turned " + " ".join(f"{x:g}°" for x in choice.turn)
     name = state.specimen_of(side).name
-    return f"{name} · {words}".replace("-", "−") if state.other is not None else (
-        words.replace("-", "−"))
+    return (
+        f"{name} · {words}".replace("-", "−")
+        if state.other is not None
+        else (words.replace("-", "−"))
+    )
 
 
 def _triads(state: BenchState, side: str) -> tuple[Triad, ...]:
@@ -259,20 +337,24 @@ def unit_vector(vector: FloatArray) -> Vector3:
 def _marks(state: BenchState, shown: Quantity, drawn: Drawn) -> tuple[DirectionMark, ...]:
     marks = [DirectionMark(state.pin, "", "pin")]
     if shown.wave and state.display.marks:
-        marks += [DirectionMark(unit_vector(np.array(axis.direction)), "", "axis")
-                  for axis in point_axes(drawn.medium)]
+        marks += [
+            DirectionMark(unit_vector(np.array(axis.direction)), "", "axis")
+            for axis in point_axes(drawn.medium)
+        ]
     return tuple(marks)
 
 
 @lru_cache(maxsize=4)
 def point_axes(medium: Medium) -> tuple[AcousticAxis, ...]:
     """Return the acoustic axes of a medium that are single directions, part axes."""
-    return tuple(axis for axis in acoustic_axes(medium)
-                 if axis.kind in ("conical", "tangential"))
+    return tuple(
+        axis for axis in acoustic_axes(medium) if axis.kind in ("conical", "tangential")
+    )
 
 
-def _polarisation_ticks(state: BenchState, shown: Quantity, drawn: Drawn,
-                        radius: float) -> FloatArray | None:
+def _polarisation_ticks(
+    state: BenchState, shown: Quantity, drawn: Drawn, radius: float
+) -> FloatArray | None:
     """Return short lines along the polarisation on every visible sheet, (M, 2, 3)."""
     if not state.display.ticks or shown.sheets == 1:
         return None
@@ -285,8 +367,9 @@ def _polarisation_ticks(state: BenchState, shown: Quantity, drawn: Drawn,
             continue
         points = rows[sheet, :3].T.astype(np.float64)
         both = np.concatenate([polarisation[sheet], polarisation[sheet]], axis=1).T
-        lines.append(np.stack([points - 0.045 * radius * both, points + 0.045 * radius * both],
-                              axis=1))
+        lines.append(
+            np.stack([points - 0.045 * radius * both, points + 0.045 * radius * both], axis=1)
+        )
     if not lines:
         return None
     ticks = np.concatenate(lines)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QPushButton, QVBoxLayout, QWidget
 
-from gui.forms import ElidedLabel, label, set_or_hide
+from gui.forms import label, set_or_hide
 from gui.reading.text_table import Column, Line, TextTable
 from gui.viewdata import ExtremeRow, ExtremesView, Vector3
 
@@ -32,9 +32,8 @@ class GoLink(QPushButton):
         self.clicked.connect(self._go)
 
     def lead_to(self, row: ExtremeRow, is_ready: bool) -> None:
-        """Lead to the direction of an extreme, or to nowhere when it has none."""
+        """Lead to the direction of an extreme."""
         self.direction = row.direction
-        self.setVisible(row.direction is not None)
         self.setEnabled(is_ready)
         self.setAccessibleName(f"Put the pin where the {row.label} is")
         self.setToolTip(f"Put the pin there: {row.where}")
@@ -52,16 +51,13 @@ class ExtremesTable(QWidget):
     def __init__(self) -> None:
         super().__init__()
         self._directions: tuple[Vector3 | None, ...] = ()
-        self._title = ElidedLabel(role="secondary")
         self._notice = label(role="secondary", wrap=True)
         self.table = TextTable("Extremes over all directions")
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(3)
-        column.addWidget(self._title)
         column.addWidget(self.table)
         column.addWidget(self._notice)
-        self._title.hide()
         self._notice.hide()
         self.table.opened.connect(self._open)
 
@@ -78,20 +74,28 @@ class ExtremesTable(QWidget):
         )
         self.table.show_lines(COLUMNS, lines, dimmed=view.pending)
         for number, row in enumerate(view.rows):
-            self.link(number).lead_to(row, not view.pending)
-        set_or_hide(self._title, view.title)
+            self._link(number, row, not view.pending)
+        self.table.setAccessibleName(view.title)
         set_or_hide(self._notice, view.notice)
 
-    def link(self, row: int) -> GoLink:
-        """Return the link of a line, made when first wanted."""
-        place = self.table.lines.index(row, LINK)
-        link = self.table.indexWidget(place)
-        if isinstance(link, GoLink):
-            return link
-        made = GoLink()
-        made.wanted.connect(self.go)
-        self.table.setIndexWidget(place, made)
-        return made
+    def link(self, row: int) -> GoLink | None:
+        """Return the link at the end of a line, if it leads anywhere."""
+        link = self.table.indexWidget(self.table.lines.index(row, LINK))
+        return link if isinstance(link, GoLink) else None
+
+    def _link(self, number: int, row: ExtremeRow, is_ready: bool) -> None:
+        """Keep, make or take away the link of a line."""
+        place = self.table.lines.index(number, LINK)
+        link = self.link(number)
+        if row.direction is None:
+            if link is not None:
+                self.table.setIndexWidget(place, None)  # type: ignore[arg-type]
+            return
+        if link is None:
+            link = GoLink()
+            link.wanted.connect(self.go)
+            self.table.setIndexWidget(place, link)
+        link.lead_to(row, is_ready)
 
     def _open(self, row: int) -> None:
         direction = self._directions[row]

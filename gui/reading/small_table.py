@@ -6,7 +6,7 @@ import re
 
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
-from gui.forms import ElidedLabel, label, plain_number, set_or_hide
+from gui.forms import label, plain_number, set_or_hide
 from gui.reading.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import TableView
 
@@ -15,20 +15,17 @@ _NUMBER = re.compile(r"[-+]?(\d|\.\d).*|nan|inf|[-–—·]?")
 
 
 class SmallTable(QWidget):
-    """A title, a table, and a notice. Columns of numbers are known by their contents."""
+    """A table and a notice. Columns of numbers are known by their contents."""
 
     def __init__(self, name: str = "Table") -> None:
         super().__init__()
-        self._title = ElidedLabel(role="secondary")
         self._notice = label(role="secondary", wrap=True)
         self.table = TextTable(name)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(3)
-        column.addWidget(self._title)
         column.addWidget(self.table)
         column.addWidget(self._notice)
-        self._title.hide()
         self._notice.hide()
 
     def show_view(self, view: TableView) -> None:
@@ -43,7 +40,7 @@ class SmallTable(QWidget):
             )
         )
         self.table.show_lines(_columns(view), lines)
-        set_or_hide(self._title, view.title)
+        self.table.setAccessibleName(view.title)
         set_or_hide(self._notice, view.notice)
 
 

@@ -51,6 +51,7 @@ ColumnKind = Literal["label", "words", "number", "unit", "link"]
 PADDING = 3  # left and right of a text, pixels
 ROW_GAP = 6  # above and below a line together
 LEAST_WORDS = 56  # the least width of a column of words
+BREATH = 8  # pixels that a column of numbers gets before words get any
 LEAST_HEAD = 24  # of what stands before the comma of a label
 LEAST_LABEL = 76
 DIMMED = 0.45
@@ -178,7 +179,7 @@ def cell_font(font: QFont, column: Column, line: Line) -> QFont:
     """Return the font of a cell."""
     made = QFont(font)
     if column.kind == "unit" and not line.is_heading:
-        made.setPointSizeF(Theme.font("small").pointSizeF())
+        made.setPixelSize(Theme.font("small").pixelSize())
     made.setBold(line.is_heading)
     return made
 
@@ -191,14 +192,21 @@ def _cell_colour(theme: Theme, column: Column, line: Line, dimmed: bool) -> QCol
 
 
 def shorten(metrics: QFontMetrics, text: str, width: int, is_label: bool) -> str:
-    """Return a text elided to a width; labels keep what follows a comma, for they differ there.
+    """Return a text elided to a width; labels keep their last words, for they differ there.
 
-    "shear modulus, greatest" becomes "shear mo…, greatest".
+    "shear modulus, greatest" becomes "shear mo…, greatest", and "slowest wave least, km/s"
+    becomes "slowe… least, km/s".
     """
+    if metrics.horizontalAdvance(text) <= width:
+        return text
     head, comma, tail = text.partition(", ")
-    room = width - metrics.horizontalAdvance(comma + tail)
-    if is_label and comma and metrics.horizontalAdvance(text) > width and room >= LEAST_HEAD:
-        return metrics.elidedText(head, Qt.TextElideMode.ElideRight, room) + comma + tail
+    tail = comma + tail
+    if head.count(" ") > 1:
+        head, _, last = head.rpartition(" ")
+        tail = f" {last}{tail}"
+    room = width - metrics.horizontalAdvance(tail)
+    if is_label and tail and room >= LEAST_HEAD:
+        return metrics.elidedText(head, Qt.TextElideMode.ElideRight, room) + tail
     return metrics.elidedText(text, Qt.TextElideMode.ElideRight, width)
 
 
@@ -308,7 +316,7 @@ class TextTable(QTableView):
         return widths
 
     def _share(self, wanted: list[int], room: int) -> list[int]:
-        """Give surplus to the first words; take a lack from the words, longest first."""
+        """Take a lack from the words, longest first; spread a surplus."""
         widths = list(wanted)
         if not widths:
             return widths
@@ -321,9 +329,18 @@ class TextTable(QTableView):
                 return widths
             widest = max(givers, key=lambda i: widths[i] - least[columns[i].kind])
             widths[widest] -= 1
-        takers = elastic[:1] or list(range(len(widths)))
-        for turn in range(max(room - sum(widths), 0)):
-            widths[takers[turn % len(takers)]] += 1
+        return self._spread(widths, room - sum(widths))
+
+    def _spread(self, widths: list[int], surplus: int) -> list[int]:
+        """Give what is left over to the numbers first, so that they breathe, then to words."""
+        columns = self.lines.columns
+        numbers = [i for i, column in enumerate(columns) if column.kind == "number"]
+        words = [i for i, column in enumerate(columns) if column.kind in ("label", "words")]
+        takers = sorted(words, key=lambda i: -widths[i])[:1] or list(range(len(widths)))
+        for turn in range(max(surplus, 0)):
+            breathes = turn < BREATH * len(numbers)
+            taker = numbers[turn % len(numbers)] if breathes else takers[turn % len(takers)]
+            widths[taker] += 1
         return widths
 
     def _fit_height(self, font: QFont, scrolls: bool) -> None:

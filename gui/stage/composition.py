@@ -24,7 +24,7 @@ AXIS_REACH = 1.19  # how far axes come out of the surface
 AXIS_BACK = 1.04  # and at their negative end, where they are faint
 DISC_RADIUS = 1.08
 DISC_OPACITY = 0.10
-_OUTER_OPACITY = (0.34, 0.20)  # of the first and second sheet round the innermost one
+_OUTER_OPACITY = (0.40, 0.26)  # of the first and second sheet round the innermost one
 
 _outlines: Remembered[Float32Array] = Remembered(16)
 _radii: Remembered[float] = Remembered(16)

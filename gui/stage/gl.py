@@ -6,6 +6,6 @@ import OpenGL
 OpenGL.ERROR_CHECKING = False
 OpenGL.ERROR_LOGGING = False
 
-from OpenGL import GL  # noqa: E402 - the two switches only count before this import
+from OpenGL import GL
 
 __all__ = ["GL"]

@@ -121,7 +121,8 @@ def _draw_title(sketch: _Sketch, rect: QRectF) -> None:
     sketch.painter.setPen(sketch.theme.colour("secondary"))
     sketch.painter.drawText(QPointF(left, baseline), title)
     width = left + metrics.horizontalAdvance(title) - rect.left()
-    sketch.taken.append(QRectF(rect.left(), rect.top(), width, baseline + 4 - rect.top()))
+    height = baseline + sketch.scale - rect.top()
+    sketch.taken.append(QRectF(rect.left(), rect.top(), width, height))
 
 
 def _draw_letters(sketch: _Sketch, triad: Triad) -> None:
@@ -144,16 +145,23 @@ def _draw_letters(sketch: _Sketch, triad: Triad) -> None:
 def _write(
     sketch: _Sketch, anchor: QPointF, text: str, font: QFont, colour: QColor, step: QPointF
 ) -> None:
-    """Write a few letters about a point, moved on along `step` until they touch no others."""
+    """Write a few letters about a point, or a little beside it where others stand already."""
     metrics = QFontMetricsF(font)
     width, height = metrics.horizontalAdvance(text), metrics.capHeight()
-    box = QRectF(anchor.x() - width / 2, anchor.y() - height / 2, width, height)
-    for _ in range(3):
-        if not any(box.intersects(other) for other in sketch.taken):
-            break
-        box.translate(step * 1.2 * max(width, height))
-    _draw_with_halo(sketch, QPointF(box.left(), box.bottom()), text, font, colour)
+    reach = 1.6 * max(width, height)
+    aside = QPointF(-step.y(), step.x())
+    first = QRectF(anchor.x() - width / 2, anchor.y() - height / 2, width, height)
+    places = [
+        first.translated(move * reach) for move in (QPointF(), aside, -aside, step, -step)
+    ]
+    box = next((place for place in places if _is_free(sketch, place)), first)
+    _draw_with_halo(sketch, box.bottomLeft(), text, font, colour)
     sketch.taken.append(box)
+
+
+def _is_free(sketch: _Sketch, box: QRectF) -> bool:
+    """Tell whether no words stand in a box."""
+    return not any(box.intersects(other) for other in sketch.taken)
 
 
 def _draw_with_halo(
@@ -218,7 +226,7 @@ def _label(sketch: _Sketch, mark: DirectionMark, place: QPointF) -> None:
     )
     for offset in offsets:
         box = QRectF(place + offset, place + offset + QPointF(width, height))
-        if not any(box.intersects(other) for other in sketch.taken):
+        if _is_free(sketch, box):
             _draw_tag(sketch, box, mark.label, font)
             return
 

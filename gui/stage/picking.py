@@ -101,25 +101,38 @@ def _first_met(
     (x, y), origin, ray = sight
     left, right, top, bottom = _boxes_of(view, layer.sheet, camera, size)
     near = np.flatnonzero((left <= x) & (x <= right) & (top <= y) & (y <= bottom))
+    if not near.size:
+        return None
     corners = layer.sheet.triangles[near].astype(np.intp)
-    a, b, c = (layer.sheet.rows[:3, corners[:, k]].T / view.radius for k in range(3))
-    one, two, back = b - a, c - a, origin - a
+    a, b, c = (layer.sheet.rows[:3, corners[:, k]] / view.radius for k in range(3))
+    one, two, back = b - a, c - a, origin[:, None] - a
+    across, turned = _cross(ray, two), _cross(back, one)
     with np.errstate(divide="ignore", invalid="ignore"):
-        across = np.cross(ray, two)
-        scale = 1.0 / np.einsum("ti,ti->t", one, across)
-        u = np.einsum("ti,ti->t", back, across) * scale
-        turned = np.cross(back, one)
-        v = (turned @ ray) * scale
-        distance = np.einsum("ti,ti->t", two, turned) * scale
+        scale = 1.0 / _dot(one, across)
+        u, v = _dot(back, across) * scale, _dot(ray, turned) * scale
+        distance = _dot(two, turned) * scale
     inside = (u >= _EDGE) & (v >= _EDGE) & (u + v <= 1.0 - _EDGE)
     if kept is not None:
-        inside &= (origin + distance[:, None] * ray) @ kept >= 0.0
+        inside &= kept @ origin + (kept @ ray) * distance >= 0.0
     hits = np.flatnonzero(inside)
     if not hits.size:
         return None
     first = hits[np.argmin(distance[hits])]
     weights = np.array([1.0 - u[first] - v[first], u[first], v[first]])
     return float(distance[first]), corners[first], weights
+
+
+def _dot(a: FloatArray, b: FloatArray) -> FloatArray:
+    """Return scalar products (N,) of vectors (3, N)."""
+    products: FloatArray = a[0] * b[0] + a[1] * b[1] + a[2] * b[2]
+    return products
+
+
+def _cross(a: FloatArray, b: FloatArray) -> FloatArray:
+    """Return vector products (3, N); `np.cross` spends most of its time on turning axes."""
+    return np.stack(
+        [a[1] * b[2] - a[2] * b[1], a[2] * b[0] - a[0] * b[2], a[0] * b[1] - a[1] * b[0]]
+    )
 
 
 def _boxes_of(view: PaneView, sheet: SheetView, camera: Camera, size: Size) -> FloatArray:
@@ -162,9 +175,9 @@ def _point_on(view: PaneView, sheet: SheetView, towards: FloatArray) -> FloatArr
     triangles = order[starts[nearest] : starts[nearest + 1]] // 3
     corners = sheet.triangles[triangles].astype(np.intp)
     basis = directions if view.is_wave_surface else sheet.rows[:3].astype(np.float64)
-    a, b, c = (basis[:, corners[:, k]].T for k in range(3))
-    weights = np.stack([np.cross(b, c) @ towards, np.cross(c, a) @ towards,
-                        np.cross(a, b) @ towards], axis=1)
+    a, b, c = (basis[:, corners[:, k]] for k in range(3))
+    opposite = ((b, c), (c, a), (a, b))
+    weights = np.stack([_dot(towards, _cross(p, q)) for p, q in opposite], axis=1)
     with np.errstate(invalid="ignore", divide="ignore"):
         weights = weights / weights.sum(axis=1, keepdims=True)
     inside = np.flatnonzero((weights >= _EDGE).all(axis=1))

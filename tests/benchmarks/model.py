@@ -46,36 +46,64 @@ def lines() -> Iterator[Line]:
 def kernel_lines(mesh: SphereMesh, medium: Medium) -> Iterator[Line]:
     half = mesh.half
     gamma = np.einsum("ijkl,jn,ln->nik", medium.stiffness.tensor, half.n, half.n)
-    taken = medians({
-        "speeds": lambda: waves.speeds(medium, half),
-        "eigvalsh": lambda: np.linalg.eigvalsh(gamma),
-        "modes": lambda: waves.modes(medium, half),
-        "eigh": lambda: np.linalg.eigh(gamma),
-    })
+    taken = medians(
+        {
+            "speeds": lambda: waves.speeds(medium, half),
+            "eigvalsh": lambda: np.linalg.eigvalsh(gamma),
+            "modes": lambda: waves.modes(medium, half),
+            "eigh": lambda: np.linalg.eigh(gamma),
+        }
+    )
     ratio = taken["eigvalsh"] / taken["speeds"]
-    yield Line("three speeds, 10,242 directions", taken["speeds"], ratio, "x faster than eigvalsh",
-               ">= 10 x", ratio >= 10)
+    yield Line(
+        "three speeds, 10,242 directions",
+        taken["speeds"],
+        ratio,
+        "x faster than eigvalsh",
+        ">= 10 x",
+        ratio >= 10,
+    )
     ratio = taken["eigh"] / taken["modes"]
-    yield Line("speeds and polarisations, 10,242 directions", taken["modes"], ratio,
-               "x faster than eigh", ">= 8 x", ratio >= 8)
+    yield Line(
+        "speeds and polarisations, 10,242 directions",
+        taken["modes"],
+        ratio,
+        "x faster than eigh",
+        ">= 8 x",
+        ratio >= 8,
+    )
     rows = np.ones(15 * half.n.shape[1])
     taken = medians({"young": lambda: young(medium, half), "dot": lambda: np.dot(rows, rows)})
     ratio = taken["young"] / taken["dot"]
-    yield Line("Young's modulus, 10,242 directions", taken["young"], ratio,
-               "x a dot over the same bytes", "<= 3 x", ratio <= 3)
+    yield Line(
+        "Young's modulus, 10,242 directions",
+        taken["young"],
+        ratio,
+        "x a dot over the same bytes",
+        "<= 3 x",
+        ratio <= 3,
+    )
     taken = medians({"curvature": lambda: waves.focusing(medium, half)})
     yield at_most("focusing of three sheets, 10,242 directions", taken["curvature"], 4.0)
 
 
 def edit_lines(mesh: SphereMesh, medium: Medium) -> Iterator[Line]:
     source, target = np.ones((24, mesh.half.n.shape[1])), np.empty((24, mesh.half.n.shape[1]))
-    taken = medians({
-        "edit": lambda: all_surfaces(fresh(medium), mesh),
-        "copy": lambda: np.copyto(target, source),
-    })
+    taken = medians(
+        {
+            "edit": lambda: all_surfaces(fresh(medium), mesh),
+            "copy": lambda: np.copyto(target, source),
+        }
+    )
     ratio = taken["edit"] / taken["copy"]
-    yield Line("one live edit: all 15 surfaces with normals, 10,242", taken["edit"], ratio,
-               "x a copy of 24 rows", "<= 5 ms, <= 100 x", taken["edit"] <= 5 and ratio <= 100)
+    yield Line(
+        "one live edit: all 15 surfaces with normals, 10,242",
+        taken["edit"],
+        ratio,
+        "x a copy of 24 rows",
+        "<= 5 ms, <= 100 x",
+        taken["edit"] <= 5 and ratio <= 100,
+    )
     taken = medians({"cost": lambda: cost_map(fresh(medium), mesh, 0.5, "young")})
     yield at_most("cutting-error map of E, 10,242 directions", taken["cost"], 3.0)
     taken = medians({"cost": lambda: cost_map(fresh(medium), mesh, 0.5, "phase")})
@@ -88,13 +116,17 @@ def search_lines(mesh: SphereMesh) -> Iterator[Line]:
         start = time.perf_counter()
         extremes(medium)
         times.append(1e3 * (time.perf_counter() - start))
-    yield at_most("all extremes, median of 100 random triclinic", statistics.median(times), 40.0)
+    yield at_most(
+        "all extremes, median of 100 random triclinic", statistics.median(times), 40.0
+    )
     times = []
     for medium in media(40, seed=9):
         start = time.perf_counter()
         acoustic_axes(medium)
         times.append(1e3 * (time.perf_counter() - start))
-    yield at_most("acoustic axes, median of 40 random triclinic", statistics.median(times), 25.0)
+    yield at_most(
+        "acoustic axes, median of 40 random triclinic", statistics.median(times), 25.0
+    )
 
 
 def turning_line() -> Line:
@@ -105,14 +137,17 @@ def turning_line() -> Line:
     angles = iter(np.linspace(0.1, 60.0, 4000))
 
     def turn() -> None:
-        turned = replace(state, orientation_b=OrientationChoice(turn=(float(next(angles)), 0.0, 0.0)))
+        turned = replace(
+            state, orientation_b=OrientationChoice(turn=(float(next(angles)), 0.0, 0.0))
+        )
         ledger.orientation_view(turned, "B")
         stage.pane_views(turned, fine=False)
         deck.section_view(turned)
         deck.hemisphere_view(turned, fine=False)
         reading.reading_view(turned)
 
-    return at_most("turning B: panes at 2,562, sections, hemisphere, tables",
-                   medians({"turn": turn})["turn"], 8.0)
-
-
+    return at_most(
+        "turning B: panes at 2,562, sections, hemisphere, tables",
+        medians({"turn": turn})["turn"],
+        8.0,
+    )

@@ -7,7 +7,14 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from core.errors import InputError
-from core.numbers import full_precision, parse_number, shortened, signed, significant
+from core.numbers import (
+    full_precision,
+    parse_number,
+    shortened,
+    signed,
+    significant,
+    with_deviation,
+)
 
 FINITE = st.floats(allow_nan=False, allow_infinity=False)
 
@@ -105,6 +112,24 @@ def test_a_sign_is_shown_on_request():
     assert signed(-2.5, 2) == "−2.5"
     assert signed(0.0) == "0"
     assert signed(None) == signed(math.nan) == "–"
+
+
+@pytest.mark.parametrize(
+    ("value", "deviation", "text"),
+    [
+        (51.3713, 0.3187, "51.37 ± 0.32"),
+        (-8.7, 0.996, "−8.7 ± 1.0"),
+        (1234.5, 32.0, "1234 ± 32"),
+        (1234.5, 320.0, "1230 ± 320"),
+        (-0.001, 0.2, "0.00 ± 0.20"),
+        (3.0, 0.0, "3.000"),
+        (3.0, math.nan, "3.000"),
+        (3.0, 1e-9, "3.000"),
+        (math.nan, 0.1, "–"),
+    ],
+)
+def test_digits_follow_the_uncertainty(value, deviation, text):
+    assert with_deviation(value, deviation) == text
 
 
 @given(FINITE)

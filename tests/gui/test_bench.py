@@ -10,7 +10,9 @@ from core.state import BenchState, Specimen
 from gui.bench import Bench
 from tests.materials import cubic
 
-STATE = BenchState(Specimen("blank", tuple(tuple(row) for row in cubic(130.0, 90.0, 60.0).tolist())))
+STATE = BenchState(
+    Specimen("blank", tuple(tuple(row) for row in cubic(130.0, 90.0, 60.0).tolist()))
+)
 
 
 @pytest.fixture

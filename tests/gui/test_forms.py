@@ -1,4 +1,4 @@
-"""Shared controls: numbers read as typed, labels that shorten, choices the wheel leaves alone."""
+"""Shared controls: numbers as typed, labels that shorten, choices the wheel leaves alone."""
 
 import pytest
 from PySide6.QtCore import QPoint, QPointF, Qt

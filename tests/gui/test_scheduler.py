@@ -18,7 +18,9 @@ def scheduler(qtbot):
 
 def results_of(scheduler):
     results = []
-    scheduler.finished.connect(lambda kind, request, result: results.append((kind, request, result)))
+    scheduler.finished.connect(
+        lambda kind, request, result: results.append((kind, request, result))
+    )
     return results
 
 

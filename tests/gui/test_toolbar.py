@@ -122,6 +122,15 @@ def test_turning_together_has_its_own_signal(bar, qtbot):
     assert bar.told == [("linked_toggled", False)]
 
 
+def test_choices_without_alternatives_are_not_offered(bar):
+    bar.show_view(replace(VIEW, colours=(("value", "value"),), planes=()))
+    assert not choice(bar, "colour").isVisible()
+    assert not choice(bar, "plane").isVisible()
+    bar.show_view(VIEW)
+    assert choice(bar, "colour").isVisible()
+    assert choice(bar, "plane").isVisible()
+
+
 def test_marks_and_ticks_are_for_waves(bar):
     assert not action(bar, "ticks").isEnabled()
     assert not action(bar, "marks").isEnabled()

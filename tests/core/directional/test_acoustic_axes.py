@@ -54,7 +54,9 @@ def directions_of(axes, pair):
 
 def random_table(seed):
     rng = np.random.default_rng(seed)
-    return random_physical(rng, 0.1 + 0.1 * (seed % 4)) if seed % 2 else random_stiffness(rng, 0.6)
+    return (
+        random_physical(rng, 0.1 + 0.1 * (seed % 4)) if seed % 2 else random_stiffness(rng, 0.6)
+    )
 
 
 @pytest.mark.parametrize("turned", [False, True])
@@ -152,9 +154,12 @@ def test_orthorhombic_axes_in_a_symmetry_plane():
 def test_axes_turn_with_the_crystal_and_close_the_gap(seed):
     table = random_table(seed)
     turn = random_rotation(np.random.default_rng(seed + 1))
-    here, there = acoustic_axes(medium_of(table)), acoustic_axes(medium_of(rotated(table, turn)))
+    here, there = (
+        acoustic_axes(medium_of(table)),
+        acoustic_axes(medium_of(rotated(table, turn))),
+    )
     assert len(here) == len(there)
-    assert len(here) <= 16  # Darinskii, Alshits & others: no more without a whole line of them
+    assert len(here) <= 16  # the most without a whole curve of them (literature, from memory)
     for axis in here:
         assert gaps(table, axis.direction)[axis.pair] < 1e-13
         twins = [other for other in there if other.pair == axis.pair]
@@ -172,6 +177,7 @@ def test_simplex_search_finds_no_axis_that_is_missing(seed):
     rng = np.random.default_rng(seed)
     for _ in range(6):
         for pair in (0, 1):
+
             def squared(x, pair=pair):
                 return gaps(table, x / np.linalg.norm(x))[pair] ** 2
 
@@ -223,14 +229,15 @@ def test_indices_add_up(seed):
     """The slowest polarisation is a line field in a plane field of Euler number 2 over the
     sphere, if the fastest sheet is detached and quasi-longitudinal: the half-integer indices of
     its singularities sum to 2, to 1 over antipodal pairs. A single missing conical axis
-    (index ±1/2) breaks it. Alshits & Lothe 1979, Sov. Phys. Crystallogr. 24, 387."""
+    (index ±1/2) breaks it. After Alshits & Lothe 1979 (cited from memory); the Euler number is
+    that of the tangent planes, to which the plane field deforms while p·n stays positive."""
     rng = np.random.default_rng(seed)
     total = total_index(random_physical(rng, 0.12))
     assert total == 2  # in half turns
 
 
 def test_indices_of_symmetric_crystals_add_up():
-    """Cubic: three of index 1 and four of -1/2; quartz: one by threefold symmetry and others."""
+    """Cubic: three of index 1 and four of -1/2. Quartz: c and three threes of conical axes."""
     assert total_index(cubic(165.7, 63.9, 79.6)) == 2
     assert total_index(trigonal(86.74, 6.99, 11.91, -17.91, 107.2, 57.94)) == 2
 

@@ -34,7 +34,7 @@ def medium_of(table, density=3000.0):
 
 
 def field_extremes(medium, dirs):
-    """Least and greatest of every quantity over a set of directions, straight from the kernels."""
+    """Least and greatest of every quantity over a set of directions, from the kernels."""
     least, greatest = moduli.shear_extremes(medium, dirs)
     low, high = moduli.poisson_extremes(medium, dirs)
     fields = {
@@ -54,7 +54,9 @@ def scale_of(pair):
 def random_table(seed):
     """Half physical, half rough: an even and an odd seed."""
     rng = np.random.default_rng(seed)
-    return random_physical(rng, 0.1 + 0.1 * (seed % 4)) if seed % 2 else random_stiffness(rng, 0.6)
+    return (
+        random_physical(rng, 0.1 + 0.1 * (seed % 4)) if seed % 2 else random_stiffness(rng, 0.6)
+    )
 
 
 def missed_on_mesh(table, mesh):
@@ -98,7 +100,9 @@ def test_extremes_do_not_depend_on_the_axes(seed):
     here, there = extremes(medium_of(table)), extremes(medium_of(rotated(table, turn)))
     for key in KEYS:
         for one, other in zip(here[key], there[key], strict=True):
-            assert other.value == pytest.approx(one.value, rel=0, abs=1e-9 * scale_of(here[key]))
+            assert other.value == pytest.approx(
+                one.value, rel=0, abs=1e-9 * scale_of(here[key])
+            )
             assert other.where == one.where
 
 
@@ -131,7 +135,9 @@ def test_sheet_extreme_beside_a_tilted_cone():
     here, there = (extremes(medium_of(t))["slow"][1] for t in (table, rotated(table, turn)))
     assert there.value == pytest.approx(here.value, rel=1e-12)
     medium = medium_of(table)
-    around = here.direction[:, None] + 0.01 * np.random.default_rng(0).standard_normal((3, 20_000))
+    around = here.direction[:, None] + 0.01 * np.random.default_rng(0).standard_normal(
+        (3, 20_000)
+    )
     assert speeds(medium, directions(around))[2].max() <= here.value * (1 + 1e-12)
 
 
@@ -298,7 +304,9 @@ def test_unstable_crystal_has_no_greatest_modulus():
     assert found["shear"][1] is None
     assert found["poisson"] == (None, None)
     assert found["slow"][0] is None
-    assert found["young"][0].value == pytest.approx(3 / (s[0, 0] + 2 * s[0, 1] + s[3, 3]), rel=1e-12)
+    assert found["young"][0].value == pytest.approx(
+        3 / (s[0, 0] + 2 * s[0, 1] + s[3, 3]), rel=1e-12
+    )
     assert found["shear"][0].value == pytest.approx(75.4, rel=1e-12)
     assert found["slow"][1].value == pytest.approx(np.sqrt(1e3 * 75.4 / density), rel=1e-12)
     assert found["fast"][0].value == pytest.approx(np.sqrt(1e3 * 100.0 / density), rel=1e-12)

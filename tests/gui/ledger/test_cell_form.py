@@ -65,6 +65,8 @@ def test_each_field_emits_its_name(form, qtbot, name):
     qtbot.keyClicks(target, "9.5")
     qtbot.keyClick(target, Qt.Key.Key_Return)
     assert form.told == [(name, "9.5")]
+    assert form.texts()[name] == "9.5"
+    assert list(form.texts()) == list(NAMES)
 
 
 @pytest.mark.parametrize(

@@ -8,7 +8,7 @@ from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QGuiApplication
 
 from gui.plots.source_picture import SourcePicture, draw_source, source_ground
-from gui.theme import LIGHT
+from gui.theme import LIGHT, style_sheet
 from gui.viewdata import SourceView
 from tests.gui.plots.demo_views import ANGLES, TABLE_A, polar, wave_source
 from tests.gui.plots.drawing import draw_image, draw_pdf, draw_svg, near, svg_words
@@ -93,3 +93,15 @@ def test_copy_gives_rows(plot, qtbot):
     side, sheet, points, leaves = wave_source().curves[2]
     assert rows[-1] == [side, str(sheet + 1), repr(float(points[0, -1])),
                         repr(float(points[1, -1])), "yes" if leaves[-1] else "no"]  # fmt: skip
+
+
+def test_the_time_can_be_read_in_the_window_s_dress(qtbot):
+    widget = SourcePicture()
+    qtbot.addWidget(widget)
+    widget.setStyleSheet(style_sheet(LIGHT, ":/none"))
+    widget.resize(380, 300)
+    widget.show_view(wave_source(1234.56))
+    widget.show()
+    qtbot.waitExposed(widget)
+    line = widget.time.lineEdit()
+    assert line.width() >= line.fontMetrics().horizontalAdvance("1234.56 µs")

@@ -8,7 +8,8 @@ def rgba(image):
     """The pixels of a picture, (H, W, 4), straight colours 0 to 255."""
     plain = image.convertToFormat(QImage.Format.Format_RGBA8888)
     pixels = np.frombuffer(plain.constBits(), np.uint8)
-    return pixels.reshape(plain.height(), plain.bytesPerLine() // 4, 4)[:, : plain.width()].astype(int)
+    padded = pixels.reshape(plain.height(), plain.bytesPerLine() // 4, 4)
+    return padded[:, : plain.width()].astype(int)
 
 
 def covered(image, ground):

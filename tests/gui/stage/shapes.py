@@ -41,7 +41,10 @@ def cubic_young(least, greatest, level=4):
     def inverse(n):
         return p + q * (n**4).sum(axis=0)
 
-    return radial_rows(level, lambda n: 1 / inverse(n), lambda n: -4 * q * n**3 / inverse(n) ** 2)
+    def gradient(n):
+        return -4 * q * n**3 / inverse(n) ** 2
+
+    return radial_rows(level, lambda n: 1 / inverse(n), gradient)
 
 
 def sheet(rows, level=4, visible=True, opacity=1.0):

@@ -1,4 +1,4 @@
-"""The camera against geometry that can be checked by hand, and its parts against one another."""
+"""The camera against geometry checked by hand, and its parts against one another."""
 
 import math
 

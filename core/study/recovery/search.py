@@ -1,0 +1,185 @@
+"""The search for the constants that fit best: many starts, then the last refinements."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from core.arrays import FloatArray
+from core.study.recovery.descent import HUBER, Goal, Trial, descend
+from core.study.recovery.evidence import Spectrum, spectrum_of
+from core.study.recovery.fit import FitOptions
+from core.study.recovery.model import Basis
+from core.study.recovery.problem import Problem, with_direction_sigma, with_ray_normals
+from core.study.recovery.starts import isotropic_start, start_batches
+from core.task import Ticker
+from core.tensor.notation import stiffness_to_kelvin
+
+ANCHOR_PART = 0.3
+"""Of the mean eigenstiffness: how loosely the fit is held to its start where nothing is seen."""
+
+_ENOUGH = 3  # starts that arrive at the best place and so confirm it
+_SAME_COST = 1e-3  # relative
+_ROUGH_RAY = 0.03  # of a group speed: what taking its ray for the wave normal may cost
+_ROUNDS = 25
+_SETTLED = 1e-7  # relative change of the constants between rounds
+_ANOTHER = 0.01  # relative Kelvin distance beyond which two solutions differ
+
+
+@dataclass(frozen=True, eq=False)
+class Found:
+    """The best crystal.
+
+    Attributes
+    ----------
+    problem : Problem
+        With the wave normals and uncertainties it was fitted with.
+    goal : Goal
+        What was minimised in the end.
+    trial : Trial
+        One crystal.
+    spectrum : Spectrum
+    starts : int
+    rival : (6, 6) array or None
+        Other constants that fit as well.
+    """
+
+    problem: Problem
+    goal: Goal
+    trial: Trial
+    spectrum: Spectrum
+    starts: int
+    rival: FloatArray | None
+
+    @property
+    def constants(self) -> FloatArray:
+        """The constants (P,), GPa."""
+        return np.asarray(self.trial.constants[0])
+
+    @property
+    def weights(self) -> FloatArray:
+        """Weights (M,) of the readings in a robust fit, else ones."""
+        return weights_of(self.goal, self.trial)
+
+
+def weights_of(goal: Goal, trial: Trial) -> FloatArray:
+    """Return what each reading (M,) counts in the fit."""
+    size = np.abs(trial.residuals[0])
+    return HUBER / np.maximum(size, HUBER) if goal.robust else np.ones_like(size)
+
+
+def mean_stiffness(basis: Basis, constants: FloatArray) -> float:
+    """Return the mean eigenstiffness, GPa; of any crystal, the trace of its Kelvin form / 6."""
+    return float(np.trace(stiffness_to_kelvin(basis.table(constants)))) / 6.0
+
+
+def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
+    """Return the constants that fit the readings best.
+
+    Starts are tried in batches of 1, 4, 8, 12 and 15, the first being the isotropic crystal
+    with the median speeds (and the prior, if there is one). The search stops when χ² is below
+    dof + 6 √(2 dof), when three starts have arrived at the best place, or after the last
+    batch. With fewer spare readings than constants a second batch is always tried, since
+    several crystals may fit.
+    """
+    first = isotropic_start(problem.readings, problem.survey.density, problem.basis)
+    anchor, also = first, []
+    if options.prior is not None:
+        anchor = problem.basis.constants(options.prior)
+        also = [anchor]
+    rough = np.where(problem.is_group, _ROUGH_RAY * problem.measured, problem.sigma)
+    goal = Goal(
+        problem.survey, problem.assignment, problem.measured, rough, options.robust,
+        anchor, ANCHOR_PART * mean_stiffness(problem.basis, first),
+    )  # fmt: skip
+    trial, starts, rival = _multistart(goal, first, also, options.seed, ticker)
+    problem, goal, trial = _refine(problem, goal, trial, options)
+    spectrum = spectrum_at(problem, goal, trial)
+    if spectrum.rank == problem.basis.size:
+        goal = goal.without_anchor()
+        trial = descend(goal, trial.constants)
+        spectrum = spectrum_at(problem, goal, trial)
+    return Found(problem, goal, trial, spectrum, starts, rival)
+
+
+def _multistart(
+    goal: Goal, first: FloatArray, also: Sequence[FloatArray], seed: int, ticker: Ticker
+) -> tuple[Trial, int, FloatArray | None]:
+    """Return the best crystal, the number of starts, and a rival that fits as well."""
+    basis = goal.survey.basis
+    spare = goal.survey.count - basis.size
+    dof = max(spare, 1)
+    enough = dof + 6.0 * np.sqrt(2.0 * dof)
+    fewest = 2 if 0 <= spare < basis.size else 1
+    best: Trial | None = None
+    costs: list[float] = []
+    rival = None
+    for number, starts in enumerate(start_batches(first, also, basis, seed), start=1):
+        ticker.tick(len(costs) / 40)
+        trial = descend(goal, starts)
+        costs += trial.cost.tolist()
+        place = int(trial.cost.argmin())
+        if best is None or trial.cost[place] < best.cost[0]:
+            best = trial.rows(np.array([place]))
+        good = trial.constants[trial.chi2 < enough]
+        rival = rival if rival is not None else _rival(basis, best, good)
+        arrivals = sum(cost <= best.cost[0] * (1 + _SAME_COST) + _SAME_COST for cost in costs)
+        done = best.chi2[0] < enough or arrivals >= _ENOUGH
+        if done and number >= fewest:
+            break
+    assert best is not None
+    if spare < 0 or (rival is not None and best.chi2[0] >= enough):
+        rival = None
+    return best, len(costs), rival
+
+
+def _rival(basis: Basis, best: Trial, good: FloatArray) -> FloatArray | None:
+    """Return the first of some good constants (K, P) that is another crystal than the best."""
+    size = np.linalg.norm(best.constants[0] @ basis.kelvin_root)
+    for constants in good:
+        apart = np.linalg.norm((constants - best.constants[0]) @ basis.kelvin_root)
+        if apart > _ANOTHER * size:
+            return basis.table(constants)
+    return None
+
+
+def _refine(
+    problem: Problem, goal: Goal, trial: Trial, options: FitOptions
+) -> tuple[Problem, Goal, Trial]:
+    """Return the fit with wave normals behind rays, and uncertainties of directions.
+
+    Both depend on the constants and are brought up to date between fits until the constants
+    rest.
+    """
+    has_rays = bool(problem.is_group.any())
+    rounds = _ROUNDS if has_rays else (2 if options.direction_sigma_deg > 0 else 0)
+    for _ in range(rounds):
+        before = trial.constants[0]
+        if has_rays:
+            problem = with_ray_normals(problem, before, trial.sheets[0])
+        if options.direction_sigma_deg > 0:
+            problem = with_direction_sigma(
+                problem, before, trial.sheets[0], options.direction_sigma_deg
+            )
+        goal = goal_for(problem, goal)
+        trial = descend(goal, trial.constants)
+        change = np.linalg.norm(trial.constants[0] - before)
+        if change <= _SETTLED * np.linalg.norm(before):
+            break
+    return problem, goal, trial
+
+
+def goal_for(problem: Problem, like: Goal) -> Goal:
+    """Return a goal like another for a problem with other normals or uncertainties."""
+    return Goal(
+        problem.survey, problem.assignment, problem.measured * problem.cosine,
+        problem.sigma * problem.cosine, like.robust, like.anchor, like.anchor_sigma,
+    )  # fmt: skip
+
+
+def spectrum_at(problem: Problem, goal: Goal, trial: Trial) -> Spectrum:
+    """Return what the readings see of the constants at a crystal."""
+    jacobian = trial.jacobian[0] * np.sqrt(weights_of(goal, trial))[:, None]
+    relative = trial.jacobian[0] * (goal.sigma / goal.speeds)[:, None]
+    typical = mean_stiffness(problem.basis, trial.constants[0])
+    return spectrum_of(jacobian, relative, problem.basis, typical)
