@@ -1,149 +1,275 @@
-"""The headless verbs: everything the bench computes, for a terminal and for other programs."""
+"""The headless verbs: everything the bench computes, for a terminal and for other programs.
+
+Only the words are read here, so that help comes at once; `core.verbs` computes.
+"""
 
 from __future__ import annotations
 
 import argparse
+import difflib
+import io
 import json
+import os
+import re
 import sys
 from collections.abc import Callable, Sequence
-from pathlib import Path
-from typing import Any
+from typing import Any, NoReturn
 
-from core import pages
 from core.errors import InputError
-from core.files.opening import open_file
-from core.state import OrientationChoice, Specimen
-from core.summary import along, compare, rotate, summarise
-from core.tensor.notation import parse_rows
+from core.version import VERSION
 
-DIRECTIONS_HELP = """\
-A direction is written as on paper:
-  "[1 1 0]"        along a lattice direction (indices follow the cell of the specimen)
+UNUSABLE = 2  # exit status for an input that cannot be used
+INTERRUPTED = 130  # what shells give for Ctrl+C
+_PLAIN_SIGNS = str.maketrans({"−": "-", "–": "-", "×": "x", "⁻": "-", "ν": "nu"})
+
+_PROGRAM = """\
+A bench for anisotropic crystals: check a 6x6 table of elastic constants and see it in every
+direction, and compare orientations. Without a verb the window opens, on FILE if one is given.
+"""
+_FILES = """\
+FILE is a specimen file (.json), a bench file (.tricline; the crystal of A is read), or a text
+table of constants: a 6x6, a triangle, 21 numbers, or a list such as C11 = 168.4. What is
+guessed about a text table is said on stderr.
+"""
+_DIRECTIONS = """\
+A DIRECTION is one word for the shell:
+  "[1 1 0]"        along a lattice direction; indices follow the unit cell of the specimen
   "(1 0 2)"        along the normal of a lattice plane
   "[2 -1 -1 0]"    with four indices, for hexagonal and trigonal crystals
-  "0.3,0.4,0.87"   three components in the Cartesian crystal axes
+  "0.3,0.4,0.87"   three components along the Cartesian crystal axes, of any length
+Without a cell only cubic and isotropic crystals understand indices.
 """
-ORIENTATIONS_HELP = """\
-An orientation is one string:
+_ORIENTATIONS = """\
+An ORIENTATION is one word for the shell. It says how the part axes X, Y, Z lie in the crystal:
   "identity"                  part axes along the crystal axes
   "Z=(1 1 0) X=[0 0 1]"       part Z along the first, part X as near as possible to the second
   "bunge 10 20 30"            Euler angles phi1, Phi, phi2 in degrees
   "(YXl) 35.25"               a rotated cut after IEEE Std 176, up to three turns
   "axis [1 1 1] 15"           the crystal axes turned by 15 degrees about [1 1 1]
-  "matrix r11 r12 ... r33"    rows: part X, Y, Z in crystal axes
-each may be followed by "turn x y z": small turns about the part's own X, Y, Z.
+  "matrix r11 r12 ... r33"    nine numbers by rows: part X, Y, Z in crystal axes
+Each may end in "turn x y z": small turns in degrees about the part's own X, then Y, then Z.
+"""
+_ALL_VERBS = """\
+Examples:
+  tricline blank.json                                 open the window on a specimen
+  tricline summary blank.json                         can this table be trusted?
+  tricline along blank.json "[1 0 0]" "(0 1 2)"       read along two directions
+  tricline rotate blank.json "(YXl) 35.25" --engineering
+  tricline compare blank.json --a identity --b "axis [0 0 1] 15"
+
+Every verb takes --json for one JSON document at full precision, and has its own help:
+tricline VERB --help. The verbs need no screen. Exit status: 0, or 2 for an input that cannot
+be used, with one sentence on stderr.
+"""
+_SUMMARY = f"""\
+For each specimen: whether the crystal is stable and which strain it resists least, the six
+eigenstiffnesses, averages and bounds of an untextured polycrystal, indices of anisotropy, how
+far the table is from the claimed class, the Debye speed, and the least and greatest value of
+every quantity over all directions with the direction (crystal axes). Of an unstable table all
+that is still defined is given. Without a density there are no waves.
+
+{_FILES}
+Examples:
+  tricline summary blank.json
+  tricline summary *.json --json > all.json            a list, one object a file
+"""
+_ALONG = f"""\
+Along each direction: Young's modulus, linear compressibility, the least and greatest shear
+modulus and Poisson's ratio over all transverse directions; with a density, for the three
+waves from the fastest: speed, polarisation, how longitudinal it is, group velocity, the angle
+by which the energy leaves the normal, and how much the crystal focuses it.
+
+{_DIRECTIONS}
+{_FILES}
+Examples:
+  tricline along blank.json "[1 0 0]" "[0 0 1]"
+  tricline along blank.json 0.3,0.4,0.87 --json       one object; a list for several directions
+"""
+_ROTATE = f"""\
+The stiffness and the compliance in part axes, in GPa and 1/TPa with engineering shears (--json:
+1/GPa), rows in the order 11 22 33 23 13 12 unless --rows says otherwise.
+
+{_ORIENTATIONS}
+{_FILES}
+Examples:
+  tricline rotate blank.json "(YXl) 35.25"
+  tricline rotate blank.json "Z=(1 0 1) X=[0 1 0]" --rows "11 22 33 12 13 23" --engineering
+"""
+_COMPARE = f"""\
+Moduli, Poisson's ratios, coupling coefficients and, with densities, wave speeds along the part
+axes X, Y, Z for two parts: A, B and B - A. Two files compare two crystals, one file two
+orientations of one crystal. Of a bench file its own A and B are taken unless --a or --b is
+given.
+
+{_ORIENTATIONS}
+{_FILES}
+Examples:
+  tricline compare blank.json --b "axis [0 0 1] 15"
+  tricline compare first.json second.json --a "Z=[1 1 0] X=[0 0 1]" --b "Z=[1 1 0] X=[0 0 1]"
 """
 
 
 def main(argv: Sequence[str] | None = None) -> int:
-    """Run one headless verb; return the exit status (0, or 2 for an input that cannot be used)."""
-    arguments = build_parser().parse_args(argv)
+    """Run one headless verb; return the exit status."""
+    words = list(sys.argv[1:] if argv is None else argv)
     try:
-        results, page = arguments.run(arguments)
+        arguments = read_words(words)
+        from core import verbs  # numpy and the kernels: only once there is something to compute
+
+        results, page = verbs.RUN[arguments.verb](arguments)
+        return _write(_json(results) if arguments.json else page(results))
     except InputError as error:
         print(f"tricline: {error}", file=sys.stderr)
-        return 2
-    if arguments.json:
-        print(json.dumps(results, indent=2, ensure_ascii=False))
-    else:
-        print(page(results), end="")
-    return 0
+        return UNUSABLE
+    except KeyboardInterrupt:
+        return INTERRUPTED
+    except SystemExit as done:  # argparse has printed help or the version
+        return int(done.code or 0)
 
 
-def build_parser() -> argparse.ArgumentParser:
+# --- reading the words ----------------------------------------------------------------------
+
+
+def read_words(words: Sequence[str]) -> argparse.Namespace:
+    """Return the arguments that the words of a command line make.
+
+    Raises
+    ------
+    InputError
+        When they are not a verb with its arguments.
+    """
+    if words and not words[0].startswith("-") and words[0] not in VERBS:
+        near = nearest_verb(words[0])
+        hint = f"Did you mean {near}?" if near else f"There are {', '.join(VERBS)}."
+        raise InputError(f"“{words[0]}” is not a verb.", hint)
+    # A word such as -1,0,0 is a direction; a blank before it keeps argparse from taking it for
+    # an option.
+    guarded = [f" {word}" if re.match(r"-[\d.]", word) else word for word in words]
+    return _build_parser().parse_args(guarded)
+
+
+def nearest_verb(word: str) -> str:
+    """Return the verb that a mistyped one may have meant; empty when there is none."""
+    return next(iter(difflib.get_close_matches(word, VERBS, n=1, cutoff=0.7)), "")
+
+
+class _Parser(argparse.ArgumentParser):
+    """A parser whose complaints are one sentence, like all others of the program."""
+
+    def error(self, message: str) -> NoReturn:
+        """Raise `InputError` in place of printing the usage."""
+        raise InputError(f"{message[:1].upper()}{message[1:]}.", f"See {self.prog} --help.")
+
+
+def _build_parser() -> argparse.ArgumentParser:
     """Return the parser of the headless verbs, with help that a person can learn from."""
-    parser = argparse.ArgumentParser(
+    parser = _Parser(
         prog="tricline",
-        description="Without a verb, tricline [FILE …] opens the window.",
-        epilog="FILE is a specimen file, a bench file or a text table of constants.")
-    verbs = parser.add_subparsers(dest="verb", required=True, metavar="VERB")
-    for name, help_text, epilog, run, add in _VERBS:
+        usage="tricline [FILE ...]\n       tricline VERB ...",
+        description=_PROGRAM,
+        epilog=_ALL_VERBS,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        allow_abbrev=False,
+    )
+    parser.add_argument(
+        "--version",
+        action="version",
+        version=f"tricline {VERSION}",
+        help="print the version and exit",
+    )
+    verbs = parser.add_subparsers(
+        dest="verb", required=True, metavar="VERB", title="verbs", prog="tricline"
+    )
+    for name, (one_line, text, add_arguments) in _VERBS.items():
         verb = verbs.add_parser(
-            name, help=help_text, description=help_text, epilog=epilog,
-            formatter_class=argparse.RawDescriptionHelpFormatter)
-        add(verb)
+            name,
+            help=one_line,
+            description=text,
+            formatter_class=argparse.RawDescriptionHelpFormatter,
+            allow_abbrev=False,
+        )
+        add_arguments(verb)
         verb.add_argument("--json", action="store_true", help="print one JSON document")
-        verb.set_defaults(run=run)
     return parser
 
 
-def load(path: str) -> Specimen:
-    """Return the specimen of a file; what was guessed about a table is said on stderr."""
-    opened = open_file(Path(path))
-    for guess in opened.guesses:
-        print(f"tricline: {path}: {guess}", file=sys.stderr)
-    return opened.specimen
-
-
-Outcome = tuple[Any, Callable[[Any], str]]
-
-
-def _summary(arguments: argparse.Namespace) -> Outcome:
-    found = [summarise(load(path)) for path in arguments.files]
-    return (found if len(found) > 1 else found[0]), pages.summaries
-
-
-def _along(arguments: argparse.Namespace) -> Outcome:
-    specimen = load(arguments.file)
-    found = [along(specimen, text) for text in arguments.directions]
-    page = pages.along_page(specimen.name, arguments.directions)
-    return (found if len(found) > 1 else found[0]), page
-
-
-def _rotate(arguments: argparse.Namespace) -> Outcome:
-    specimen = load(arguments.file)
-    choice = OrientationChoice(arguments.orientation)
-    found = rotate(specimen, choice, parse_rows(arguments.rows), arguments.engineering)
-    return found, pages.rotation_page(specimen.name, arguments.orientation)
-
-
-def _compare(arguments: argparse.Namespace) -> Outcome:
-    first = load(arguments.files[0])
-    second = load(arguments.files[1]) if len(arguments.files) > 1 else first
-    found = compare(first, OrientationChoice(arguments.a), second, OrientationChoice(arguments.b))
-    return found, pages.comparison
-
-
 def _add_files(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("files", nargs="+", metavar="FILE")
+    verb.add_argument("files", nargs="+", metavar="FILE", help="specimens")
 
 
 def _add_along(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("file", metavar="FILE")
-    verb.add_argument("directions", nargs="+", metavar="DIRECTION")
+    verb.add_argument("file", metavar="FILE", help="the specimen")
+    verb.add_argument("directions", nargs="+", metavar="DIRECTION", help="as above")
 
 
 def _add_rotate(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("file", metavar="FILE")
-    verb.add_argument("orientation", metavar="ORIENTATION")
-    verb.add_argument("--rows", default="11 22 33 23 13 12", metavar="ORDER",
-                      help='order of the six rows, for example "11 22 33 12 13 23"')
-    verb.add_argument("--engineering", action="store_true",
-                      help="add E, Poisson's ratios, G and coupling coefficients")
+    verb.add_argument("file", metavar="FILE", help="the specimen")
+    verb.add_argument("orientation", metavar="ORIENTATION", help="as above")
+    verb.add_argument(
+        "--rows",
+        default="11 22 33 23 13 12",
+        metavar="ORDER",
+        help='order of the six rows, for example "11 22 33 12 13 23"',
+    )
+    verb.add_argument(
+        "--engineering",
+        action="store_true",
+        help="add E, Poisson's ratios, G and coupling coefficients along X, Y, Z",
+    )
 
 
 def _add_compare(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("files", nargs="+", metavar="FILE", action=_OneOrTwo)
-    verb.add_argument("--a", default="identity", metavar="ORIENTATION")
-    verb.add_argument("--b", default="identity", metavar="ORIENTATION")
+    verb.add_argument("file", metavar="FILE", help="the crystal of A, and of B without another")
+    verb.add_argument("other", nargs="?", metavar="FILE", help="the crystal of B")
+    verb.add_argument("--a", metavar="ORIENTATION", help="of A; identity if left out")
+    verb.add_argument("--b", metavar="ORIENTATION", help="of B; identity if left out")
 
 
-class _OneOrTwo(argparse.Action):
-    """Takes one file, or two where B is another crystal."""
+_VERBS: dict[str, tuple[str, str, Callable[[argparse.ArgumentParser], None]]] = {
+    "summary": (
+        "verdict, averages, anisotropy, symmetry and extremes of specimens",
+        _SUMMARY,
+        _add_files,
+    ),
+    "along": ("every quantity along directions", _ALONG, _add_along),
+    "rotate": ("the 6x6 in part axes, and engineering constants", _ROTATE, _add_rotate),
+    "compare": ("two orientations, or two crystals, side by side", _COMPARE, _add_compare),
+}
+"""Verb, its line in the list of verbs, its own help, and what adds its arguments."""
 
-    def __call__(self, parser: argparse.ArgumentParser, namespace: argparse.Namespace,
-                 values: Any, option_string: str | None = None) -> None:
-        if len(values) > 2:
-            parser.error(f"one or two files can be compared, not {len(values)}")
-        setattr(namespace, self.dest, values)
+VERBS = tuple(_VERBS)
 
 
-_VERBS = (
-    ("summary", "verdict, averages, anisotropy, symmetry and extremes of specimens", "",
-     _summary, _add_files),
-    ("along", "every quantity along directions", DIRECTIONS_HELP, _along, _add_along),
-    ("rotate", "the 6x6 in part axes", ORIENTATIONS_HELP, _rotate, _add_rotate),
-    ("compare", "two orientations, or two crystals, along the part axes", ORIENTATIONS_HELP,
-     _compare, _add_compare),
-)
-VERBS = tuple(name for name, *_ in _VERBS)
+# --- writing the results --------------------------------------------------------------------
+
+
+def _json(results: Any) -> str:
+    """Return one JSON document, in ASCII where the terminal does not take UTF-8."""
+    plain = not _takes_unicode()
+    return json.dumps(results, indent=2, ensure_ascii=plain, allow_nan=False) + "\n"
+
+
+def _takes_unicode() -> bool:
+    encoding = getattr(sys.stdout, "encoding", None) or "ascii"
+    return str(encoding).lower().startswith("utf")
+
+
+def _write(text: str) -> int:
+    """Print a text; return the exit status. A reader that has seen enough is no error."""
+    if isinstance(sys.stdout, io.TextIOWrapper):
+        sys.stdout.reconfigure(errors="replace")
+    if not _takes_unicode():
+        text = text.translate(_PLAIN_SIGNS)  # a lost minus would be a wrong number
+    try:
+        sys.stdout.write(text)
+        sys.stdout.flush()
+    except OSError as error:
+        # Python flushes once more when it ends; let that go nowhere.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        if not isinstance(error, BrokenPipeError):
+            raise InputError(f"The results cannot be written ({error.strerror}).") from None
+    return 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())

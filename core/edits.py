@@ -16,14 +16,13 @@ from core import limits
 from core.arrays import FloatArray
 from core.crystal.cell import UnitCell, axes_matrix, axes_text, change_of_axes
 from core.errors import InputError
-from core.files.matrices import read_block, read_table
+from core.files.matrices import read_block, read_table, understand
 from core.numbers import parse_number
 from core.state import Matrix, Specimen, as_matrix, claimed_class, stiffness_of
 from core.study.uncertainty import Change, carried, deviations_of, independent_covariance
 from core.tensor.notation import (
     SHEAR_FACTORS,
     constant_name,
-    from_upper_triangle,
     upper_triangle,
 )
 from core.tensor.stiffness import Stiffness
@@ -39,6 +38,13 @@ from core.tensor.symmetry import (
 FITS = 1e-9  # relative distance below which a table has the form of its class
 CELL_FIELDS = ("a", "b", "c", "alpha", "beta", "gamma")
 PASTED = "pasted block"
+_FEW_WORDS = 9  # fewer than in any list of constants: "C11 = 168.4, C12 = 121.4, C44 = 75.4"
+_READ_AS: dict[str, dict[str, str]] = {
+    "stiffness": {},
+    "compliance": {"kind": "compliance", "unit": "1/TPa"},
+    "uncertainty": {"kind": "stiffness", "unit": "GPa"},
+}
+"""What a face settles about a table that is pasted into it."""
 _FACTORS = np.outer(SHEAR_FACTORS, SHEAR_FACTORS)  # engineering over tensor compliances
 
 
@@ -154,10 +160,10 @@ def _known(deviations: FloatArray) -> Matrix | None:
 def set_block(specimen: Specimen, face: str, row: int, column: int, text: str) -> Specimen:
     """Return the specimen with a pasted table or block put in.
 
-    A full table (6×6, a triangle, 21 numbers, in stiffness also a list such as C11 = 168.4)
-    replaces everything wherever it is pasted, with it the uncertainties of the old numbers.
-    A smaller block fills the cells from (row, column) on, and their mirror images; it may
-    break the form of the class. `paste_guesses` tells what was guessed about the text.
+    A full table (6×6, a triangle, 21 numbers, a list such as C11 = 168.4) replaces everything
+    wherever it is pasted, with it the uncertainties of the old numbers. A smaller block fills
+    the cells from (row, column) on, and their mirror images; it may break the form of the
+    class. `paste_guesses` tells what was guessed about the text.
     """
     block = _smaller_block(text)
     if block is None:
@@ -184,10 +190,18 @@ def paste_guesses(face: str, text: str) -> tuple[str, ...]:
 
 
 def _smaller_block(text: str) -> FloatArray | None:
-    """Return a pasted block that is less than a table; None for tables and what is neither."""
+    """Return a pasted block that is less than a table; None for a table.
+
+    Raises
+    ------
+    InputError
+        For a short text that is neither, naming what is wrong with it as a block.
+    """
     try:
         block = np.array(read_block(text, PASTED))
     except InputError:
+        if len(text.split()) < _FEW_WORDS:
+            raise
         return None
     height, width = block.shape
     return None if height > 6 or width > 6 or height == width == 6 else block
@@ -214,47 +228,17 @@ def _filled(
 
 
 def _with_whole_table(specimen: Specimen, face: str, text: str) -> Specimen:
+    known = understand(text, _READ_AS[face], PASTED)
+    for reading in known.readings:
+        is_open = reading.question and (face != "uncertainty" or reading.field == "symmetry")
+        if is_open:
+            raise InputError(reading.question, "Make it plain in what you paste.", PASTED)
     if face == "uncertainty":
-        table = limits.symmetric(_square(text), PASTED)
-        return _with_deviations(specimen, table, None, PASTED)
-    if face == "compliance":
-        table = limits.symmetric(_square(text), PASTED) / _FACTORS
-        changed = _with_components(specimen, face, table, PASTED)
-    else:
-        table = read_table(text, PASTED).stiffness
-        changed = _with_components(specimen, face, table, PASTED)
-    return replace(changed, stiffness_std=None, covariance=None)
-
-
-def _square(text: str) -> FloatArray:
-    """Return the 6×6 of a pasted table, triangle or row of 21 numbers, taken as it stands."""
-    rows = _rows(text)
-    lengths = [len(row) for row in rows]
-    numbers = np.array([x for row in rows for x in row])
-    if lengths == [6] * 6 or len(numbers) == 36:
-        return numbers.reshape(6, 6)
-    if lengths == [1, 2, 3, 4, 5, 6]:
-        lower = np.zeros((6, 6))
-        lower[np.tril_indices(6)] = numbers
-        return np.asarray(lower + np.tril(lower, -1).T)
-    if len(numbers) == 21:
-        return from_upper_triangle(numbers)
-    raise InputError(
-        f"{len(numbers)} numbers in {len(rows)} rows are no table.",
-        "A 6×6, a triangle, 21 numbers or a smaller block was expected.",
-        PASTED,
-    )
-
-
-def _rows(text: str) -> list[list[float]]:
-    """Return pasted rows of numbers, which may grow or shrink as those of a triangle."""
-    try:
-        return read_block(text, PASTED)
-    except InputError as error:
-        try:
-            return [read_block(line, PASTED)[0] for line in text.splitlines() if line.strip()]
-        except InputError:
-            raise error from None  # it names the right line
+        return _with_deviations(specimen, np.array(known.stiffness), None, PASTED)
+    limits.stiffness(known.stiffness, PASTED)
+    std = None if known.std is None else _known(known.std)
+    table = as_matrix(known.stiffness)
+    return replace(specimen, stiffness=table, stiffness_std=std, covariance=None)
 
 
 # --- the class ------------------------------------------------------------------------------

@@ -1,7 +1,8 @@
 """What the stage and the deck show, computed from frozen values and remembered by value.
 
 A request for the same thing gives the same object: a moved pin recomputes no surface, a turned
-camera nothing at all. The memories are small and bounded.
+camera nothing at all. The memories are small and bounded. All arrays are in part axes and
+must not be written to.
 """
 
 from __future__ import annotations
@@ -11,13 +12,19 @@ from functools import lru_cache
 
 import numpy as np
 
-from core.arrays import Float32Array, FloatArray
+from core.arrays import BoolArray, Float32Array, FloatArray, read_only
 from core.directional.medium import Medium
+from core.directional.projection import from_disc
 from core.directional.quantities import quantity
-from core.directional.sphere import Directions, directions, great_circle, plane_axes, sphere_mesh
+from core.directional.sphere import (
+    Directions,
+    directions,
+    great_circle,
+    plane_axes,
+    sphere_mesh,
+)
 from core.directional.waves import group_velocities
-from core.state import Matrix, OrientationChoice, Specimen, Vector3
-from core.summary import rotation_of
+from core.state import Matrix, OrientationChoice, Specimen, Vector3, as_matrix, rotation_of
 from core.tensor.stiffness import Stiffness
 
 COARSE_LEVEL = 4  # 2,562 vertices: while something moves
@@ -25,37 +32,50 @@ FINE_LEVEL = 5  # 10,242 vertices: 150 ms later
 SECTION_POINTS = 721
 DISC_SIZE = 181  # pixels across the hemisphere's picture
 COARSE_DISC_SIZE = 91
+_IN_PLANE = 1e-3  # of a ray's length: a ray this near the section plane lies in it
+
+
+# --- media ----------------------------------------------------------------------------------
 
 
 @lru_cache(maxsize=16)
 def rotation(choice: OrientationChoice, specimen: Specimen) -> FloatArray:
-    """Return R (3, 3), v_part = R v_crystal, read-only."""
-    found = np.array(rotation_of(choice, specimen))
-    found.flags.writeable = False
-    return found
+    """Return R, shape (3, 3), read-only, v_part = R v_crystal.
+
+    Raises
+    ------
+    InputError
+        When the text of the orientation cannot be used with this specimen.
+    """
+    return read_only(rotation_of(choice, specimen))
 
 
 @lru_cache(maxsize=16)
 def _turned(stiffness: Matrix, density: float | None, turn: Matrix) -> Medium:
-    return Medium(Stiffness.from_voigt(np.array(stiffness)).rotate(np.array(turn)), density)
+    return crystal_medium(stiffness, density).rotated(np.array(turn))
 
 
 def part_medium(specimen: Specimen, choice: OrientationChoice) -> Medium:
-    """Return the medium of a specimen in part axes."""
-    turn = rotation(choice, specimen)
-    rows = tuple(tuple(row) for row in turn.tolist())
-    return _turned(specimen.stiffness, specimen.density, rows)
+    """Return the medium of a specimen in part axes.
+
+    It is the same object for specimens that differ in name or class only.
+    """
+    turn = as_matrix(rotation(choice, specimen))
+    return _turned(specimen.stiffness, specimen.density, turn)
 
 
 @lru_cache(maxsize=16)
 def crystal_medium(stiffness: Matrix, density: float | None) -> Medium:
     """Return the medium of constants in crystal axes."""
-    return Medium(Stiffness.from_voigt(np.array(stiffness)), density)
+    return Medium(Stiffness.from_voigt(stiffness), density)
+
+
+# --- surfaces and sections ------------------------------------------------------------------
 
 
 @lru_cache(maxsize=8)
 def surface(medium: Medium, key: str, level: int) -> Float32Array:
-    """Return the surface rows of a quantity, shape (sheets, 7, N), part axes."""
+    """Return the surface rows of a quantity, shape (sheets, 7, N), of a mesh of some level."""
     return quantity(key).surface(medium, sphere_mesh(level))
 
 
@@ -75,36 +95,47 @@ class SectionCurves:
 
     points: FloatArray
     values: FloatArray
-    out_of_plane: FloatArray
+    out_of_plane: BoolArray
 
 
 @lru_cache(maxsize=8)
 def section(medium: Medium, key: str, normal: Vector3) -> SectionCurves:
-    """Return the polar section of a quantity by a plane through the origin, part axes."""
+    """Return the polar section of a quantity by a plane through the origin.
+
+    Of the wave surface it is the rays of the waves whose normals lie in the plane, as they
+    project on it.
+    """
     circle = section_circle(normal)
     across, up = plane_axes(np.array(normal))
     if quantity(key).shape == "wave":
-        velocity = group_velocities(medium, circle).velocity
-        points = np.stack([np.einsum("i,sin->sn", across, velocity),
-                           np.einsum("i,sin->sn", up, velocity)], axis=1)
-        length = np.sqrt((velocity ** 2).sum(axis=1))
-        off = np.abs(np.einsum("i,sin->sn", np.array(normal), velocity))
-        return SectionCurves(points, length, off > 1e-3 * length)
+        return _ray_section(medium, circle, np.stack([across, up, np.array(normal)]))
     values = quantity(key).values(medium, circle)
     plane = np.stack([across @ circle.n, up @ circle.n])
     points = np.abs(values)[:, np.newaxis, :] * plane[np.newaxis, :, :]
     return SectionCurves(points, values, np.zeros(values.shape, dtype=bool))
 
 
+def _ray_section(medium: Medium, circle: Directions, axes: FloatArray) -> SectionCurves:
+    """Return the section of the wave surface; `axes` are the plane's two and its normal."""
+    velocity = group_velocities(medium, circle).velocity
+    across, up, off = np.einsum("ai,sin->asn", axes, velocity)
+    length = np.sqrt((velocity**2).sum(axis=1))
+    return SectionCurves(
+        np.stack([across, up], axis=1), length, np.abs(off) > _IN_PLANE * length
+    )
+
+
 @lru_cache(maxsize=4)
 def section_circle(normal: Vector3) -> Directions:
-    """Return the directions round a section plane, part axes."""
+    """Return the directions round a section plane, the last one equal to the first."""
     return great_circle(np.array(normal), SECTION_POINTS)
 
 
-# ------------------------------------------------------------------ hemisphere
+# --- hemisphere -----------------------------------------------------------------------------
+
+
 @lru_cache(maxsize=4)
-def disc(projection: str, size: int = DISC_SIZE) -> tuple[Directions, FloatArray]:
+def disc(projection: str, size: int = DISC_SIZE) -> tuple[Directions, BoolArray]:
     """Return the directions behind the pixels of a hemisphere, and which pixels they are.
 
     Parameters
@@ -126,55 +157,36 @@ def disc(projection: str, size: int = DISC_SIZE) -> tuple[Directions, FloatArray
     return directions(from_disc(np.stack([x[inside], y[inside]]), projection)), inside
 
 
-def from_disc(points: FloatArray, projection: str) -> FloatArray:
-    """Return unit vectors (3, N), z ≥ 0, of points (2, N) in the unit disc.
-
-    Equal-area is Lambert's azimuthal projection, stereographic the equal-angle one; both with
-    the hemisphere filling the disc. Points outside are drawn to the rim.
-    """
-    radius = np.hypot(points[0], points[1])
-    shrink = np.where(radius > 1.0, 1.0 / np.maximum(radius, 1e-300), 1.0)
-    u, v = points * shrink
-    squared = u * u + v * v
-    if projection == "stereographic":
-        scale = 2.0 / (1.0 + squared)
-        return np.stack([u * scale, v * scale, (1.0 - squared) / (1.0 + squared)])
-    scale = np.sqrt(np.maximum(2.0 - squared, 0.0))
-    return np.stack([u * scale, v * scale, 1.0 - squared])
-
-
-def to_disc(vectors: FloatArray, projection: str) -> FloatArray:
-    """Return points (2, N) in the unit disc of unit vectors (3, N); the lower half is mirrored."""
-    upper = np.where(vectors[2] < 0, -1.0, 1.0) * vectors
-    below = 1.0 + upper[2]
-    scale = 1.0 / below if projection == "stereographic" else 1.0 / np.sqrt(below)
-    return np.asarray(upper[:2] * scale)
-
-
 @lru_cache(maxsize=8)
-def hemisphere(medium: Medium, key: str, projection: str,
-               size: int = DISC_SIZE) -> FloatArray:
-    """Return the values of a quantity over the hemisphere, (sheets, size, size), NaN outside."""
+def hemisphere(medium: Medium, key: str, projection: str, size: int = DISC_SIZE) -> FloatArray:
+    """Return a quantity over the hemisphere, shape (sheets, size, size), NaN outside."""
     dirs, inside = disc(projection, size)
     values = quantity(key).values(medium, dirs)
     picture = np.full((len(values), *inside.shape), np.nan)
     picture[:, inside] = values
+    picture.flags.writeable = False
     return picture
 
 
-# ------------------------------------------------------------------ sweep
+# --- sweep ----------------------------------------------------------------------------------
+
+
 def arc(pin: Vector3, axis: Vector3, angles: FloatArray) -> Directions:
     """Return the directions that the pin runs through when turned about an axis.
 
     Parameters
     ----------
-    pin, axis : unit vectors, part axes
+    pin, axis : tuple of 3 floats
+        Unit vectors.
     angles : ndarray, shape (N,)
-        Degrees, right-handed about the axis.
+        Degrees, right-handed about the axis; 0 is the pin.
     """
     n, k = np.array(pin), np.array(axis)
     turn = np.deg2rad(angles)
     along = (n @ k) * k
     across = n - along
-    return directions(along[:, np.newaxis] + np.outer(across, np.cos(turn))
-                      + np.outer(np.cross(k, n), np.sin(turn)))
+    return directions(
+        along[:, np.newaxis]
+        + np.outer(across, np.cos(turn))
+        + np.outer(np.cross(k, n), np.sin(turn))
+    )

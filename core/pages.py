@@ -5,23 +5,36 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from typing import Any
 
-from core.numbers import significant
+from core.numbers import MINUS, UNDEFINED, significant
 
-_EXTREME_LABELS = (
-    ("young_gpa", "Young's modulus", "GPa"),
-    ("linear_compressibility_per_tpa", "linear compressibility", "1/TPa"),
-    ("shear_gpa", "shear modulus", "GPa"),
-    ("poisson", "Poisson's ratio", ""),
-    ("fast_km_s", "fastest wave", "km/s"),
-    ("middle_km_s", "middle wave", "km/s"),
-    ("slow_km_s", "slowest wave", "km/s"),
+Data = dict[str, Any]
+Page = Callable[[Any], str]
+
+_DUST = 1e-9  # of what is shown with four digits: an index or a percentage below it is zero
+_WIDE = 31  # columns of labels
+_EXTREMES = (
+    ("young_gpa", "Young's modulus, GPa"),
+    ("linear_compressibility_per_tpa", "linear compressibility, 1/TPa"),
+    ("shear_gpa", "shear modulus, GPa"),
+    ("poisson", "Poisson's ratio"),
+    ("fast_km_s", "fastest wave, km/s"),
+    ("middle_km_s", "middle wave, km/s"),
+    ("slow_km_s", "slowest wave, km/s"),
 )
-_ANISOTROPY_LABELS = (
-    ("universal", "universal index"),
-    ("log_euclidean", "log-Euclidean index"),
-    ("percent_bulk", "percent anisotropy of K"),
-    ("percent_shear", "percent anisotropy of G"),
+_INDICES = (
+    ("universal", "Universal index"),
+    ("log_euclidean", "Log-Euclidean index"),
+    ("percent_bulk", "Percent anisotropy of K"),
+    ("percent_shear", "Percent anisotropy of G"),
     ("zener", "Zener ratio"),
+)
+_ALONG = (
+    ("young_gpa", "Young's modulus, GPa"),
+    ("linear_compressibility_per_tpa", "linear compressibility, 1/TPa"),
+    ("shear_min_gpa", "shear modulus, least, GPa"),
+    ("shear_max_gpa", "shear modulus, greatest, GPa"),
+    ("poisson_min", "Poisson's ratio, least"),
+    ("poisson_max", "Poisson's ratio, greatest"),
 )
 CAUTION = (
     "Linear elastic, single crystal: says nothing of strength, fatigue or residual stress.\n"
@@ -29,166 +42,236 @@ CAUTION = (
 )
 
 
-def summaries(found: dict[str, Any] | list[dict[str, Any]]) -> str:
+# --- summary --------------------------------------------------------------------------------
+
+
+def summaries(found: Data | list[Data]) -> str:
     """Return one page a specimen."""
     return "\n".join(summary(one) for one in (found if isinstance(found, list) else [found]))
 
 
-def summary(data: dict[str, Any]) -> str:
+def summary(data: Data) -> str:
     """Return the page of one specimen: see `core.summary.summarise`."""
-    density = data["density_kg_m3"]
-    lines = [
-        data["name"],
-        "=" * len(data["name"]),
-        data["verdict"],
-        "",
-        "Eigenstiffnesses (Kelvin), GPa   "
-        + "  ".join(significant(x) for x in data["eigenstiffness_gpa"]),
-        f"Density                          {significant(density)} kg/m³" if density else
-        "Density                          not known: no waves",
-        f"Debye speed                      {significant(data['debye_speed_km_s'])} km/s",
-        f"Claimed class                    {data['symmetry']['declared']}, "
-        f"{significant(data['symmetry']['as_entered_percent'], 3)} % away in these axes",
-        "",
-        *_average_lines(data["averages"]),
-        "",
-        *(f"{label:32} {significant(data['anisotropy'][key])}"
-          for key, label in _ANISOTROPY_LABELS if data["anisotropy"][key] is not None),
-        "",
-        *_extreme_lines(data["extremes"]),
-        "",
-        CAUTION.rstrip(),
+    blocks = [
+        [data["name"], "=" * len(data["name"]), data["verdict"]],
+        _fact_lines(data),
+        _average_lines(data["averages"]),
+        _index_lines(data["anisotropy"]),
+        _extreme_lines(data["extremes"]),
+        [CAUTION],
     ]
-    return "\n".join(lines) + "\n"
+    return "\n\n".join("\n".join(block) for block in blocks if block)
 
 
-def _average_lines(averages: dict[str, Any]) -> list[str]:
-    lines = [f"{'Aggregate':14}{'K GPa':>10}{'G GPa':>10}{'E GPa':>10}{'ν':>10}"]
+def _fact_lines(data: Data) -> list[str]:
+    density, debye = data["density_kg_m3"], data["debye_speed_km_s"]
+    class_words, off = data["symmetry"]["declared"], data["symmetry"]["as_entered_percent"]
+    facts = {
+        "Eigenstiffnesses (Kelvin), GPa": "  ".join(
+            map(significant, data["eigenstiffness_gpa"])
+        ),
+        "Density": f"{significant(density)} kg/m³" if density else "not known: no waves",
+        "Debye speed": f"{significant(debye)} km/s" if debye else "not defined",
+        "Claimed class": f"{class_words}, exactly in these axes"
+        if off < _DUST
+        else f"{class_words}, {significant(off, 3)} % away in these axes",
+    }
+    return [f"{label:{_WIDE}} {value}" for label, value in facts.items()]
+
+
+def _average_lines(averages: Data) -> list[str]:
+    lines = [f"{'Polycrystal':14}{'K GPa':>10}{'G GPa':>10}{'E GPa':>10}{'ν':>10}"]
     for name, label in (("voigt", "Voigt"), ("hill", "Hill"), ("reuss", "Reuss")):
-        mean = averages[name]
-        lines.append(f"{label:14}" + "".join(
-            f"{significant(mean[key]):>10}"
-            for key in ("bulk_gpa", "shear_gpa", "young_gpa", "poisson")))
+        numbers = (
+            significant(averages[name][key])
+            for key in ("bulk_gpa", "shear_gpa", "young_gpa", "poisson")
+        )
+        lines.append(f"{label:14}" + "".join(f"{number:>10}" for number in numbers))
     bounds = averages["hashin_shtrikman"]
-    lines.append(
-        "Hashin–Shtrikman  K "
-        f"{significant(bounds['bulk_low_gpa'])} to {significant(bounds['bulk_high_gpa'])}, G "
-        f"{significant(bounds['shear_low_gpa'])} to {significant(bounds['shear_high_gpa'])} GPa")
-    return lines
+    if bounds["bulk_low_gpa"] is None:
+        return lines
+    ranges = (
+        f"{letter} {significant(bounds[f'{key}_low_gpa'])} to "
+        f"{significant(bounds[f'{key}_high_gpa'])}"
+        for key, letter in (("bulk", "K"), ("shear", "G"))
+    )
+    return [*lines, f"Hashin–Shtrikman bounds: {', '.join(ranges)} GPa"]
 
 
-def _extreme_lines(extremes: dict[str, Any]) -> list[str]:
-    lines = [f"{'Extremes over all directions':28}{'least':>10}  {'along':24}"
-             f"{'greatest':>10}  along"]
-    for key, label, unit in _EXTREME_LABELS:
+def _index_lines(indices: Data) -> list[str]:
+    known = ((label, indices[key]) for key, label in _INDICES if indices[key] is not None)
+    return [
+        f"{label:{_WIDE}} {significant(0.0 if abs(value) < _DUST else value)}"
+        for label, value in known
+    ]
+
+
+def _extreme_lines(extremes: Data) -> list[str]:
+    lines = [
+        f"{'Over all directions':{_WIDE}}{'least':>10}  {'along':28}{'greatest':>10}  along"
+    ]
+    for key, label in _EXTREMES:
         least, greatest = extremes[key]["min"], extremes[key]["max"]
-        name = f"{label}{', ' if unit else ''}{unit}"
-        lines.append(f"{name:28}{_value(least)}  {_place(least):24}"
-                     f"{_value(greatest)}  {_place(greatest)}".rstrip())
+        line = (
+            f"{label:{_WIDE}}{_value(least)}  {_place(least):28}"
+            f"{_value(greatest)}  {_place(greatest)}"
+        )
+        lines.append(line.rstrip())
     return lines
 
 
-def _value(found: dict[str, Any] | None) -> str:
+def _value(found: Data | None) -> str:
     return f"{significant(None if found is None else found['value']):>10}"
 
 
-def _place(found: dict[str, Any] | None) -> str:
+def _place(found: Data | None) -> str:
     if found is None:
         return ""
     if found["set"] == "all":
         return "every direction"
-    words = "  ".join(significant(round(x, 4), 3) for x in found["direction"])
-    return f"ring through {words}" if found["set"] == "ring" else words
+    words = _vector(found["direction"], 3)
+    return f"{words}, ring" if found["set"] == "ring" else words
 
 
-def along_page(name: str, texts: Sequence[str]) -> Callable[[Any], str]:
+# --- along ----------------------------------------------------------------------------------
+
+
+def along_page(name: str, texts: Sequence[str]) -> Page:
     """Return the writer of a page of directions; see `core.summary.along`."""
-    def page(found: dict[str, Any] | list[dict[str, Any]]) -> str:
+
+    def page(found: Data | list[Data]) -> str:
         each = found if isinstance(found, list) else [found]
         return f"{name}\n" + "".join(
-            f"\nalong {text}\n{_along_text(data)}"
-            for text, data in zip(texts, each, strict=True))
+            f"\nAlong {text}\n" + "\n".join(_along_lines(data)) + "\n"
+            for text, data in zip(texts, each, strict=True)
+        )
+
     return page
 
 
-_ALONG_LABELS = (
-    ("young_gpa", "Young's modulus", "GPa"),
-    ("linear_compressibility_per_tpa", "linear compressibility", "1/TPa"),
-    ("shear_min_gpa", "shear modulus, least", "GPa"),
-    ("shear_max_gpa", "shear modulus, greatest", "GPa"),
-    ("poisson_min", "Poisson's ratio, least", ""),
-    ("poisson_max", "Poisson's ratio, greatest", ""),
-)
-
-
-def _along_text(data: dict[str, Any]) -> str:
-    lines = [f"   unit vector               {_vector(data['direction'])}  (crystal axes)"]
-    lines += [f"   {label:26}{significant(data[key]):>10} {unit}".rstrip()
-              for key, label, unit in _ALONG_LABELS]
+def _along_lines(data: Data) -> list[str]:
+    lines = [f"   {'unit vector, crystal axes':{_WIDE}} {_vector(data['direction'])}"]
+    lines += [f"   {label:{_WIDE}} {significant(data[key]):>10}" for key, label in _ALONG]
     if data["sheets"] is None:
-        lines.append("   no density: waves are off")
-    else:
-        lines.append("   sheet      v km/s  longit.  flow off  focusing  polarisation")
-        for name, sheet in zip(("fastest", "middle", "slowest"), data["sheets"], strict=True):
-            lines.append(
-                f"   {name:8}{significant(sheet['speed_km_s']):>9}"
-                f"{significant(sheet['longitudinality'], 3):>9}"
-                f"{significant(sheet['power_flow_deg'], 3):>9}°"
-                f"{significant(sheet['focusing'], 3):>10}  {_vector(sheet['polarisation'])}"
-                + ("  degenerate" if sheet["degenerate"] else ""))
-    return "\n".join(lines) + "\n"
+        return [*lines, "   no density: no waves"]
+    lines.append(
+        "   wave      v km/s  1/v s/km   longit.  flow off  focusing"
+        "  polarisation, crystal axes"
+    )
+    for name, sheet in zip(("fastest", "middle", "slowest"), data["sheets"], strict=True):
+        numbers = (
+            significant(sheet["speed_km_s"]),
+            significant(sheet["slowness_s_km"]),
+            significant(_without_dust(sheet["longitudinality"]), 3),
+            _degrees(_without_dust(sheet["power_flow_deg"], 1e-5)),
+            significant(sheet["focusing"], 3),
+        )
+        columns = "".join(f"{number:>10}" for number in numbers)
+        degenerate = "  (one of a plane)" if sheet["degenerate"] else ""
+        lines.append(f"   {name:7}{columns[1:]}  {_vector(sheet['polarisation'])}{degenerate}")
+    return lines
 
 
-def _vector(components: Sequence[float]) -> str:
-    return "  ".join(f"{significant(round(x, 6), 4):>8}" for x in components)
+def _degrees(value: float | None) -> str:
+    return UNDEFINED if value is None else f"{significant(value, 3)}°"
 
 
-def rotation_page(name: str, orientation: str) -> Callable[[Any], str]:
+def _without_dust(value: float | None, dust: float = _DUST) -> float | None:
+    return 0.0 if value is not None and abs(value) < dust else value
+
+
+def _vector(components: Sequence[float], decimals: int = 5) -> str:
+    """Return the components of a unit vector in columns; rounding dust reads as 0."""
+    words = (
+        "0" if abs(x) < _DUST else f"{x:.{decimals}f}".replace("-", MINUS) for x in components
+    )
+    return " ".join(f"{word:>{decimals + 3}}" for word in words)
+
+
+# --- rotate and compare ---------------------------------------------------------------------
+
+
+def rotation_page(name: str, orientation: str) -> Page:
     """Return the writer of a rotated 6×6; see `core.summary.rotate`."""
-    def page(data: dict[str, Any]) -> str:
+
+    def page(data: Data) -> str:
         lines = [f"{name}, {orientation}", "", "Part axes in crystal axes"]
-        lines += [f"   {axis}   {_vector(row)}"
-                  for axis, row in zip("XYZ", data["rotation"], strict=True)]
+        lines += [
+            f"   {axis}   {_vector(row)}"
+            for axis, row in zip("XYZ", data["rotation"], strict=True)
+        ]
         lines += ["", *_block("Stiffness, GPa", data["rows"], data["stiffness_gpa"], 1.0)]
-        lines += ["", *_block("Compliance, 1/TPa", data["rows"], data["compliance_per_gpa"], 1e3)]
+        if data["compliance_per_gpa"] is None:
+            lines += ["", "Compliance: none, for the stiffness has no inverse"]
+        else:
+            compliance = data["compliance_per_gpa"]
+            lines += ["", *_block("Compliance, 1/TPa", data["rows"], compliance, 1e3)]
         if "engineering" in data:
             lines += ["", *_engineering_lines(data["engineering"])]
         return "\n".join(lines) + "\n"
+
     return page
 
 
-def _block(title: str, rows: Sequence[str], matrix: Sequence[Sequence[float]],
-           factor: float) -> list[str]:
-    largest = max(abs(x) for row in matrix for x in row)
+def _block(
+    title: str, rows: Sequence[str], matrix: Sequence[Sequence[float]], factor: float
+) -> list[str]:
+    """Return a 6×6 with five significant digits; what is rounding dust of it reads as 0."""
+    dust = 1e-12 * max(abs(x) for row in matrix for x in row)
     lines = [f"{title}; rows {' '.join(rows)}"]
-    lines += ["   " + "".join(
-        f"{significant(0.0 if abs(x) < 1e-12 * largest else factor * x, 5):>12}" for x in row)
-        for row in matrix]
+    for row in matrix:
+        cells = (significant(0.0 if abs(x) < dust else factor * x, 5) for x in row)
+        lines.append("   " + "".join(f"{cell:>11}" for cell in cells))
     return lines
 
 
-def _engineering_lines(data: dict[str, Any]) -> list[str]:
-    lines = ["Engineering constants along X, Y, Z",
-             "   E, GPa    " + "  ".join(significant(x) for x in data["young_gpa"]),
-             "   G, GPa    " + "  ".join(f"{k}: {significant(x)}"
-                                         for k, x in data["shear_gpa"].items()),
-             "   ν         " + "  ".join(
-                 f"{i + 1}{j + 1}: {significant(x)}"
-                 for i, row in enumerate(data["poisson"]) for j, x in enumerate(row) if i != j)]
-    pairs = [f"{k}: {significant(x, 3)}" for k, x in data["coupling"].items()
-             if x is not None and abs(x) > 1e-9]
-    lines.append("   coupling  " + ("  ".join(pairs) if pairs else "none"))
-    return lines
+def _engineering_lines(data: Data) -> list[str]:
+    ratios = (
+        f"{i + 1}{j + 1}: {significant(_without_dust(x))}"
+        for i, row in enumerate(data["poisson"])
+        for j, x in enumerate(row)
+        if i != j
+    )
+    couplings = [
+        f"{name}: {significant(x, 3)}"
+        for name, x in data["coupling"].items()
+        if x is not None and abs(x) > _DUST
+    ]
+    moduli = zip("123", data["young_gpa"], strict=True)
+    shears = data["shear_gpa"].items()
+    return [
+        "Engineering constants; 1, 2, 3 are X, Y, Z",
+        "   E, GPa    " + "  ".join(f"{axis}: {significant(x)}" for axis, x in moduli),
+        "   G, GPa    " + "  ".join(f"{pair}: {significant(x)}" for pair, x in shears),
+        "   ν, loaded and across      " + "  ".join(ratios),
+        "   coupling, strain per strain loaded:"
+        + (" none" if not couplings else _wrapped(couplings)),
+    ]
 
 
-def comparison(data: dict[str, Any]) -> str:
+def _wrapped(pieces: Sequence[str], each: int = 6) -> str:
+    """Return pieces in rows of a few, below the line that announces them."""
+    rows = (pieces[start : start + each] for start in range(0, len(pieces), each))
+    return "".join(
+        "\n      " + "  ".join(f"{piece:14}" for piece in row).rstrip() for row in rows
+    )
+
+
+def comparison(data: Data) -> str:
     """Return the page of two parts side by side; see `core.summary.compare`."""
-    lines = [f"A  {data['a']['name']}, {data['a']['orientation']}",
-             f"B  {data['b']['name']}, {data['b']['orientation']}",
-             f"turned against each other by {significant(data['misorientation_deg'])}°", "",
-             f"{'':36}{'A':>11}{'B':>11}{'B − A':>11}"]
+    lines = [
+        f"A  {data['a']['name']}, {data['a']['orientation']}",
+        f"B  {data['b']['name']}, {data['b']['orientation']}",
+        f"Turned against each other by {significant(data['misorientation_deg'])}°",
+        "",
+        f"{'':38}{'A':>11}{'B':>11}{'B − A':>11}",
+    ]
     for row in data["rows"]:
         label = f"{row['label']}{', ' if row['unit'] else ''}{row['unit']}"
-        lines.append(f"{label:36}" + "".join(
-            f"{significant(row[key]):>11}" for key in ("a", "b", "difference")))
+        size = max(abs(row[key] or 0.0) for key in ("a", "b"))
+        dust = 1e-5 if row["unit"] == "°" else max(_DUST, 1e-12 * size)
+        numbers = (
+            significant(_without_dust(row[key], dust)) for key in ("a", "b", "difference")
+        )
+        lines.append(f"{label:38}" + "".join(f"{number:>11}" for number in numbers))
     return "\n".join(lines) + "\n"

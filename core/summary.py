@@ -13,17 +13,30 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.crystal.directions import Direction, parse_direction
-from core.crystal.orientation import misorientation, parse_orientation, turned
-from core.directional.debye import debye_speed
+from core.crystal.indices import number_text
+from core.crystal.orientation import misorientation
 from core.directional.extremes import Extreme, extremes
 from core.directional.medium import Medium
 from core.directional.moduli import compressibility, poisson_extremes, shear_extremes, young
 from core.directional.sphere import directions
-from core.directional.waves import focusing, group_velocities, longitudinality, modes, power_flow
-from core.state import OrientationChoice, Specimen
+from core.directional.waves import (
+    focusing,
+    group_velocities,
+    longitudinality,
+    modes,
+    power_flow,
+)
+from core.state import (
+    OrientationChoice,
+    Specimen,
+    claimed_class,
+    rotation_of,
+    stiffness_of,
+)
 from core.study.part import (
     SHEAR_NAMES,
     EngineeringConstants,
+    PartRow,
     engineering_constants,
     part_table,
 )
@@ -32,8 +45,7 @@ from core.task import Ticker
 from core.tensor.averages import Averages, Bounds, anisotropy, averages, hashin_shtrikman
 from core.tensor.notation import reorder, rows_text
 from core.tensor.stability import assess
-from core.tensor.stiffness import Stiffness
-from core.tensor.symmetry import CrystalClass, crystal_class, distance
+from core.tensor.symmetry import distance
 
 _EXTREME_KEYS = {
     "young": "young_gpa",
@@ -48,51 +60,59 @@ _EXTREME_KEYS = {
 
 def medium_of(specimen: Specimen, rotation: FloatArray | None = None) -> Medium:
     """Return what the kernels need of a specimen, in crystal axes or turned into part axes."""
-    stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
-    if rotation is not None:
-        stiffness = stiffness.rotate(rotation)
-    return Medium(stiffness, specimen.density)
+    medium = Medium(stiffness_of(specimen), specimen.density)
+    return medium if rotation is None else medium.rotated(rotation)
 
 
-def class_of(specimen: Specimen) -> CrystalClass:
-    """Return the crystal class that a specimen claims."""
-    return crystal_class(specimen.crystal_class, specimen.unique_axis)
-
-
-def rotation_of(choice: OrientationChoice, specimen: Specimen) -> FloatArray:
-    """Return R, shape (3, 3), v_part = R v_crystal, of an orientation said for a specimen."""
-    rotation = parse_orientation(choice.text, specimen.frame).rotation
-    return turned(rotation, choice.turn)
+# --- the whole specimen ---------------------------------------------------------------------
 
 
 def summarise(specimen: Specimen, ticker: Ticker | None = None) -> dict[str, Any]:
-    """Return the whole summary of a specimen. See the README for the keys."""
+    """Return the whole summary of a specimen, directions in crystal axes.
+
+    Of an unstable or singular table, or one without a density, what is not defined is None.
+    """
     medium = medium_of(specimen)
     stiffness = medium.stiffness
-    claimed = class_of(specimen)
-    std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
-    verdict = judge(stiffness, claimed, std)
+    claimed = claimed_class(specimen)
     stability = assess(stiffness)
-    debye = None if specimen.density is None else debye_speed(medium).speed
+    indices = anisotropy(stiffness, claimed.key == "cubic")
     return {
         "name": specimen.name,
         "stable": bool(stability.stable),
-        "verdict": verdict.sentence,
-        "eigenstiffness_gpa": [float(x) for x in stability.eigenstiffness],
+        "verdict": _verdict(specimen),
+        "eigenstiffness_gpa": stability.eigenstiffness.tolist(),
         "averages": _averages(averages(stiffness), hashin_shtrikman(stiffness)),
-        "anisotropy": {
-            key: _number(value)
-            for key, value in asdict(anisotropy(stiffness, claimed.key == "cubic")).items()
-        },
+        "anisotropy": {key: _number(value) for key, value in asdict(indices).items()},
         "symmetry": {
             "declared": claimed.key,
             "as_entered_percent": 100 * distance(stiffness.voigt, claimed),
             "nearest": None,
         },
         "density_kg_m3": specimen.density,
-        "debye_speed_km_s": _number(debye),
-        "extremes": _extremes(extremes(medium, ticker or Ticker())),
+        "debye_speed_km_s": _debye(medium),
+        "extremes": _extremes(extremes(medium, ticker)),
     }
+
+
+def _verdict(specimen: Specimen) -> str:
+    known = [
+        None if matrix is None else np.array(matrix)
+        for matrix in (specimen.stiffness_std, specimen.covariance)
+    ]
+    return judge(stiffness_of(specimen), claimed_class(specimen), *known).sentence
+
+
+def _debye(medium: Medium) -> float | None:
+    if medium.density is None:
+        return None
+    # Imported here, for its quadrature takes longer to load than all else to compute.
+    from core.directional.debye import debye_speed
+
+    return _number(debye_speed(medium).speed)
+
+
+# --- one direction --------------------------------------------------------------------------
 
 
 def along(specimen: Specimen, text: str) -> dict[str, Any]:
@@ -101,8 +121,8 @@ def along(specimen: Specimen, text: str) -> dict[str, Any]:
 
 
 def along_direction(medium: Medium, direction: Direction) -> dict[str, Any]:
-    """Return every quantity along a direction (crystal axes)."""
-    one = directions(np.array(direction.vector).reshape(3, 1))
+    """Return every quantity along a direction; medium and direction in crystal axes."""
+    one = directions(np.array(direction.vector))
     least_shear, greatest_shear = shear_extremes(medium, one)
     least_poisson, greatest_poisson = poisson_extremes(medium, one)
     return {
@@ -128,7 +148,7 @@ def _sheets(medium: Medium, n: FloatArray) -> list[dict[str, Any]]:
         {
             "speed_km_s": _number(wave.speed[sheet, 0]),
             "slowness_s_km": _number(1 / wave.speed[sheet, 0]),
-            "polarisation": [float(x) for x in wave.polarisation[sheet, :, 0]],
+            "polarisation": wave.polarisation[sheet, :, 0].tolist(),
             "longitudinality": _number(along_n[sheet, 0]),
             "group_km_s": [_number(x) for x in rays.velocity[sheet, :, 0]],
             "power_flow_deg": _number(flow[sheet, 0]),
@@ -139,46 +159,92 @@ def _sheets(medium: Medium, n: FloatArray) -> list[dict[str, Any]]:
     ]
 
 
+# --- parts ----------------------------------------------------------------------------------
+
+
 def rotate(
     specimen: Specimen, choice: OrientationChoice, rows: tuple[int, ...], engineering: bool
 ) -> dict[str, Any]:
-    """Return the 6×6 in part axes, its rows in the order wanted, and what the part shows."""
+    """Return the 6×6 in part axes, its rows in the order wanted, and what the part shows.
+
+    Parameters
+    ----------
+    specimen : Specimen
+    choice : OrientationChoice
+    rows : tuple of 6 ints
+        From `core.tensor.notation.parse_rows`.
+    engineering : bool
+        Whether to add the engineering constants along X, Y, Z.
+
+    Returns
+    -------
+    dict
+        The compliance is None where the stiffness has no inverse.
+    """
     rotation = rotation_of(choice, specimen)
-    stiffness = medium_of(specimen, rotation).stiffness
+    medium = medium_of(specimen, rotation)
+    has_inverse = bool(np.isfinite(medium.compliance).all())
     data: dict[str, Any] = {
         "rotation": rotation.tolist(),
-        "stiffness_gpa": reorder(stiffness.voigt, rows).tolist(),
-        "compliance_per_gpa": reorder(stiffness.compliance, rows).tolist(),
+        "stiffness_gpa": reorder(medium.stiffness.voigt, rows).tolist(),
+        "compliance_per_gpa": reorder(medium.compliance, rows).tolist()
+        if has_inverse
+        else None,
         "rows": rows_text(rows).split(),
     }
     if engineering:
-        data["engineering"] = engineering_dict(engineering_constants(stiffness))
+        data["engineering"] = engineering_dict(engineering_constants(medium.stiffness))
     return data
 
 
 def compare(
-    first: Specimen, choice_a: OrientationChoice,
-    second: Specimen, choice_b: OrientationChoice,
+    first: Specimen,
+    choice_a: OrientationChoice,
+    second: Specimen,
+    choice_b: OrientationChoice,
 ) -> dict[str, Any]:
-    """Return A, B and B − A of the part table of two orientations or two crystals."""
+    """Return A, B and B − A of the part table of two orientations or two crystals.
+
+    A row that one of the two has not, as the waves of a crystal without a density, is None
+    there.
+    """
     rotation_a, rotation_b = rotation_of(choice_a, first), rotation_of(choice_b, second)
-    table_a = part_table(medium_of(first, rotation_a))
-    table_b = {row.key: row for row in part_table(medium_of(second, rotation_b))}
+    table_a, table_b = (
+        {row.key: row for row in part_table(medium_of(specimen, rotation))}
+        for specimen, rotation in ((first, rotation_a), (second, rotation_b))
+    )
     return {
-        "a": {"name": first.name, "orientation": choice_a.text, "rotation": rotation_a.tolist()},
-        "b": {"name": second.name, "orientation": choice_b.text, "rotation": rotation_b.tolist()},
+        "a": _part(first, choice_a, rotation_a),
+        "b": _part(second, choice_b, rotation_b),
         "misorientation_deg": misorientation(rotation_a, rotation_b).angle_deg,
         "rows": [
-            {
-                "key": row.key,
-                "label": row.label,
-                "unit": row.unit,
-                "a": _number(row.value),
-                "b": _number(table_b[row.key].value),
-                "difference": _number(table_b[row.key].value - row.value),
-            }
-            for row in table_a if row.key in table_b
+            _compared(row, table_a.get(key), table_b.get(key))
+            for key, row in (table_a | table_b).items()
         ],
+    }
+
+
+def _part(
+    specimen: Specimen, choice: OrientationChoice, rotation: FloatArray
+) -> dict[str, Any]:
+    turn = f" turn {' '.join(map(number_text, choice.turn))}" if any(choice.turn) else ""
+    return {
+        "name": specimen.name,
+        "orientation": choice.text + turn,
+        "rotation": rotation.tolist(),
+    }
+
+
+def _compared(row: PartRow, a: PartRow | None, b: PartRow | None) -> dict[str, Any]:
+    first, second = (_number(None if part is None else part.value) for part in (a, b))
+    both = None if first is None or second is None else second - first
+    return {
+        "key": row.key,
+        "label": row.label,
+        "unit": row.unit,
+        "a": first,
+        "b": second,
+        "difference": both,
     }
 
 
@@ -187,10 +253,14 @@ def engineering_dict(constants: EngineeringConstants) -> dict[str, Any]:
     return {
         "young_gpa": [_number(x) for x in constants.young],
         "poisson": [[_number(x) for x in row] for row in constants.poisson],
-        "shear_gpa": {name: _number(x)
-                      for name, x in zip(SHEAR_NAMES, constants.shear, strict=True)},
+        "shear_gpa": {
+            name: _number(x) for name, x in zip(SHEAR_NAMES, constants.shear, strict=True)
+        },
         "coupling": {name: _number(x) for name, x in constants.coupling.items()},
     }
+
+
+# --- pieces ---------------------------------------------------------------------------------
 
 
 def _averages(means: Averages, bounds: Bounds) -> dict[str, Any]:
@@ -223,9 +293,9 @@ def _extreme(found: Extreme | None) -> dict[str, Any] | None:
     if found is None:
         return None
     return {
-        "value": found.value,
-        "direction": list(found.direction),
-        "transverse": None if found.transverse is None else list(found.transverse),
+        "value": float(found.value),
+        "direction": found.direction.tolist(),
+        "transverse": None if found.transverse is None else found.transverse.tolist(),
         "set": found.where,
     }
 

@@ -68,8 +68,14 @@ class Application:
     stage: StageIntents
     deck: DeckIntents
 
+    def set_title(self, *_ignored: object) -> None:
+        """Write the specimen, its file and whether it is saved into the title."""
+        path, name = self.documents.path, self.bench.state.specimen.name
+        self.window.setWindowTitle(f"{name}{f' ({path.name})' if path else ''}[*] · Tricline")
+        self.window.setWindowModified(not self.bench.history.isClean())
+
     def close(self) -> None:
-        """Stop timers and workers and give back what the drawing holds."""
+        """Stop timers and workers and give back what the drawing holds; the window goes."""
         # The stack tells of its own end, when the window it would tell is gone.
         self.bench.history.blockSignals(True)
         self.pace.stop()
@@ -78,6 +84,9 @@ class Application:
         for pane in self.window.views.panes.values():
             pane.close()
         self.renderer.close()
+        # The menus' actions hold what they call, the window among it.
+        self.help.deleteLater()
+        self.window.deleteLater()
 
 
 def build(
@@ -151,11 +160,11 @@ def drawing_words(report: GlReport) -> str:
 def _connect(app: Application) -> None:
     """Join what belongs to no single part."""
     window, history = app.window, app.bench.history
-    title = partial(_set_title, app)
-    app.bench.changed.connect(title)
-    app.documents.named.connect(title)
-    history.cleanChanged.connect(title)
+    app.bench.changed.connect(app.set_title)
+    app.documents.named.connect(app.set_title)
+    history.cleanChanged.connect(app.set_title)
     app.window.cancel_asked.connect(app.scheduler.cancel)
+    app.ledger.said.connect(app.window.show_message)
     bar = window.views.toolbar
     bar.linked_toggled.connect(app.cameras.set_linked)
     bar.linked_toggled.connect(app.presenter.set_linked)
@@ -168,19 +177,12 @@ def _connect(app: Application) -> None:
         action.setEnabled(can)
         can_changed.connect(action.setEnabled)
         text_changed.connect(partial(_name_step, action, word))
-    _set_title(app)
+    app.set_title()
 
 
 def _name_step(action: object, word: str, text: str) -> None:
     words = f"{word}: {text[0].lower()}{text[1:]}" if text else word
     action.setText(words)  # type: ignore[attr-defined]
-
-
-def _set_title(app: Application, *_ignored: object) -> None:
-    path = app.documents.path
-    name = app.bench.state.specimen.name
-    app.window.setWindowTitle(f"{name}{f' ({path.name})' if path else ''}[*] · Tricline")
-    app.window.setWindowModified(not app.bench.history.isClean())
 
 
 # ------------------------------------------------------------------ running
@@ -212,7 +214,7 @@ def run(words: list[str]) -> int:
     settings = QSettings("Tricline", "Tricline")
     built = build(application, state, settings)
     built.documents.path = Path(words[0]) if words else None
-    _set_title(built)
+    built.set_title()
     sys.excepthook = partial(_report, built.window)
     _obey_interrupts(application)
     built.window.show()

@@ -10,8 +10,6 @@ from PySide6.QtGui import QUndoCommand, QUndoStack
 
 from core.state import BenchState
 
-_SNAPSHOT_ID = 1
-
 
 class Bench(QObject):
     """Holds the `BenchState` and its history.
@@ -25,6 +23,7 @@ class Bench(QObject):
     def __init__(self, state: BenchState, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._state = state
+        self._newest: _Snapshot | None = None
         self.history = QUndoStack(self)
 
     @property
@@ -36,13 +35,44 @@ class Bench(QObject):
         """Go to another state, as one named step that can be undone.
 
         Steps with the same non-empty `merge` key that follow each other become one, as while
-        dragging. A state equal to the present one is no step.
+        dragging; one that comes back to its start is no step. Nor is a state equal to the
+        present one.
         """
-        if state != self._state:
-            self.history.push(_Snapshot(self._apply, self._state, state, label, merge))
+        if state == self._state:
+            return
+        if self._continues(merge):
+            self._extend(state)
+        else:
+            self._newest = _Snapshot(self._apply, self._state, state, label, merge)
+            self.history.push(self._newest)
+
+    def _continues(self, merge: str) -> bool:
+        """Return whether a step goes on with the newest one, which must not be saved yet."""
+        history, newest = self.history, self._newest
+        at_the_end = history.index() == history.count() > 0
+        return bool(
+            newest and merge and newest.merge == merge and at_the_end and not history.isClean()
+        )
+
+    def _extend(self, state: BenchState) -> None:
+        """Let the newest step lead to another state.
+
+        Not by pushing a step for Qt to merge: every step that Qt takes and drops stays in
+        memory with its two states, and a drag makes hundreds.
+        """
+        newest = self._newest
+        if newest is None:
+            raise ValueError("there is no step to go on with")
+        newest.new = state
+        self._apply(state)
+        if newest.new == newest.old:
+            newest.setObsolete(True)
+            self._newest = None
+            self.history.undo()
 
     def load(self, state: BenchState) -> None:
         """Start anew from a state, with an empty history."""
+        self._newest = None
         self.history.clear()
         self._apply(state)
 
@@ -70,25 +100,13 @@ class _Snapshot(QUndoCommand):
     ) -> None:
         super().__init__(label)
         self._apply = apply
-        self._old, self._new = old, new
-        self._merge = merge
+        self.old, self.new = old, new
+        self.merge = merge
 
     def redo(self) -> None:
         """Go to the state after."""
-        self._apply(self._new)
+        self._apply(self.new)
 
     def undo(self) -> None:
         """Go back to the state before."""
-        self._apply(self._old)
-
-    def id(self) -> int:
-        """Let Qt offer neighbouring steps for merging; -1 keeps a step by itself."""
-        return _SNAPSHOT_ID if self._merge else -1
-
-    def mergeWith(self, other: QUndoCommand) -> bool:
-        """Take the newer step of one drag into this one; a drag back home leaves no step."""
-        if not isinstance(other, _Snapshot) or other._merge != self._merge:
-            return False
-        self._new = other._new
-        self.setObsolete(self._new == self._old)
-        return True
+        self._apply(self.old)

@@ -6,12 +6,12 @@ that cannot be used raises `InputError`, which is shown where it was typed and c
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import replace
 from typing import Any
 
 import numpy as np
-from PySide6.QtCore import QObject
+from PySide6.QtCore import QObject, Signal
 
 from core import edits, live
 from core.crystal.directions import parse_direction
@@ -33,6 +33,7 @@ _FIELD_WORDS = {
     "source": "source",
     "notes": "notes",
 }
+_CELL_WORDS = {name: name for name in "abc"} | {"alpha": "α", "beta": "β", "gamma": "γ"}
 
 
 def with_specimen(state: BenchState, specimen: Specimen) -> BenchState:
@@ -49,8 +50,35 @@ def with_orientation(state: BenchState, side: str, choice: OrientationChoice) ->
     return replace(state, orientation_b=choice)
 
 
+def check_orientations(state: BenchState) -> None:
+    """Refuse a state in which an orientation can no longer be read, as without its cell.
+
+    Raises
+    ------
+    InputError
+    """
+    for side in "AB":
+        choice = state.orientation_of(side)
+        try:
+            live.rotation(choice, state.specimen_of(side))
+        except InputError as error:
+            raise InputError(
+                f"Orientation {side}, “{choice.text}”, could not be read any more. "
+                f"{error.message}",
+                "Say it by angles or as a matrix first.",
+            ) from None
+
+
 class Intents(QObject):
-    """What every region shares: the bench, and errors shown in place."""
+    """What every region shares: the bench, and errors shown in place.
+
+    Signals
+    -------
+    said(str)
+        A sentence about what has just been done.
+    """
+
+    said = Signal(str)
 
     def __init__(self, bench: Bench, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -65,9 +93,12 @@ class Intents(QObject):
     ) -> None:
         """Edit the bench; an input that cannot be used is refused in place."""
         try:
-            self.bench.edit(label, build(self.bench.state), merge)
+            state = build(self.bench.state)
+            check_orientations(state)
         except InputError as error:
             refuse(str(error))
+        else:
+            self.bench.edit(label, state, merge)
 
     def show_choice(self, label: str, **choices: Any) -> None:
         """Change how the bench is looked at."""
@@ -110,10 +141,14 @@ class LedgerIntents(Intents):
 
     def _paste(self, row: int, column: int, text: str) -> None:
         face = self.bench.state.display.face
+
+        def build(state: BenchState) -> BenchState:
+            specimen = edits.set_block(self.specimen, face, row, column, text)
+            self.said.emit(" ".join(edits.paste_guesses(face, text)))
+            return with_specimen(state, specimen)
+
         self.attempt(
-            lambda state: with_specimen(
-                state, edits.set_block(self.specimen, face, row, column, text)
-            ),
+            build,
             "Paste constants",
             lambda message: self._views.constants.show_error(row, column, message),
         )
@@ -132,11 +167,18 @@ class LedgerIntents(Intents):
         )
 
     def _set_cell(self, field: str, text: str) -> None:
-        texts = self._views.cell.texts()
+        """Take the cell as it stands in its six fields; one half filled in has to wait."""
+        form, texts = self._views.cell, self._views.cell.texts()
+        wanting = [_CELL_WORDS[name] for name in edits.CELL_FIELDS if not texts[name].strip()]
+        if 0 < len(wanting) < len(texts):
+            form.show_error(field, f"A cell has six numbers; {', '.join(wanting)} still wanted.")
+            return
+        for name in texts:
+            form.clear_error(name)
         self.attempt(
             lambda state: with_specimen(state, edits.set_cell(self.specimen, texts)),
             "Change the unit cell",
-            lambda message: self._views.cell.show_error(field, message),
+            lambda message: form.show_error(_field_of(message, texts, field), message),
         )
 
     def _set_axes(self, axes: str, re_express: bool) -> None:
@@ -198,6 +240,11 @@ class LedgerIntents(Intents):
                 state, orientation_a=OrientationChoice(), orientation_b=OrientationChoice()
             ),
         )
+
+
+def _field_of(message: str, fields: Iterable[str], edited: str) -> str:
+    """Return the field that a refusal names, or else the one that was edited."""
+    return next((name for name in fields if message.startswith(f"{name}: ")), edited)
 
 
 class _OrientationIntents(Intents):

@@ -154,7 +154,7 @@ def _beside(n: FloatArray, way: FloatArray, distances: FloatArray) -> FloatArray
 def _stays_closed(
     operator: FloatArray, n: FloatArray, weak: FloatArray, pair: int, largest: float
 ) -> BoolArray:
-    """Tell the points (M, 3) of lines from very flat cones: the gap is closed beside them too."""
+    """Tell points (M, 3) of lines from very flat cones: the gap is closed beside them too."""
     ends = _converge(operator, _beside(n, weak, _LINE_PROBES).reshape(-1, 3), pair)
     values = sheet_frames(operator, ends).values
     closed = values[:, pair] - values[:, pair + 1] <= _CLOSED_CURVE * largest

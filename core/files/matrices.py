@@ -1,24 +1,83 @@
-"""Foreign tables of constants: 6×6 blocks, triangles and lists as people paste them."""
+"""Foreign tables of constants: 6×6 blocks, triangles and lists as people paste them.
+
+`understand` says how it read a table, one `Guess` at a time, and asks where it cannot know;
+`read_table` is for those who have nobody to ask.
+"""
 
 from __future__ import annotations
 
-import re
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
 
-from core.arrays import FloatArray
+from core.arrays import BoolArray, FloatArray, read_only
 from core.errors import InputError
-from core.numbers import parse_number, shortened
-from core.tensor.notation import from_upper_triangle, to_gpa
+from core.files.table_cells import read_cells, read_number_rows
+from core.files.table_guess import Guess, RawTable
+from core.files.table_readings import (
+    AS_LISTED,
+    read_class,
+    read_kind,
+    read_notation,
+    read_rows,
+    read_unit,
+    tensor_components,
+)
+from core.files.table_shapes import read_shape, read_symmetry
+from core.files.table_units import parse_unit
+from core.numbers import shortened, significant
+from core.tensor.notation import (
+    KELVIN_WEIGHTS,
+    SHEAR_FACTORS,
+    kelvin_to_stiffness,
+    parse_rows,
+    restore_order,
+    stiffness_to_kelvin,
+)
 from core.tensor.stiffness import Stiffness
+from core.tensor.symmetry import complete, crystal_class
 
-LONGEST_TEXT = 1_000_000  # characters; a 6x6 table has some hundreds
-_COMMENT = re.compile(r"\s*(#|%|!|//)")
-_SEPARATOR = re.compile(r"[\s;&|]+")
-_NAMED = re.compile(r"([CcSs])[_{]*([1-6])\s*,?\s*([1-6])\}?\s*[=:]\s*([^\s,;]+)")
-_TRIANGLE_UP = [6, 5, 4, 3, 2, 1]
-_TRIANGLE_DOWN = [1, 2, 3, 4, 5, 6]
+__all__ = ["FIELDS", "ForeignTable", "Guess", "Understood", "read_block", "read_table",
+           "understand"]
+
+FIELDS = ("shape", "symmetry", "kind", "unit", "rows", "notation", "class")
+"""What can be understood of a table, and chosen by hand."""
+
+_WEIGHTS = np.outer(KELVIN_WEIGHTS, KELVIN_WEIGHTS)
+_SEVERAL = 4  # cells named one by one in a note; more are counted
+
+
+@dataclass(frozen=True, eq=False)
+class Understood:
+    """A foreign table in our units, order and notation, and how it was read.
+
+    Attributes
+    ----------
+    stiffness : ndarray, shape (6, 6)
+        GPa, Voigt, order 11, 22, 33, 23, 13, 12; the axes are the table's own. While a
+        question is open it is a preview of the likeliest reading.
+    std : ndarray, shape (6, 6), or None
+        Standard uncertainties, GPa; None where none is written.
+    readings : tuple of Guess
+        How each thing was understood, in the order of `FIELDS`.
+    notes : tuple of str
+        What is odd about the table but does not stop it.
+    """
+
+    stiffness: FloatArray
+    std: FloatArray | None
+    readings: tuple[Guess, ...]
+    notes: tuple[str, ...]
+
+    @property
+    def questions(self) -> tuple[str, ...]:
+        """What must be answered, by an override, before the table is used."""
+        return tuple(guess.question for guess in self.readings if guess.question)
+
+    def reading(self, field: str) -> Guess | None:
+        """Return the reading of a field; None where there was nothing to read."""
+        return next((guess for guess in self.readings if guess.field == field), None)
 
 
 @dataclass(frozen=True, eq=False)
@@ -30,36 +89,88 @@ class ForeignTable:
     stiffness : ndarray, shape (6, 6)
         GPa, Voigt order 11, 22, 33, 23, 13, 12.
     guesses : tuple of str
-        Sentences: what was taken for granted, and why.
+        Sentences: what was taken for granted, and why; and what is odd.
+    std : ndarray, shape (6, 6), or None
+        Standard uncertainties, GPa.
     """
 
     stiffness: FloatArray
     guesses: tuple[str, ...]
+    std: FloatArray | None = None
+
+
+def understand(
+    text: str, overrides: Mapping[str, str] | None = None, where: str = ""
+) -> Understood:
+    """Return the stiffness that a text holds, and how the text was read.
+
+    Read are a whole 6×6, a triangle, 21 numbers in a row, lists such as ``C11 = 168.4(3)``
+    and rows typeset with LaTeX; stiffnesses or compliances in any usual unit, with the order
+    of the rows as a heading or the labels say, in Voigt's or Kelvin's notation.
+
+    Parameters
+    ----------
+    text : str
+    overrides : mapping of str to str, optional
+        Fields of `FIELDS` and what the user chose for them.
+    where : str
+        The file it comes from, for messages.
+
+    Raises
+    ------
+    InputError
+        For a text that is no table, naming the line and why; for a choice that does not
+        exist; for compliances without an inverse.
+    ValueError
+        For an override of a field that does not exist.
+    """
+    chosen = dict(overrides or {})
+    unknown = set(chosen) - set(FIELDS)
+    if unknown:
+        raise ValueError(f"no reading of a table is called {', '.join(sorted(unknown))}")
+    table = read_cells(text, where)
+    raw, shape = read_shape(table, chosen.get("shape"), where)
+    raw, symmetry = read_symmetry(raw, chosen.get("symmetry"))
+    kind = read_kind(table, raw, chosen.get("kind"))
+    unit = read_unit(table, raw, kind.value, chosen.get("unit"))
+    rows = read_rows(table, raw, kind.value, chosen.get("rows"))
+    notation = read_notation(table, raw, kind.value, rows.value, chosen.get("notation"))
+    components = tensor_components(raw.values, kind.value, rows.value, notation.value)
+    listed = None
+    if np.isnan(components).any():
+        components, listed = read_class(components, chosen.get("class"), where)
+    factor = parse_unit(unit.value).factor
+    is_compliance = kind.value == "compliance"
+    stiffness = _stiffness(components * factor, is_compliance)
+    std = None
+    if raw.has_sigmas:
+        sigmas = factor * _component_sigmas(raw, is_compliance, rows.value, notation.value)
+        std = read_only(_std(sigmas, stiffness if is_compliance else None, listed))
+    found = (shape, symmetry, kind, unit, rows, notation, listed)
+    readings = tuple(guess for guess in found if guess is not None)
+    notes = _notes(table.headings, raw, kind.value, stiffness)
+    return Understood(stiffness.voigt, std, readings, notes)
 
 
 def read_table(text: str, where: str = "") -> ForeignTable:
     """Return the stiffness that a text table holds, and what was guessed about it.
 
-    Read are a full 6×6, an upper or a lower triangle, 21 numbers along the upper triangle by
-    rows, and lists such as ``C11 = 168.4``; comment lines start with #, %, ! or //.
-
     Raises
     ------
     InputError
-        Naming the line that is no part of a table, or the shape that was found.
+        Naming the line that is no part of a table, the shape that was found, or the question
+        that only the user can answer.
     """
-    if len(text) > LONGEST_TEXT:
-        raise InputError(f"The text has {len(text):,} characters; a table has some hundreds.",
-                         where=where)
-    matrix, guesses = _named_list(text, where) or _block_table(text, where)
-    factor_guess = _guess_units(matrix)
-    if factor_guess is not None:
-        matrix = to_gpa(matrix, factor_guess[0])
-        guesses = (*guesses, factor_guess[1])
-    else:
-        guesses = (*guesses, "values taken as GPa")
-    guesses = (*guesses, "rows taken in the order 11 22 33 23 13 12")
-    return ForeignTable(Stiffness.from_voigt(matrix).voigt, guesses)
+    known = understand(text, where=where)
+    asked = next((guess for guess in known.readings if guess.question), None)
+    if asked is not None:
+        raise InputError(asked.question, f"Say so in the text; {asked.field} can be "
+                         f"{', '.join(asked.choices)}.", where)
+    guesses = tuple(
+        f"{guess.field} taken as {guess.value}: {guess.reason}"
+        for guess in known.readings if guess.is_guess
+    )
+    return ForeignTable(known.stiffness, guesses + known.notes, known.std)
 
 
 def read_block(text: str, where: str = "") -> list[list[float]]:
@@ -70,7 +181,7 @@ def read_block(text: str, where: str = "") -> list[list[float]]:
     InputError
         Naming the row and the column of what is not a number, or ragged rows.
     """
-    rows = _number_rows(text, where)
+    rows = read_number_rows(text, where)
     if not rows:
         raise InputError("There are no numbers in what was pasted.", where=where)
     lengths = {len(row) for row in rows}
@@ -81,77 +192,85 @@ def read_block(text: str, where: str = "") -> list[list[float]]:
     return rows
 
 
-def _number_rows(text: str, where: str) -> list[list[float]]:
-    rows = []
-    for number, line in enumerate(text.splitlines(), start=1):
-        if not line.strip() or _COMMENT.match(line):
+def _stiffness(components: FloatArray, is_compliance: bool) -> Stiffness:
+    """Return the stiffness of tensor components in GPa, or of compliances in 1/GPa."""
+    if not is_compliance:
+        return Stiffness.from_voigt(components)
+    return Stiffness.from_compliance(components * np.outer(SHEAR_FACTORS, SHEAR_FACTORS))
+
+
+# ------------------------------------------------------------------- uncertainties
+def _component_sigmas(
+    raw: RawTable, is_compliance: bool, rows: str, notation: str
+) -> FloatArray:
+    """Return the sizes of the uncertainties of tensor components, in the table's unit."""
+    sigmas = restore_order(np.abs(raw.sigmas), parse_rows(rows))
+    if notation == "Kelvin":
+        return sigmas / _WEIGHTS
+    return sigmas / np.outer(SHEAR_FACTORS, SHEAR_FACTORS) if is_compliance else sigmas
+
+
+def _std(sigmas: FloatArray, inverse: Stiffness | None, listed: Guess | None) -> FloatArray:
+    """Return the standard uncertainties of the stiffnesses, GPa.
+
+    What was written is taken as independent. Dependent constants of a list follow those it
+    names; those of a compliance go through δC = −C δS C (Kelvin form), to first order.
+    """
+    variances = np.zeros((6, 6))
+    for (i, j), slope in _free_constants(listed):
+        if sigmas[i, j] == 0:
             continue
-        rows.append([
-            parse_number(word, f"{where}{', ' if where else ''}line {number}, number {k}")
-            for k, word in enumerate(_words(line), start=1)
-        ])
-    return rows
+        change = slope
+        if inverse is not None:
+            kelvin = inverse.kelvin
+            change = kelvin_to_stiffness(kelvin @ stiffness_to_kelvin(slope) @ kelvin)
+        variances += (change * sigmas[i, j]) ** 2
+    std: FloatArray = np.sqrt(variances)
+    return std
 
 
-def _words(line: str) -> list[str]:
-    """Split a line: at blanks, semicolons, & or |; else at commas."""
-    stripped = line.strip().rstrip("\\").strip().strip(";,[](){}")
-    words = [word.strip(",[](){}") for word in _SEPARATOR.split(stripped)]
-    words = [word for word in words if word]
-    if len(words) == 1 and stripped.count(",") > 1:
-        words = [word.strip() for word in stripped.split(",")]
-    return words
+def _free_constants(listed: Guess | None) -> list[tuple[tuple[int, int], FloatArray]]:
+    """Return the cells that vary by themselves, and how the table follows each."""
+    if listed is None or listed.value == AS_LISTED:
+        cells = [(i, j) for i in range(6) for j in range(i, 6)]
+        cls = crystal_class("triclinic")
+    else:
+        cls = crystal_class(*listed.value.split())
+        cells = list(cls.independent)
+    slopes = []
+    for cell in cells:
+        unit = np.zeros((6, 6))
+        unit[cell] = 1.0
+        slopes.append((cell, complete(unit, cls)))
+    return slopes
 
 
-def _block_table(text: str, where: str) -> tuple[FloatArray, tuple[str, ...]]:
-    rows = _number_rows(text, where)
-    lengths = [len(row) for row in rows]
-    numbers = [x for row in rows for x in row]
-    if lengths == [6] * 6:
-        return np.array(rows), ()
-    if lengths == _TRIANGLE_UP:
-        return from_upper_triangle(numbers), ("read as the upper triangle, row by row",)
-    if lengths == _TRIANGLE_DOWN:
-        matrix = np.zeros((6, 6))
-        matrix[np.tril_indices(6)] = numbers
-        full = matrix + np.tril(matrix, -1).T
-        return full, ("read as the lower triangle, row by row",)
-    if len(numbers) == 21:
-        return from_upper_triangle(numbers), ("21 numbers read along the upper triangle",)
-    if len(numbers) == 36:
-        return np.array(numbers).reshape(6, 6), ("36 numbers read as six rows of six",)
-    raise InputError(
-        f"{len(numbers)} numbers in {len(rows)} rows are no table of constants.",
-        "A 6×6, a triangle, 21 numbers or a list such as C11 = 168.4 was expected.", where)
+# --------------------------------------------------------------------------- notes
+def _notes(
+    headings: tuple[tuple[int, str], ...], raw: RawTable, kind: str, stiffness: Stiffness
+) -> tuple[str, ...]:
+    notes = [f"Line {line}, “{shortened(text, 60)}”, was taken as a heading."
+             for line, text in headings if text]
+    letter = "S" if kind == "compliance" else "C"
+    upper = np.triu(np.ones((6, 6), dtype=bool))
+    negative = upper & (raw.sigmas < 0)
+    large = upper & (np.abs(raw.sigmas) > np.abs(np.nan_to_num(raw.values)))
+    if negative.any():
+        notes.append(f"The uncertainty of {_cells(negative, letter)} is negative; its size is "
+                     "kept.")
+    if large.any():
+        notes.append(f"The uncertainty of {_cells(large, letter)} is larger than the value; it "
+                     "is kept.")
+    if not stiffness.is_stable:
+        softest = significant(float(stiffness.eigenstiffness[0]), 3)
+        notes.append(f"As read the crystal is not stable: its softest strain has a stiffness "
+                     f"of {softest} GPa.")
+    return tuple(notes)
 
 
-def _named_list(text: str, where: str) -> tuple[FloatArray, tuple[str, ...]] | None:
-    """Return the matrix of a list ``C11 = …``; None when the text is no such list."""
-    found = _NAMED.findall(text)
-    if not found:
-        return None
-    if any(letter in "Ss" for letter, *_ in found):
-        raise InputError("The list names compliances (S); stiffnesses (C) were expected.",
-                         where=where)
-    matrix = np.full((6, 6), np.nan)
-    for _, row, column, word in found:
-        i, j = sorted((int(row) - 1, int(column) - 1))
-        value = parse_number(word, f"{where}{', ' if where else ''}C{row}{column}")
-        if np.isfinite(matrix[i, j]) and matrix[i, j] != value:
-            raise InputError(
-                f"C{i + 1}{j + 1} is given twice: {matrix[i, j]:g} and {shortened(word)}.",
-                where=where)
-        matrix[i, j] = matrix[j, i] = value
-    missing = int(np.isnan(matrix[np.triu_indices(6)]).sum())
-    guesses = (f"{missing} constants that the list does not name taken as zero",)
-    return np.nan_to_num(matrix), guesses if missing else ()
-
-
-def _guess_units(matrix: FloatArray) -> tuple[str, str] | None:
-    """Return a unit and the reason for it where the size of the numbers speaks against GPa."""
-    largest = float(np.abs(matrix).max())
-    for unit, low, high in (("Pa", 1e8, 1e13), ("kbar", 3e3, 3e4), ("MPa", 3e4, 1e7),
-                            ("Mbar", 0.0, 0.05)):
-        if low < largest <= high:
-            return unit, f"values taken as {unit}: the largest is {largest:.4g}"
-    return None
+def _cells(mask: BoolArray, letter: str) -> str:
+    """Return the names of marked cells of the table as written: "C12, C13 and 4 more"."""
+    names = [f"{letter}{i + 1}{j + 1}" for i, j in np.argwhere(mask)]
+    if len(names) > _SEVERAL:
+        return f"{', '.join(names[:_SEVERAL])} and {len(names) - _SEVERAL} more"
+    return ", ".join(names)

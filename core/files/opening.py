@@ -8,7 +8,8 @@ from pathlib import Path
 
 from core import limits
 from core.files import bench, specimen
-from core.files.matrices import read_table
+from core.files.matrices import read_table, understand
+from core.files.table_readings import AS_LISTED
 from core.files.text import read_text
 from core.state import BenchState, Specimen, as_matrix
 
@@ -56,6 +57,25 @@ def open_file(path: Path) -> Opened:
 def _open_table(text: str, path: Path) -> Opened:
     """Return the specimen of a text table, named after its file."""
     table = read_table(text, path.name)
-    stiffness = limits.stiffness(table.stiffness, path.name)
-    known = Specimen(path.stem, as_matrix(stiffness), source=f"read from {path.name}")
+    key, axis = _listed_class(text)
+    known = Specimen(
+        name=path.stem,
+        stiffness=as_matrix(limits.stiffness(table.stiffness, path.name)),
+        crystal_class=key,
+        unique_axis=axis,
+        source=f"read from {path.name}",
+        stiffness_std=None if table.std is None else as_matrix(table.std),
+    )
     return Opened(known, guesses=table.guesses)
+
+
+def _listed_class(text: str) -> tuple[str, str]:
+    """Return the class and unique axis that a list of named constants is one of.
+
+    Triclinic where no class was recognised: nothing more is claimed than was written.
+    """
+    reading = understand(text).reading("class")
+    if reading is None or reading.value == AS_LISTED:
+        return "triclinic", "y"
+    key, *axis = reading.value.split()
+    return key, axis[0] if axis else "y"

@@ -7,13 +7,15 @@ a cell is, nor its unit. Every fault names its line.
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from core.errors import InputError
 from core.numbers import parse_number, shortened
 from core.tensor.notation import parse_rows
 
 LONGEST_TEXT = 100_000  # characters; a table with uncertainties has some hundreds
+
+_LARGEST_NUMBER = 1e30  # diamond is 1e13 in dyn/cm²
 
 Cell = tuple[int, int]
 
@@ -70,8 +72,8 @@ class TableText:
     rows : tuple of Row
     named : tuple of Named
         Either these or `rows`, never both.
-    headings : tuple of (int, str)
-        Lines without data, and comments, with their numbers; hints are sought in them.
+    headings, comments : tuple of (int, str)
+        Lines without data, with their numbers; hints are sought in both.
     stray : tuple of str
         What stands beside the numbers of data lines: units in lists.
     order : str
@@ -81,16 +83,24 @@ class TableText:
     rows: tuple[Row, ...]
     named: tuple[Named, ...]
     headings: tuple[tuple[int, str], ...]
-    stray: tuple[str, ...]
-    order: str
+    comments: tuple[tuple[int, str], ...]
+    stray: tuple[str, ...] = ()
+    order: str = ""
+
+    @property
+    def words(self) -> list[tuple[int, str]]:
+        """Headings and comments in the order of their lines."""
+        return sorted([*self.headings, *self.comments])
 
 
 _COMMENT = re.compile(r"\s*(?:#|(?<!\\)%|!|//)\s*(.*)")
 _LATEX: tuple[tuple[re.Pattern[str], str], ...] = tuple(
     (re.compile(pattern), replacement)
     for pattern, replacement in (
+        (r"\$-\$|\{-\}", "-"),
         (r"\\(?:begin|end)\s*\{[^}]*\}(?:\[[^\]]*\])?(?:\{[^}]*\})?", " "),
         (r"\\(?:hline|toprule|midrule|bottomrule|left|right|[bB]igg?[lr]?)(?![A-Za-z])", " "),
+        (r"\\(?:caption|centering|footnotesize|small)(?![A-Za-z])", " "),
         (r"\\cline\s*\{[^}]*\}|\\phantom\s*\{[^}]*\}", " "),
         (r"\\(?:num|mathrm|mathit|text|textbf|mathbf|boldsymbol)\s*\{([^}]*)\}", r"\1"),
         (r"\\pm(?![A-Za-z])", "±"),
@@ -102,12 +112,17 @@ _LATEX: tuple[tuple[re.Pattern[str], str], ...] = tuple(
 _WRAPPERS = re.compile(
     r"(?:[A-Za-z_][\w.]*\s*:?=\s*)?(?:[\w.]*(?:array|matrix)\s*\(\s*)?(?=[\[({])", re.IGNORECASE
 )
-_ROW_ENDS = re.compile(r"\\\\(?:\[[^\]]*\])?|[\]})]\s*[,;]?\s*(?=[\[{(])")
+_LATEX_ROW_ENDS = re.compile(r"\\\\(?:\[[^\]]*\])?")
+_ROW_ENDS = re.compile(r"[\]})]\s*[,;]?\s*(?=[\[{(])")
 _BLANKS = {"", "sym", "sym.", "symm", "symm.", "symmetric", "·", ".", "..", "...", "…", "—",
            "-", "--", "*"}
 _SEPARATED = re.compile(r"[\s;&|]+")
 _NUMBERLIKE = re.compile(r"[(+-]*\.?\d")
-_NAME = re.compile(r"([CcSs])\s*_?\s*\{?\s*([1-6])\s*,?\s*([1-6])\s*\}?(?![\d.])")
+_NAME = re.compile(
+    r"([CcSs])(?:\^\{?[A-Z]\}?)?\s*_?\s*\{?\s*([1-6])\s*,?\s*([1-6])\s*\}?"
+    r"(?:\s*\^\s*\{?[A-Z]\}?)?(?![\d.])"
+)
+_SUBSCRIPTS = str.maketrans("₁₂₃₄₅₆", "123456")
 _LABEL = re.compile(r"[xyz]{2}|[XYZ]{2}")
 _WITH_SIGMA = re.compile(
     r"\(?(?P<value>[^±()]+?)(?:\((?P<last>[^()]*)\))?(?:±(?P<sigma>[^±()]+))?\)?"
@@ -129,11 +144,12 @@ def read_cells(text: str, where: str = "") -> TableText:
     if len(text) > LONGEST_TEXT:
         raise InputError(f"The text has {len(text):,} characters; a table has some hundreds.",
                          where=where)
-    pieces, headings = _pieces(text)
+    pieces, comments = _pieces(text)
     if any(_names_value(piece) for _, piece in pieces):
-        return _named_text(pieces, headings, where)
-    headed = _named_columns(pieces, headings, where)
-    return headed if headed is not None else _block_text(pieces, headings, where)
+        table = _named_text(pieces, where)
+    else:
+        table = _named_columns(pieces, where) or _block_text(pieces, where)
+    return replace(table, comments=tuple(comments))
 
 
 def place(where: str, line: int) -> str:
@@ -146,7 +162,7 @@ def _pieces(text: str) -> tuple[list[tuple[int, str]], list[tuple[int, str]]]:
     """Return what may be data, row by row, and the comments, each with its line."""
     plain = text.replace("\N{NO-BREAK SPACE}", " ").replace("\ufeff", "")
     plain = plain.replace("\N{MINUS SIGN}", "-").replace("\N{EN DASH}", "-")
-    plain = re.sub(r"\+/-|\+-", "±", plain)
+    plain = re.sub(r"\+/-|\+-", "±", plain).translate(_SUBSCRIPTS)
     pieces, comments = [], []
     for line, content in enumerate(plain.splitlines(), start=1):
         data = content
@@ -162,7 +178,7 @@ def _row_parts(content: str) -> list[str]:
     """Split a line where a row ends in it, and drop brackets and typesetting."""
     row = content
     if "\\" in row or "$" in row or "~" in row:
-        row = "\n".join(_without_latex(part) for part in _ROW_ENDS.split(row))
+        row = "\n".join(_without_latex(part) for part in _LATEX_ROW_ENDS.split(row))
     elif "[" in row or "{" in row or "((" in row:
         row = "\n".join(_ROW_ENDS.split(_WRAPPERS.sub("", row, count=1)))
     parts = []
@@ -203,14 +219,12 @@ def _names_value(piece: str) -> bool:
         return False
     before, after = piece[: found.start()], piece[found.end():]
     starts = not before or not (before[-1].isalnum() or before[-1] == "_")
-    return starts and re.match(r"\s*[=:≈]|\s+[(+-]?\.?\d|\t", after) is not None
+    return starts and re.match(r"\s*[=:≈]|\s*[\s,;|&]\s*[(+-]?\.?\d", after) is not None
 
 
-def _named_text(
-    pieces: list[tuple[int, str]], headings: list[tuple[int, str]], where: str
-) -> TableText:
+def _named_text(pieces: list[tuple[int, str]], where: str) -> TableText:
     named: list[Named] = []
-    stray = []
+    headings, stray = [], []
     for line, piece in pieces:
         if _names_value(piece):
             found, rest = _named_items(piece, line, where)
@@ -222,7 +236,7 @@ def _named_text(
             raise InputError(
                 f"“{shortened(piece)}” stands in a list of named constants without a name.",
                 "Write for example C11 = 168.4.", place(where, line))
-    return TableText((), tuple(named), tuple(sorted(headings)), tuple(stray), "")
+    return TableText((), tuple(named), tuple(headings), (), tuple(stray))
 
 
 def _named_items(piece: str, line: int, where: str) -> tuple[list[Named], list[str]]:
@@ -256,9 +270,7 @@ def _named_items(piece: str, line: int, where: str) -> tuple[list[Named], list[s
     return found, [" ".join(stray)] if stray else []
 
 
-def _named_columns(
-    pieces: list[tuple[int, str]], headings: list[tuple[int, str]], where: str
-) -> TableText | None:
+def _named_columns(pieces: list[tuple[int, str]], where: str) -> TableText | None:
     """Return named constants from a line of names above a line of numbers; None if not so."""
     for index, (_, piece) in enumerate(pieces[:-1]):
         words = [word for word in re.split(r"[\s;&|,]+", piece) if word]
@@ -276,15 +288,17 @@ def _named_columns(
             for name, cell in zip(names, cells, strict=True) if name is not None
         )
         others = [*pieces[:index], *pieces[index + 2:]]
-        return TableText((), named, tuple(sorted(headings + others)), (), "")
+        for other, words_there in others:
+            if not _is_heading(words_there):
+                raise InputError("Below the names of constants one row of numbers was "
+                                 "expected.", where=place(where, other))
+        return TableText((), named, tuple(others), ())
     return None
 
 
 # -------------------------------------------------------------------------- blocks
-def _block_text(
-    pieces: list[tuple[int, str]], headings: list[tuple[int, str]], where: str
-) -> TableText:
-    body = _body(pieces, headings, where)
+def _block_text(pieces: list[tuple[int, str]], where: str) -> TableText:
+    body, headings = _body(pieces, where)
     table = _split([piece for _, piece in body])
     lines = [line for line, _ in body]
     order, table, lines = _without_labels(table, lines)
@@ -296,31 +310,29 @@ def _block_text(
             for k, word in enumerate(words, start=1)
         )
         rows.append(Row(line, cells))
-    return TableText(tuple(rows), (), tuple(sorted(headings)), (), order)
+    return TableText(tuple(rows), (), tuple(headings), (), order=order)
 
 
 def _body(
-    pieces: list[tuple[int, str]], headings: list[tuple[int, str]], where: str
-) -> list[tuple[int, str]]:
-    """Return the pieces from the first row of numbers to the last; the others are headings."""
+    pieces: list[tuple[int, str]], where: str
+) -> tuple[list[tuple[int, str]], list[tuple[int, str]]]:
+    """Return the pieces from the first row of numbers to the last, and the others."""
     is_heading = [_is_heading(piece) for _, piece in pieces]
     if all(is_heading):
-        begins = f" Line {pieces[0][0]} reads “{shortened(pieces[0][1], 40)}”." if pieces else ""
-        raise InputError(f"There are no numbers in the text.{begins}",
+        begins = [f" Line {line} reads “{shortened(words, 40)}”." for line, words in pieces[:1]]
+        raise InputError(f"There are no numbers in the text.{''.join(begins)}",
                          "A 6×6, a triangle, 21 numbers or a list such as C11 = 168.4 was "
                          "expected.", where)
     first = is_heading.index(False)
     last = len(pieces) - is_heading[::-1].index(False)
+    body = []
     for (line, piece), heading in zip(pieces[first:last], is_heading[first:last], strict=True):
-        if heading and piece.strip(" \t&,;|").lower() not in _BLANKS:
+        if not heading:
+            body.append((line, piece))
+        elif piece.strip(" \t&,;|").lower() not in _BLANKS:
             raise InputError(f"“{shortened(piece, 40)}” stands between the rows of numbers and "
                              "is none itself.", where=place(where, line))
-    headings += [*pieces[:first], *pieces[last:]]
-    return [
-        (line, piece)
-        for (line, piece), heading in zip(pieces[first:last], is_heading[first:last],
-                                          strict=True) if not heading
-    ]
+    return body, [*pieces[:first], *pieces[last:]]
 
 
 def _is_heading(piece: str) -> bool:
@@ -414,6 +426,9 @@ def _number(word: str, where: str) -> Number:
         raise InputError(f"“{shortened(word)}” is not a number.", where=where)
     power = shape["exponent"] or ""
     value = parse_number(shape["value"] + power, where)
+    if abs(value) > _LARGEST_NUMBER:
+        raise InputError(f"“{shortened(word)}” is too large for a constant in any unit.",
+                         where=where)
     if shape["sigma"]:
         return Number(value, parse_number(shape["sigma"] + power, where))
     if shape["last"] is None:
@@ -426,3 +441,23 @@ def _number(word: str, where: str) -> Number:
     elif power:
         sigma *= float(f"1e{power[1:]}")
     return Number(value, sigma)
+
+
+def read_number_rows(text: str, where: str = "") -> list[list[float]]:
+    """Return the numbers of every line that is no comment, of any count, without meaning.
+
+    Raises
+    ------
+    InputError
+        Naming the line and the place in it of what is not a number.
+    """
+    if len(text) > LONGEST_TEXT:
+        raise InputError(f"What was pasted has {len(text):,} characters; a block of constants "
+                         "has some hundreds.", where=where)
+    pieces, _ = _pieces(text)
+    return [
+        [_number(word, f"{place(where, line)}, number {k}").value
+         for k, word in enumerate(words, start=1)]
+        for (line, _), words in zip(pieces, _flexible_cells([piece for _, piece in pieces]),
+                                    strict=True)
+    ]

@@ -7,7 +7,7 @@ import re
 from dataclasses import dataclass
 
 from core.errors import InputError
-from core.tensor.notation import UNITS
+from core.tensor.notation import UNITS, parse_rows
 
 KINDS = ("stiffness", "compliance")
 
@@ -60,7 +60,7 @@ _KIND_WORDS: tuple[tuple[str, str], ...] = (
 _KELVIN_WORDS = re.compile(r"kelvin|mandel", re.IGNORECASE)
 _VOIGT_WORDS = re.compile(r"voigt", re.IGNORECASE)
 _ORDER = re.compile(
-    r"(?:(?<![\w.])(?:[1-3]{2}|[xyz]{2}|[XYZ]{2})(?![\w.])[\s,;/]*){6}"
+    r"(?:(?<![\w.])(?:[1-3]{2}|[xyz]{2}|[XYZ]{2})(?![\w.])[\s,;/]*){6}(?!\d)"
 )
 
 
@@ -125,7 +125,14 @@ def find_notation(text: str) -> str | None:
 def find_order(text: str) -> str | None:
     """Return the six index pairs that words about a table list, as written; None if none."""
     found = _ORDER.search(text)
-    return None if found is None else found.group(0).strip(" ,;/")
+    if found is None:
+        return None
+    order = found.group(0).strip(" ,;/")
+    try:
+        parse_rows(order.replace("/", " "))
+    except InputError:  # six numbers that are no order: a list of constants, say
+        return None
+    return order.replace("/", " ")
 
 
 def _plain(text: str) -> str:

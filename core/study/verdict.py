@@ -112,10 +112,11 @@ def _facts(
     softest = significant(least, 3) if not sigma else with_deviation(least, sigma)
     facts = [f"softest strain {softest} GPa ({stability.descriptions[0]})"]
     off = distance(stiffness.voigt, claimed)
+    form = claimed.name.replace(",", " with")  # "tetragonal with 6 constants"
     if off > NOTABLE_DISTANCE:
-        facts.append(f"{significant(100 * off, 2)} % away from {claimed.name} in these axes")
+        facts.append(f"{significant(100 * off, 2)} % away from {form} in these axes")
     else:
-        facts.append(f"{claimed.name} as entered")
+        facts.append(f"{form} as entered")
     if stability.stable:
         hill = averages(stiffness).hill
         index = anisotropy(stiffness, claimed.key == "cubic").universal

@@ -14,7 +14,13 @@ from core.arrays import FloatArray
 from core.errors import InputError
 from core.tensor.notation import kelvin_rotation
 from core.tensor.stiffness import Stiffness
-from core.tensor.symmetry import CrystalClass, crystal_class, kelvin_projector
+from core.tensor.symmetry import (
+    CLASS_KEYS,
+    CrystalClass,
+    crystal_class,
+    distance,
+    kelvin_projector,
+)
 
 CHAINS: dict[str, tuple[str, ...]] = {
     "orthorhombic": ("isotropic", "hexagonal", "tetragonal_6", "orthorhombic", "monoclinic",
@@ -88,6 +94,39 @@ def kelvin_function(kelvin: FloatArray, function: _Function) -> FloatArray:
     values, vectors = np.linalg.eigh(kelvin)
     result: FloatArray = (vectors * function(values)) @ vectors.T
     return (result + result.T) / 2
+
+
+def simplest_class(matrix: FloatArray, tolerance: float) -> tuple[CrystalClass, float]:
+    """Return the class of fewest constants that a table is near to, about the given axes.
+
+    Parameters
+    ----------
+    matrix : ndarray, shape (6, 6)
+        Stiffness, Voigt.
+    tolerance : float
+        The largest relative distance (Kelvin) that counts as near.
+
+    Returns
+    -------
+    CrystalClass, float
+        The class, monoclinic with whichever axis is nearest, and the relative distance; of
+        classes with as many constants the nearer one. Triclinic at the worst.
+    """
+    near = [
+        (len(cls.independent), off, cls)
+        for cls, off in (nearest_setting(matrix, key) for key in CLASS_KEYS)
+        if off <= tolerance or cls.key == "triclinic"
+    ]
+    _, off, cls = min(near, key=lambda row: row[:2])
+    return cls, off
+
+
+def nearest_setting(matrix: FloatArray, key: str) -> tuple[CrystalClass, float]:
+    """Return a class with its relative distance; monoclinic about the nearest of x, y and z."""
+    settings = [crystal_class(key, axis) for axis in ("yzx" if key == "monoclinic" else "y")]
+    offs = [distance(matrix, cls) for cls in settings]
+    nearest = int(np.argmin(offs))
+    return settings[nearest], offs[nearest]
 
 
 def log_distance(

@@ -36,7 +36,7 @@ _ROUGH = 1e-3  # radians, and of ‖C‖: where the first search leaves off
 _LEAST_GAIN = 1e-14  # of the rest squared: what a Newton step must promise to be made
 _FLATTEST = 1e-6  # of the largest curvature: in flatter directions steps are held back
 _ALIKE = 1e-9  # of ‖C‖: rests that differ by less are the same minimum
-_FREE = 1e-9  # of the steepest: flatter turns are free in the class
+_FLAT = 1e-9  # of ‖C‖: residuals that change less with a turn do not fix it
 
 # The seven-constant classes are the six-constant ones turned about z, so their hidden axes are
 # the same search; it is done in the class without a free turn.
@@ -181,7 +181,7 @@ def _descend(
     live = np.arange(len(starts))
     for _ in range(_ITERATIONS):
         steps = _steps(residual, slopes, damping[live])
-        trials = _exponential(steps) @ rotations[live]
+        trials = exponential(steps) @ rotations[live]
         new_residual, new_slopes = _residuals(kelvin, cls, trials)
         new_rests = (new_residual * new_residual).sum(axis=1)
         better = new_rests <= rests[live]
@@ -212,7 +212,7 @@ def _settle(
         steps = _shortened(-(vectors @ along[:, :, None])[..., 0], reach)
         if (-(gradient * steps).sum(axis=1) <= _LEAST_GAIN * rests + _LEAST_GAIN**2).all():
             break
-        trials = _exponential(steps) @ rotations
+        trials = exponential(steps) @ rotations
         new = _expansion(kelvin, cls, trials)
         better = new[0] <= rests
         rotations[better], rests[better] = trials[better], new[0][better]
@@ -314,7 +314,7 @@ def _shortened(turns: FloatArray, reach: FloatArray) -> FloatArray:
     return turns * shares[:, None]
 
 
-def _exponential(turns: FloatArray) -> FloatArray:
+def exponential(turns: FloatArray) -> FloatArray:
     """Return the rotations (M, 3, 3) by rotation vectors (M, 3), Rodrigues' formula."""
     angles = np.maximum(np.sqrt((turns * turns).sum(axis=1)), 1e-12)[:, None, None]
     cross = _cross(turns)
@@ -355,7 +355,7 @@ def _spread_rotations() -> FloatArray:
     quaternions /= np.linalg.norm(quaternions, axis=1, keepdims=True)
     half_angles = np.arccos(np.clip(quaternions[:, 0], -1.0, 1.0))
     axes = quaternions[:, 1:] / np.linalg.norm(quaternions[:, 1:], axis=1, keepdims=True)
-    return read_only(_exponential(2 * half_angles[:, None] * axes))
+    return read_only(exponential(2 * half_angles[:, None] * axes))
 
 
 # --------------------------------------------------------------------- least turn
@@ -367,7 +367,7 @@ def _least_turn(rotations: FloatArray, stiffness: Stiffness, cls: CrystalClass) 
     """
     if distance(stiffness.voigt, cls) < AS_ENTERED:
         return np.eye(3)
-    free = _AXIS_NUMBER[cls.unique_axis] if cls.key == "monoclinic" else _FREE_AXIS.get(cls.key)
+    free = _free_axis(cls)
     if free is not None:
         candidates = np.array([turn_onto(rotation[free], free) for rotation in rotations])
     else:
@@ -377,6 +377,13 @@ def _least_turn(rotations: FloatArray, stiffness: Stiffness, cls: CrystalClass) 
     first = int(np.argmax(cosines > cosines.max() - 1e-9))
     chosen: FloatArray = candidates[first]
     return chosen
+
+
+def _free_axis(cls: CrystalClass) -> int | None:
+    """Return the coordinate axis about which turns lead from the class to itself, if any."""
+    if cls.key == "monoclinic":
+        return _AXIS_NUMBER[cls.unique_axis]
+    return _FREE_AXIS.get(cls.key)
 
 
 @lru_cache(maxsize=32)
@@ -392,7 +399,7 @@ def _self_rotations(cls: CrystalClass) -> FloatArray:
         return laue_rotations(crystal_class("hexagonal"))
     group = laue_rotations(cls)
     if cls.key == "tetragonal_6":
-        eighth = _exponential(np.array([[0.0, 0.0, np.pi / 4]]))
+        eighth = exponential(np.array([[0.0, 0.0, np.pi / 4]]))
         group = np.concatenate([group, eighth @ group])
     return read_only(group)
 
@@ -448,12 +455,12 @@ def _axis_uncertainty(
     """Return the largest standard uncertainty of a turn of the axes found, degrees.
 
     First order: a change δC of the constants moves the minimum by −J⁺ δr, with J the slopes
-    of the residual r; turns that are free in the class (J flat) are left out.
+    of the residual r; turns that lead from the class to itself are left out.
     """
-    residual, slopes = _residuals(np.array(stiffness.kelvin), cls, rotation[None])
-    del residual
-    left, singular, right = np.linalg.svd(slopes[0].T, full_matrices=False)
-    fixed = singular > _FREE * np.linalg.norm(stiffness.kelvin)
+    _, slopes = _residuals(np.array(stiffness.kelvin), cls, rotation[None])
+    held = [axis for axis in range(3) if axis != _free_axis(cls)]
+    left, singular, right = np.linalg.svd(slopes[0, held].T, full_matrices=False)
+    fixed = singular > _FLAT * np.linalg.norm(stiffness.kelvin)
     if not fixed.any():
         return None
     inverse = (right[fixed].T / singular[fixed]) @ left[:, fixed].T

@@ -35,7 +35,7 @@ from gui.plots.lettering import (
     text_rect,
 )
 from gui.plots.polar import PolarGround, Rim, draw_axis_ends, polar_ground
-from gui.plots.projection import from_disc
+from core.directional.projection import from_disc
 from gui.plots.strokes import draw_curve
 from gui.theme import GREY_FOR_UNDEFINED, LIGHT, Theme, colour_table
 from gui.viewdata import HemisphereView

@@ -13,6 +13,7 @@ from core.arrays import FloatArray, IntArray
 from core.crystal.cell import CrystalFrame
 from core.crystal.directions import nearest_indices
 from core.directional.medium import Medium
+from core.directional.projection import from_disc, to_disc
 from core.directional.quantities import Quantity, quantity
 from core.directional.sphere import plane_axes, sphere_mesh
 from core.directional.waves import modes
@@ -373,13 +374,13 @@ _SIMPLE_STEPS = tuple(
 
 
 def _on_disc(direction: Vector3, projection: str) -> tuple[float, float]:
-    x, y = live.to_disc(np.array(direction).reshape(3, 1), projection)[:, 0].tolist()
+    x, y = to_disc(np.array(direction).reshape(3, 1), projection)[:, 0].tolist()
     return x, y
 
 
 def disc_direction(state: BenchState, x: float, y: float) -> Vector3:
     """Return the direction behind a point of the hemisphere, part axes."""
-    return unit_vector(live.from_disc(np.array([[x], [y]]), state.display.projection)[:, 0])
+    return unit_vector(from_disc(np.array([[x], [y]]), state.display.projection)[:, 0])
 
 
 # ------------------------------------------------------------------ sweep

@@ -54,6 +54,7 @@ from gui.viewdata import (
 
 UNITS = {"stiffness": "GPa", "compliance": "1/TPa", "uncertainty": "GPa"}
 NAMES = {"stiffness": "Stiffness", "compliance": "Compliance", "uncertainty": "Uncertainty"}
+_LIGHTEST, _HEAVIEST = 50.0, 25e3  # kg/m³: solid hydrogen has 86, osmium 22,590
 _OFF_PATTERN = 1e-6  # of the largest constant: a cell this far from its class says so
 
 
@@ -76,6 +77,8 @@ def verdict_view(specimen: Specimen) -> VerdictView:
     facts = verdict.facts
     if specimen.density is None:
         facts = (*facts, "no density: waves are off")
+    elif not _LIGHTEST <= specimen.density <= _HEAVIEST:
+        facts = (f"no crystal has a density of {significant(specimen.density)} kg/m³", *facts)
     return VerdictView(verdict.mark, verdict.headline, facts, verdict.detail)
 
 

@@ -54,11 +54,13 @@ class _Sketch:
         return picking.are_hidden(self.view, self.camera, self.size, points)
 
 
-def scene_rect(rect: QRectF, theme: Theme, scale: float = 1.0) -> QRectF:
+def scene_rect(
+    rect: QRectF, theme: Theme, scale: float = 1.0, has_bar: bool = True
+) -> QRectF:
     """Return the part of a pane the scene fills: between the title and the colour bar."""
     title = QFontMetricsF(theme.font("title", scale, bold=True)).height()
     above = math.ceil(title + 0.4 * _MARGIN * scale)
-    below = math.ceil(bar_height(theme, scale) + 6.0 * scale)
+    below = math.ceil(bar_height(theme, scale) + 6.0 * scale) if has_bar else 0
     height = max(rect.height() - above - below, 1.0)
     return QRectF(rect.left(), rect.top() + above, rect.width(), height)
 
@@ -70,6 +72,7 @@ def draw_decorations(
     camera: Camera,
     theme: Theme,
     scale: float = 1.0,
+    has_bar: bool = True,
 ) -> None:
     """Draw everything that belongs to a pane besides the scene itself.
 
@@ -81,8 +84,10 @@ def draw_decorations(
     view, camera, theme
     scale : float
         Size of text and marks; 1 on the screen.
+    has_bar : bool
+        False where one colour bar elsewhere serves several panes.
     """
-    scene = scene_rect(rect, theme, scale)
+    scene = scene_rect(rect, theme, scale, has_bar)
     size = (max(int(scene.width()), 1), max(int(scene.height()), 1))
     sketch = _Sketch(painter, view, camera, theme, scale, scene.topLeft(), size)
     painter.save()
@@ -95,7 +100,7 @@ def draw_decorations(
         _draw_letters(sketch, triad)
     _draw_notice(sketch, scene)
     painter.restore()
-    if composition.layers(view):
+    if has_bar and composition.layers(view):
         inset = _MARGIN * scale
         strip = QRectF(rect.left() + inset, scene.bottom(), rect.width() - 2 * inset,
                        rect.bottom() - scene.bottom() - 4.0 * scale)

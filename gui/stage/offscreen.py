@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from PySide6.QtCore import QRectF
+from PySide6.QtCore import QRect, QRectF
 from PySide6.QtGui import QImage, QPainter
 
 from gui.stage.camera import Camera, Size, Tile
@@ -55,19 +55,32 @@ def render_picture(
     whole = QRectF(0, 0, width, height)
     scene = scene_rect(whole, ink, scale).toRect()
     painter = QPainter(image)
-    painter.setClipRect(scene)
-    painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)
-    for tile in tiles((scene.width(), scene.height())):
-        finish = Finish(scale, tile, supersample=2)
-        part = renderer.render(
-            view, camera, (scene.width(), scene.height()), ink, ground, _SAMPLES, finish
-        )
-        painter.drawImage(scene.left() + tile[0], scene.top() + tile[1], part)
-    painter.setClipping(False)
-    painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_SourceOver)
+    paint_scene(painter, scene, view, camera, ground, ink, renderer, scale)
     draw_decorations(painter, whole, view, camera, ink, scale)
     painter.end()
     return image
+
+
+def paint_scene(
+    painter: QPainter,
+    scene: QRect,
+    view: PaneView,
+    camera: Camera,
+    ground: Ground,
+    theme: Theme,
+    renderer: Renderer,
+    scale: float,
+) -> None:
+    """Paint the scene of a pane at its best into a rectangle of a picture, tile by tile."""
+    size = (scene.width(), scene.height())
+    painter.save()
+    painter.setClipRect(scene)
+    painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)
+    for tile in tiles(size):
+        finish = Finish(scale, tile, supersample=2)
+        part = renderer.render(view, camera, size, theme, ground, _SAMPLES, finish)
+        painter.drawImage(scene.left() + tile[0], scene.top() + tile[1], part)
+    painter.restore()
 
 
 def tiles(size: Size) -> Iterator[Tile]:

@@ -59,6 +59,18 @@ class _Slot:
     lines: tuple[LineSet, ...] = ()
     lines_of: tuple[object, ...] = ()
 
+    def sheet(self, index: int) -> SurfaceItem:
+        """Return what draws one sheet. Not by setdefault: an item made in vain keeps buffers."""
+        if index not in self.sheets:
+            self.sheets[index] = SurfaceItem()
+        return self.sheets[index]
+
+    def outline(self, index: int) -> LineItem:
+        """Return what draws the section curve of one sheet."""
+        if index not in self.outlines:
+            self.outlines[index] = LineItem()
+        return self.outlines[index]
+
     def free(self) -> None:
         """Give the buffers back; the context must be current."""
         self.disc.free()
@@ -173,20 +185,21 @@ class SceneRenderer:
 
     def _draw(self, shot: _Shot) -> None:
         """Draw sheets from the inside outwards, each with its section curve, then the rest."""
-        slot = self._slots.setdefault(shot.view.side, _Slot())
+        slot = self._slots.get(shot.view.side)
+        if slot is None:
+            slot = self._slots[shot.view.side] = _Slot()
         GL.glEnable(GL.GL_DEPTH_TEST)
         GL.glDepthFunc(GL.GL_LEQUAL)
         GL.glBlendFunc(GL.GL_ONE, GL.GL_ONE_MINUS_SRC_ALPHA)
         GL.glFrontFace(GL.GL_CW)  # because the picture is upside down
         self._prepare(shot)
         for layer in composition.layers(shot.view):
-            item = slot.sheets.setdefault(layer.index, SurfaceItem())
+            item = slot.sheet(layer.index)
             item.show(layer.sheet.rows, layer.sheet.triangles)
             self._draw_sheet(shot, layer, item)
             curves = composition.outlines(shot.view, layer, shot.theme)
             if curves:
-                strokes = slot.outlines.setdefault(layer.index, LineItem())
-                self._draw_lines(shot, strokes, curves)
+                self._draw_lines(shot, slot.outline(layer.index), curves)
         self._draw_disc(shot, slot)
         key = (shot.view, shot.theme)
         if len(slot.lines_of) != 2 or any(map(_differs, slot.lines_of, key)):

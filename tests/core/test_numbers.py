@@ -3,7 +3,7 @@
 import math
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from core.errors import InputError
@@ -132,6 +132,7 @@ def test_digits_follow_the_uncertainty(value, deviation, text):
     assert with_deviation(value, deviation) == text
 
 
+@settings(deadline=None)
 @given(FINITE)
 def test_full_precision_reads_back_to_the_same_float(value):
     assert parse_number(full_precision(value)) == value
@@ -141,6 +142,7 @@ def test_undefined_values_are_copied_as_nothing():
     assert full_precision(None) == full_precision(math.nan) == full_precision(math.inf) == ""
 
 
+@settings(deadline=None)
 @given(st.one_of(st.floats(1e-4, 999_999.9), st.floats(-999_999.9, -1e-4)), st.integers(1, 12))
 def test_what_is_shown_is_right_to_half_a_unit_of_the_last_digit(value, digits):
     shown = significant(value, digits).replace("×10⁶", "e6")  # 999999.9 rounds to a million
@@ -148,6 +150,7 @@ def test_what_is_shown_is_right_to_half_a_unit_of_the_last_digit(value, digits):
     assert off <= 0.5000001 * 10.0 ** (math.floor(math.log10(abs(value))) + 1 - digits)
 
 
+@settings(deadline=None)
 @given(FINITE)
 def test_what_is_shown_has_the_digits_asked_for(value):
     text = significant(value, 5)

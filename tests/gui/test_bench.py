@@ -94,3 +94,34 @@ def test_undoing_everything_always_leads_back(steps):
     while bench.history.canUndo():
         bench.history.undo()
     assert bench.state == STATE
+
+
+def test_a_saved_step_is_not_extended(bench):
+    bench.edit("Turn", replace(STATE, cutting_error_deg=2.0), merge="drag")
+    bench.history.setClean()
+    bench.edit("Turn", replace(STATE, cutting_error_deg=3.0), merge="drag")
+    assert not bench.history.isClean()
+    bench.history.undo()
+    assert bench.state.cutting_error_deg == 2.0
+    assert bench.history.isClean()
+
+
+def test_an_undone_step_is_not_extended(bench):
+    bench.edit("One", replace(STATE, cutting_error_deg=2.0), merge="drag")
+    bench.edit("Two", replace(STATE, cutting_error_deg=3.0))
+    bench.history.undo()
+    bench.edit("One", replace(STATE, cutting_error_deg=4.0), merge="drag")
+    bench.history.undo()
+    assert bench.state.cutting_error_deg == 2.0
+
+
+def test_a_long_drag_keeps_no_step_in_memory(bench):
+    import gc
+
+    from gui.bench import _Snapshot
+
+    for k in range(500):
+        bench.edit("Turn", replace(STATE, cutting_error_deg=1.0 + k / 100), merge="long drag")
+    gc.collect()
+    kept = [o for o in gc.get_objects() if isinstance(o, _Snapshot) and o.merge == "long drag"]
+    assert len(kept) == 1

@@ -1,10 +1,10 @@
 """Which of the three waves along its normal each reading belongs to.
 
-A sheet number settles it. A polarisation settles it for a given crystal: a vector picks the wave
-that moves most nearly along it, "longitudinal" the one most nearly along the normal. What is
-left (no mark at all, or "shear") is decided among the ways that keep the order of the speeds
-along one normal, by the least squares of the residuals. Readings of nearly one speed along one
-normal are one wave measured twice and stay together.
+A sheet number settles it. A polarisation settles it for a given crystal: a vector picks the
+wave that moves most nearly along it, "longitudinal" the one most nearly along the normal. What
+is left (no mark at all, or "shear") is decided among the ways that keep the order of the speeds
+along one normal, by the least sum of squares of the residuals. Readings of nearly one speed
+along one normal are one wave measured twice and stay together.
 """
 
 from collections import defaultdict
@@ -90,8 +90,8 @@ class Assignment:
         if len(self.choices):
             cost = self._costs(survey, found, speeds, residual_unit, p)
             chosen = self._best_choices(cost)
-            given = self.choices[chosen].any(axis=1)
-            sheets = np.where(given.any(axis=2), given.argmax(axis=2), sheets)
+            given = np.any(self.choices[chosen], axis=1)
+            sheets = np.where(np.any(given, axis=2), np.argmax(given, axis=2), sheets)
         return sheets
 
     def _costs(
@@ -109,7 +109,7 @@ class Assignment:
         return np.asarray(np.moveaxis(cost, 0, 2))
 
     def _best_choices(self, cost: FloatArray) -> IntArray:
-        """Return for each crystal the index of the cheapest way at every open normal, (B, K)."""
+        """Return the index of the cheapest way at every open normal of each crystal, (B, K)."""
         crystals = len(cost)
         flat = cost.reshape(crystals, -1)
         total = flat @ self.choices.reshape(len(self.choices), -1).T.astype(np.float64)

@@ -43,6 +43,8 @@ class Goal:
         Constants to stay near where the readings do not speak, GPa.
     anchor_sigma : float
         How near, GPa in the Kelvin norm.
+    pins, pinned_at : (K, P) and (P,) arrays, or None
+        Combinations held: each, times the change from `pinned_at`, is one more residual.
     least_stiffness : float or None
         GPa: eigenstiffnesses below it are pushed up, at `HUBER`-free quadratic cost.
     """
@@ -54,6 +56,8 @@ class Goal:
     robust: bool = False
     anchor: FloatArray | None = None
     anchor_sigma: float = np.inf
+    pins: FloatArray | None = None
+    pinned_at: FloatArray | None = None
     least_stiffness: float | None = None
 
     def without_anchor(self) -> "Goal":
@@ -131,7 +135,7 @@ def evaluate(goal: Goal, constants: FloatArray) -> Trial:
     turned = weighted.transpose(0, 2, 1)
     gradient = (turned @ residuals[:, :, None])[:, :, 0]
     curvature = turned @ jacobian
-    for extra in (_anchor_terms, _stability_terms):
+    for extra in (_anchor_terms, _pin_terms, _stability_terms):
         more_cost, more_gradient, more_curvature = extra(goal, constants)
         cost = cost + more_cost
         gradient = gradient + more_gradient
@@ -149,6 +153,16 @@ def _anchor_terms(goal: Goal, constants: FloatArray) -> _Terms:
     root = goal.survey.basis.kelvin_root
     gram = root @ root.T / goal.anchor_sigma**2
     away = constants - goal.anchor
+    pull = away @ gram
+    return (pull * away).sum(axis=1), pull, gram
+
+
+def _pin_terms(goal: Goal, constants: FloatArray) -> _Terms:
+    """Return the cost, gradient and curvature of moving what is held."""
+    if goal.pins is None or goal.pinned_at is None:
+        return 0.0, 0.0, 0.0
+    gram = goal.pins.T @ goal.pins
+    away = constants - goal.pinned_at
     pull = away @ gram
     return (pull * away).sum(axis=1), pull, gram
 

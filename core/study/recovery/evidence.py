@@ -24,7 +24,7 @@ RELATIVE_FLOOR = 2e-3
 _DUST = 1e-3  # parts of a combination, relative to its largest, that are left out
 _WORTH_SAYING = 0.02  # likewise, in words
 _MOST_PARTS = 6
-_TOUCHED = 0.01  # share of a constant in what is not seen, beyond which it is not known
+_TOUCHED = 0.03  # share of a constant in what is not seen, beyond which it is not known
 _DRAWS = 4000
 _NO_FREEDOM = 1e-9  # 1 - leverage of a reading that nothing checks
 

@@ -3,12 +3,10 @@
 from collections.abc import Sequence
 
 import numpy as np
-from scipy.special import gammaincc, ndtri
 
-from core.arrays import BoolArray, FloatArray, read_only
-from core.study.recovery.conflicts import find_conflicts, stable_compromise
+from core.arrays import FloatArray, read_only
+from core.study.recovery.conflicts import find_outliers
 from core.study.recovery.evidence import (
-    Diagnostics,
     combinations_of,
     covariance_of,
     diagnose,
@@ -19,18 +17,12 @@ from core.study.recovery.evidence import (
 from core.study.recovery.fit import Fit, FitOptions
 from core.study.recovery.model import basis_of
 from core.study.recovery.problem import problem_of
-from core.study.recovery.readings import Reading, remarks
+from core.study.recovery.readings import Reading
 from core.study.recovery.search import Found, search
+from core.study.recovery.words import notes_of
 from core.task import Ticker
-from core.tensor.notation import from_upper_triangle, stiffness_to_kelvin, upper_triangle
+from core.tensor.notation import from_upper_triangle, stiffness_to_kelvin
 from core.tensor.symmetry import CrystalClass
-
-UNLIKELY = 1e-3
-"""Probability of so large a χ² below which the readings count as at odds."""
-
-_FALSE_ALARM = 0.05  # probability that any reading at all of a sound table is called an outlier
-_UNCHECKED = 1e-6  # 1 - leverage below which nothing checks a reading
-_SEVERAL = 5  # rows are named one by one up to so many
 
 
 def recover(
@@ -71,16 +63,6 @@ def recover(
     return _judge(found, chosen)
 
 
-def chi2_probability(chi2: float, dof: int) -> float:
-    """Return the probability that sound readings give so large a χ² or larger."""
-    return float(gammaincc(dof / 2.0, chi2 / 2.0)) if dof > 0 else 1.0
-
-
-def outlier_limit(count: int) -> float:
-    """Return the studentised residual beyond which one of `count` readings is an outlier."""
-    return float(-ndtri(_FALSE_ALARM / (2.0 * max(count, 1))))
-
-
 def _judge(found: Found, options: FitOptions) -> Fit:
     """Return the fit with all that is said of it."""
     problem, trial, spectrum = found.problem, found.trial, found.spectrum
@@ -95,7 +77,9 @@ def _judge(found: Found, options: FitOptions) -> Fit:
     chi2, dof = float(trial.chi2[0]), len(residuals) - spectrum.rank
     stable = bool(np.linalg.eigvalsh(stiffness_to_kelvin(basis.table(constants)))[0] > 0)
     determined = spectrum.rank == basis.size
-    outliers = _outliers(found, diagnostics, chi2, dof)
+    undetermined = combinations_of(spectrum.unseen, basis.names)
+    rows = [reading.row for reading in problem.readings]
+    outliers = tuple(sorted(rows[i] for i in find_outliers(found.goal, trial, spectrum)))
     return Fit(
         readings=problem.readings,
         density=problem.survey.density,
@@ -110,7 +94,7 @@ def _judge(found: Found, options: FitOptions) -> Fit:
         information=read_only((jacobian * found.weights[:, None]).T @ jacobian),
         rank=spectrum.rank,
         singular_values=read_only(spectrum.singular_values),
-        undetermined=combinations_of(spectrum.unseen, basis.names),
+        undetermined=undetermined,
         chi2=chi2,
         dof=dof,
         predicted=read_only(problem.measured + residuals * problem.sigma),
@@ -126,7 +110,7 @@ def _judge(found: Found, options: FitOptions) -> Fit:
         stability_probability=stability_probability(constants, covariance, basis)
         if determined else None,
         starts=found.starts,
-        notes=_notes(found, diagnostics, outliers, chi2, dof, stable),
+        notes=notes_of(found, diagnostics, undetermined, outliers, stable),
     )  # fmt: skip
 
 
@@ -142,114 +126,4 @@ def _correlation(covariance: FloatArray) -> FloatArray:
     scale = np.outer(own, own)
     correlation = np.divide(covariance, scale, out=np.zeros_like(scale), where=scale > 0)
     np.fill_diagonal(correlation, 1.0)
-    return np.clip(correlation, -1.0, 1.0)
-
-
-def _outliers(
-    found: Found, diagnostics: Diagnostics, chi2: float, dof: int
-) -> tuple[int, ...]:
-    """Return the rows that fit neither the crystal nor the other readings."""
-    rows = np.array([reading.row for reading in found.problem.readings])
-    if chi2_probability(chi2, dof) < UNLIKELY:
-        conflicting = find_conflicts(found.goal, found.trial, found.spectrum.rank)
-        if conflicting is not None:
-            return tuple(sorted(rows[conflicting].tolist()))
-    far = np.abs(diagnostics.studentised) > outlier_limit(rows.size)
-    return tuple(sorted(rows[far].tolist()))
-
-
-# --- words ------------------------------------------------------------------------------------
-
-
-def _notes(
-    found: Found,
-    diagnostics: Diagnostics,
-    outliers: tuple[int, ...],
-    chi2: float,
-    dof: int,
-    stable: bool,
-) -> tuple[str, ...]:
-    """Return what there is to say, the gravest first."""
-    problem = found.problem
-    notes = [*_unseen_notes(found), *_misfit_notes(found, outliers, chi2, dof)]
-    if not stable:
-        notes.append(_unstable_note(found))
-    if found.rival is not None:
-        notes.append(_rival_note(found))
-    if problem.lost.any():
-        notes.append(f"{_rows(problem.readings, problem.lost)}: no wave of its sheet goes along"
-                     " the ray; the fold of the wave surface it belongs to may have been lost.")
-    unchecked = 1.0 - diagnostics.leverage < _UNCHECKED
-    if unchecked.any():
-        notes.append(f"Nothing checks {_rows(problem.readings, unchecked).lower()}: a slip"
-                     " there would go unseen.")
-    notes += _polarisation_notes(found)
-    return (*notes, *remarks(problem.readings))
-
-
-def _unseen_notes(found: Found) -> list[str]:
-    size, rank = found.problem.basis.size, found.spectrum.rank
-    if rank == size:
-        return []
-    kept = "the constants expected" if found.goal.anchor is not None and False else ""
-    words = "; ".join(c.text for c in combinations_of(found.spectrum.unseen,
-                                                      found.problem.basis.names))
-    verb = "is" if size - rank == 1 else "are"
-    return [f"{rank} of {size} combinations of constants are seen. Not seen {verb} {words}."
-            f"{kept}"]
-
-
-def _misfit_notes(found: Found, outliers: tuple[int, ...], chi2: float, dof: int) -> list[str]:
-    notes = []
-    if outliers:
-        named = ", ".join(map(str, outliers))
-        notes.append(f"Row{'s' if len(outliers) > 1 else ''} {named} fit"
-                     f"{'' if len(outliers) > 1 else 's'} neither this crystal nor the other"
-                     " readings.")
-    if chi2_probability(chi2, dof) < UNLIKELY and not outliers:
-        times = np.sqrt(chi2 / dof)
-        lower = "" if found.problem.basis.cls.key == "triclinic" else (
-            ", or the crystal has less symmetry than its class")
-        notes.append(f"The readings scatter {times:.2g} times more than their σ allow, no few of"
-                     f" them alone: σ is too small, a direction or the density is off{lower}.")
-    return notes
-
-
-def _unstable_note(found: Found) -> str:
-    """Say whether a stable crystal could give the readings, and which speak against it."""
-    stable, more = stable_compromise(found.goal, found.trial)
-    if more < 9.0:
-        return ("These constants are not those of a stable crystal, but stable ones fit nearly"
-                f" as well (χ² rises by {more:.2g}).")
-    limit = outlier_limit(len(stable))
-    against = np.abs(stable) > limit
-    if not against.any():
-        against = np.abs(stable) >= np.sort(np.abs(stable))[-2:].min()
-    return ("No stable crystal gives these speeds within their σ"
-            f" (χ² rises by {more:.3g}): {_rows(found.problem.readings, against).lower()}"
-            " speak against it most.")
-
-
-def _rival_note(found: Found) -> str:
-    assert found.rival is not None
-    names, basis = found.problem.basis.names, found.problem.basis
-    gap = np.abs(basis.constants(found.rival) - found.constants)
-    worst = int(gap.argmax())
-    return (f"Another crystal fits as well: with {names[worst]}"
-            f" = {basis.constants(found.rival)[worst]:.4g} GPa in place of"
-            f" {found.constants[worst]:.4g} GPa. A reading of another direction would decide.")
-
-
-def _polarisation_notes(found: Found) -> list[str]:
-    """Name readings whose sheet and polarisation are both given and disagree."""
-    return []
-
-
-def _rows(readings: Sequence[Reading], chosen: BoolArray) -> str:
-    """Return "Row 3", "Rows 3, 5 and 9", or how many there are."""
-    rows = [str(reading.row) for reading, take in zip(readings, chosen, strict=True) if take]
-    if len(rows) == 1:
-        return f"Row {rows[0]}"
-    if len(rows) > _SEVERAL:
-        return f"Rows {', '.join(rows[:_SEVERAL])} and {len(rows) - _SEVERAL} more"
-    return f"Rows {', '.join(rows[:-1])} and {rows[-1]}"
+    return np.asarray(np.clip(correlation, -1.0, 1.0))

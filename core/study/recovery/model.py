@@ -1,4 +1,4 @@
-"""Speeds of a survey as a function of the constants, with derivatives, for many crystals at once.
+"""Speeds of a survey as a function of the constants, with derivatives, for many crystals.
 
 A *survey* is what a table of readings becomes: the distinct wave normals, and for each reading
 which normal and which sheet it belongs to. The constants are the independent ones of a crystal
@@ -83,7 +83,7 @@ def basis_of(cls: CrystalClass) -> Basis:
         unit[i, j] = 1.0
         tables.append(complete(unit, cls))
     flat = stiffness_to_kelvin(np.array(tables)).reshape(len(tables), 36)
-    root = np.linalg.cholesky(flat @ flat.T)
+    root: FloatArray = np.asarray(np.linalg.cholesky(flat @ flat.T), dtype=np.float64)
     return Basis(cls, read_only(np.array(tables)), read_only(root))
 
 

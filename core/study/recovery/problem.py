@@ -13,7 +13,7 @@ from core.errors import InputError
 from core.study.recovery.assignment import Assignment, assignment_of
 from core.study.recovery.model import Basis, Survey, survey_of
 from core.study.recovery.rays import wave_normals
-from core.study.recovery.readings import Reading, direction_key
+from core.study.recovery.readings import Reading, Vector, direction_key
 from core.tensor.stiffness import Stiffness
 
 MOST_READINGS = 10_000
@@ -95,7 +95,8 @@ def problem_of(readings: Sequence[Reading], density: float, basis: Basis) -> Pro
 def _distinct_normals(readings: Sequence[Reading]) -> tuple[FloatArray, IntArray]:
     """Return the distinct directions (3, D) and which of them each reading has."""
     numbers: dict[tuple[int, ...], int] = {}
-    vectors, place = [], []
+    vectors: list[Vector] = []
+    place: list[int] = []
     for reading in readings:
         key = direction_key(reading.direction, reading.kind)
         if key not in numbers:

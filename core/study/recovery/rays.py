@@ -23,7 +23,7 @@ _LEAST_COSINE = 0.3  # between normal and ray: beyond it the branch has been los
 def wave_normals(
     medium: Medium, rays: FloatArray, sheets: IntArray, starts: FloatArray
 ) -> tuple[FloatArray, BoolArray]:
-    """Return the wave normal of each ray that lies nearest to a start, and whether it was found.
+    """Return the wave normal of each ray as reached from a start, and whether it was found.
 
     Parameters
     ----------
@@ -66,7 +66,7 @@ def wave_normals(
 def _misses(
     medium: Medium, frame: Directions, normals: FloatArray, sheets: IntArray
 ) -> FloatArray:
-    """Return by how much each energy velocity misses its ray: (2, N), tangents of half angles."""
+    """Return by how much energy misses each ray: (2, N), tangents of half angles."""
     velocity = group_velocities(medium, directions(normals)).velocity
     own = velocity[sheets, :, np.arange(sheets.size)].T
     length = np.sqrt(dot(own, own)) + dot(frame.n, own)
@@ -88,7 +88,7 @@ def _step(
     miss: FloatArray,
     damping: FloatArray,
 ) -> FloatArray:
-    """Return a damped Gauss-Newton step (2, N) in the tangent planes of the normals, radians."""
+    """Return damped Gauss-Newton steps (2, N) in the tangent planes of the normals."""
     columns = []
     for axis in np.eye(2)[:, :, None]:
         ahead, behind = (

@@ -59,9 +59,8 @@ class Flight:
         _require(self.sigma_us > 0, "σ of the transit time", "must be more than zero.")
         _require(self.sigma_mm >= 0, "σ of the thickness", "cannot be negative.")
         _require(math.isfinite(self.delay_ns), "delay", "must be a finite number.")
-        _require(
-            self.net_us > 0, "delay", f"of {self.delay_ns:g} ns is longer than the transit time."
-        )
+        too_long = f"of {self.delay_ns:g} ns is longer than the transit time."
+        _require(self.net_us > 0, "delay", too_long)
 
     @property
     def net_us(self) -> float:
@@ -160,7 +159,8 @@ def remarks(readings: Sequence[Reading]) -> tuple[str, ...]:
         ordered = sorted(group, key=lambda reading: (reading.speed, reading.row))
         notes += [note for pair in pairwise(ordered) if (note := _odd_pair(*pair))]
     if len(notes) > _MOST_REMARKS:
-        notes[_MOST_REMARKS:] = [f"… and {len(notes) - _MOST_REMARKS} more remarks of this kind."]
+        rest = len(notes) - _MOST_REMARKS
+        notes[_MOST_REMARKS:] = [f"… and {rest} more remarks of this kind."]
     return tuple(notes)
 
 

@@ -7,6 +7,7 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.study.recovery.descent import HUBER, Goal, Trial, descend
+from core.study.recovery.doubt import without_slope
 from core.study.recovery.evidence import Spectrum, spectrum_of
 from core.study.recovery.fit import FitOptions
 from core.study.recovery.model import Basis
@@ -16,13 +17,15 @@ from core.task import Ticker
 from core.tensor.notation import stiffness_to_kelvin
 
 ANCHOR_PART = 0.3
-"""Of the mean eigenstiffness: how loosely the fit is held to its start where nothing is seen."""
+"""Of the mean eigenstiffness: how loosely a fit is held to its start, for what is not seen."""
 
-_ENOUGH = 3  # starts that arrive at the best place and so confirm it
+_CONFIRMED, _TRIED = 3, 25  # starts that must agree on a poor best place, and of how many
 _SAME_COST = 1e-3  # relative
 _ROUGH_RAY = 0.03  # of a group speed: what taking its ray for the wave normal may cost
 _ROUNDS = 25
 _SETTLED = 1e-7  # relative change of the constants between rounds
+_DOUBTFUL_ROUNDS = 6
+_GIVEN_UP = 9.0  # rise of χ² allowed for each combination given up: three σ
 _ANOTHER = 0.01  # relative Kelvin distance beyond which two solutions differ
 
 
@@ -78,8 +81,8 @@ def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
 
     Starts are tried in batches of 1, 4, 8, 12 and 15, the first being the isotropic crystal
     with the median speeds (and the prior, if there is one). The search stops when χ² is below
-    dof + 6 √(2 dof), when three starts have arrived at the best place, or after the last
-    batch. With fewer spare readings than constants a second batch is always tried, since
+    dof + 6 √(2 dof), when at least three of 25 starts have arrived at one best place, or after
+    the last batch. With fewer spare readings than constants a second batch is always tried, since
     several crystals may fit.
     """
     first = isotropic_start(problem.readings, problem.survey.density, problem.basis)
@@ -94,11 +97,11 @@ def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
     )  # fmt: skip
     trial, starts, rival = _multistart(goal, first, also, options.seed, ticker)
     problem, goal, trial = _refine(problem, goal, trial, options)
-    spectrum = spectrum_at(problem, goal, trial)
+    trial, spectrum = _give_up_doubtful(goal, trial)
     if spectrum.rank == problem.basis.size:
         goal = goal.without_anchor()
         trial = descend(goal, trial.constants)
-        spectrum = spectrum_at(problem, goal, trial)
+        spectrum = spectrum_at(goal, trial)
     return Found(problem, goal, trial, spectrum, starts, rival)
 
 
@@ -113,7 +116,7 @@ def _multistart(
     fewest = 2 if 0 <= spare < basis.size else 1
     best: Trial | None = None
     costs: list[float] = []
-    rival = None
+    rivals = np.empty((0, basis.size))
     for number, starts in enumerate(start_batches(first, also, basis, seed), start=1):
         ticker.tick(len(costs) / 40)
         trial = descend(goal, starts)
@@ -122,25 +125,24 @@ def _multistart(
         if best is None or trial.cost[place] < best.cost[0]:
             best = trial.rows(np.array([place]))
         good = trial.constants[trial.chi2 < enough]
-        rival = rival if rival is not None else _rival(basis, best, good)
+        rivals = np.concatenate([rivals, good])
         arrivals = sum(cost <= best.cost[0] * (1 + _SAME_COST) + _SAME_COST for cost in costs)
-        done = best.chi2[0] < enough or arrivals >= _ENOUGH
-        if done and number >= fewest:
+        confirmed = arrivals >= _CONFIRMED and len(costs) >= _TRIED
+        if confirmed or (best.chi2[0] < enough and number >= fewest):
             break
     assert best is not None
-    if spare < 0 or (rival is not None and best.chi2[0] >= enough):
-        rival = None
+    rival = _rival(basis, best, rivals) if spare >= 0 else None
     return best, len(costs), rival
 
 
 def _rival(basis: Basis, best: Trial, good: FloatArray) -> FloatArray | None:
-    """Return the first of some good constants (K, P) that is another crystal than the best."""
+    """Return the one of some good constants (K, P) that is least like the best, if any is."""
+    if not len(good):
+        return None
+    apart = np.linalg.norm((good - best.constants[0]) @ basis.kelvin_root, axis=1)
+    farthest = int(apart.argmax())
     size = np.linalg.norm(best.constants[0] @ basis.kelvin_root)
-    for constants in good:
-        apart = np.linalg.norm((constants - best.constants[0]) @ basis.kelvin_root)
-        if apart > _ANOTHER * size:
-            return basis.table(constants)
-    return None
+    return basis.table(good[farthest]) if apart[farthest] > _ANOTHER * size else None
 
 
 def _refine(
@@ -169,6 +171,27 @@ def _refine(
     return problem, goal, trial
 
 
+def _give_up_doubtful(goal: Goal, trial: Trial) -> tuple[Trial, Spectrum]:
+    """Return the fit and its spectrum with what only looks seen put where it is not.
+
+    It is given up only if χ² hardly rises and the rank falls: otherwise the readings do see
+    it, if not in a linear way.
+    """
+    first = spectrum = spectrum_at(goal, trial)
+    now, given_up = trial, 0
+    for _ in range(_DOUBTFUL_ROUNDS):
+        typical = mean_stiffness(goal.survey.basis, now.constants[0])
+        found = without_slope(goal, now, spectrum, typical)
+        if found is None:
+            break
+        held, count = found
+        given_up = max(given_up, count)
+        if held.chi2[0] - trial.chi2[0] > _GIVEN_UP * given_up:
+            break
+        now, spectrum = held, spectrum_at(goal, held)
+    return (now, spectrum) if spectrum.rank < first.rank else (trial, first)
+
+
 def goal_for(problem: Problem, like: Goal) -> Goal:
     """Return a goal like another for a problem with other normals or uncertainties."""
     return Goal(
@@ -177,9 +200,9 @@ def goal_for(problem: Problem, like: Goal) -> Goal:
     )  # fmt: skip
 
 
-def spectrum_at(problem: Problem, goal: Goal, trial: Trial) -> Spectrum:
-    """Return what the readings see of the constants at a crystal."""
+def spectrum_at(goal: Goal, trial: Trial) -> Spectrum:
+    """Return what the readings of a goal see of the constants at a crystal."""
+    basis = goal.survey.basis
     jacobian = trial.jacobian[0] * np.sqrt(weights_of(goal, trial))[:, None]
     relative = trial.jacobian[0] * (goal.sigma / goal.speeds)[:, None]
-    typical = mean_stiffness(problem.basis, trial.constants[0])
-    return spectrum_of(jacobian, relative, problem.basis, typical)
+    return spectrum_of(jacobian, relative, basis, mean_stiffness(basis, trial.constants[0]))

@@ -1,4 +1,4 @@
-"""Where a fit begins: an isotropic crystal from the readings, and anisotropic ones around it."""
+"""Where a fit begins: an isotropic crystal from the readings, and others around it."""
 
 from collections import defaultdict
 from collections.abc import Iterator, Sequence
@@ -26,7 +26,8 @@ def isotropic_start(readings: Sequence[Reading], density: float, basis: Basis) -
     Longitudinal and shear modulus are medians of ρv² over what is marked, or looks, so.
     """
     fast, slow = _longitudinal_and_shear(readings)
-    moduli = [density * float(np.median(speeds)) ** 2 * 1e-9 for speeds in (fast, slow) if speeds]
+    medians = [float(np.median(speeds)) for speeds in (fast, slow) if speeds]
+    moduli = [1e-9 * density * speed**2 for speed in medians]
     if not slow:
         moduli.append(moduli[0] / _USUAL_RATIO)
     elif not fast:
@@ -43,7 +44,8 @@ def isotropic_start(readings: Sequence[Reading], density: float, basis: Basis) -
 
 def _longitudinal_and_shear(readings: Sequence[Reading]) -> tuple[list[float], list[float]]:
     """Sort the speeds into longitudinal and shear."""
-    fast, slow = [], []
+    fast: list[float] = []
+    slow: list[float] = []
     unmarked: dict[tuple[int, ...], list[float]] = defaultdict(list)
     for reading in readings:
         mark = _is_longitudinal(reading)

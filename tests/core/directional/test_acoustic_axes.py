@@ -242,6 +242,16 @@ def test_indices_of_symmetric_crystals_add_up():
     assert total_index(trigonal(86.74, 6.99, 11.91, -17.91, 107.2, 57.94)) == 2
 
 
+@pytest.mark.parametrize("size", [1e-1, 1e-2, 1e-3, 1e-5])
+@pytest.mark.parametrize("seed", [1, 2])
+def test_indices_add_up_near_a_line_of_degeneracy(size, seed):
+    """A hexagonal crystal whose shear sheets cross on a cone, disturbed: the line falls apart
+    into close axes joined by all but closed gaps."""
+    noise = np.random.default_rng(seed).standard_normal((6, 6))
+    table = hexagonal(161.0, 89.0, 50.1, 61.0, 38.3) + 8 * size * (noise + noise.T)
+    assert total_index(table) == 2
+
+
 def test_half_angle_by_walking_round_the_cone():
     """The rays V_j = C_ijkl p_i p_k n_l / (ρ v) of all polarisations, from the full tensor."""
     table = random_table(5)

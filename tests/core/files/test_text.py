@@ -7,7 +7,6 @@ import pytest
 from core.errors import InputError
 from core.files.text import LARGEST_FILE, read_text, write_bytes, write_text
 
-
 ZEROS = Path("/dev/zero")
 
 

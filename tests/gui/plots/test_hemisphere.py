@@ -10,7 +10,7 @@ from PySide6.QtGui import QColor
 
 from gui.plots.disc_picture import undefined, value_in
 from gui.plots.hemisphere import HemispherePlot, disc_ground, draw_hemisphere
-from gui.plots.projection import from_disc, to_disc
+from core.directional.projection import from_disc, to_disc
 from gui.theme import LIGHT, colours_of
 from gui.viewdata import ScaleView
 from tests.gui.plots.demo_views import (

@@ -243,3 +243,20 @@ def test_both_renderers_draw_the_same_picture(gl_renderer, changes):
     difference = np.abs(rgba(a) - rgba(b)).max(axis=2)
     assert (difference > 24).mean() < 0.02
     assert difference.mean() < 4.0
+
+
+@pytest.mark.gl
+def test_pictures_take_no_more_names_on_the_graphics_side(gl_renderer):
+    from gui.stage.gl import GL
+    from gui.stage.gl_context import hidden_context
+
+    def next_name():
+        with hidden_context().current():
+            return int(GL.glGenBuffers(1))
+
+    view = bare(*three_sheets(), section=(0.0, 1.0, 0.0))
+    draw(gl_renderer, view)
+    before = next_name()
+    for turn in range(20):
+        draw(gl_renderer, view, TOP.turned(turn, 5))
+    assert next_name() == before + 1

@@ -6,6 +6,8 @@ import numpy as np
 
 from core.arrays import FloatArray
 
+PROJECTIONS = ("equal_area", "stereographic")
+
 
 def to_disc(directions: FloatArray, projection: str) -> FloatArray:
     """Return where unit directions fall on the disc.
@@ -15,7 +17,8 @@ def to_disc(directions: FloatArray, projection: str) -> FloatArray:
     directions : ndarray, shape (3, ...)
         Unit vectors, part axes; those with negative Z are taken at their other end.
     projection : "equal_area" or "stereographic"
-        r = √2 sin(θ/2) (Lambert) or r = tan(θ/2), with θ from part Z: 1 on the rim in both.
+        r = √2 sin(θ/2) (Lambert 1772) or r = tan(θ/2), with θ from part Z: 1 on the rim in
+        both.
 
     Returns
     -------
@@ -45,6 +48,6 @@ def from_disc(points: FloatArray, projection: str) -> FloatArray:
 
 def _is_equal_area(projection: str) -> bool:
     """Return whether a projection is the equal-area one; refuse names that are neither."""
-    if projection not in ("equal_area", "stereographic"):
+    if projection not in PROJECTIONS:
         raise ValueError(f"no projection {projection!r}")
     return projection == "equal_area"

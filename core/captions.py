@@ -1,0 +1,229 @@
+"""Figures in words: which there are, what each shows, and the caption that says where from."""
+
+from __future__ import annotations
+
+import difflib
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from core.crystal.cell import axes_words
+from core.directional.quantities import Quantity, quantity
+from core.errors import InputError
+from core.files.origin import PROGRAM, orientation_words
+from core.numbers import MINUS
+from core.state import BenchState, OrientationChoice, Specimen, Vector3
+
+FIGURE_KINDS: dict[str, str] = {
+    "surface": "surface in three dimensions",
+    "section": "polar section",
+    "hemisphere": "hemisphere",
+    "sweep": "sweep away from the pin",
+    "source": "wavefronts from a point source",
+}
+"""Keys of the kinds of figures, and their words."""
+SIDES: dict[str, str] = {"A": "A", "B": "B", "AB": "A and B"}
+SHOWN: dict[str, str] = {
+    "A": "A", "B": "B", "difference": "B − A", "cost": "what a cutting error costs",
+}
+_PLANES = {"XY": (0.0, 0.0, 1.0), "XZ": (0.0, 1.0, 0.0), "YZ": (1.0, 0.0, 0.0)}
+
+
+@dataclass(frozen=True)
+class FigureChoice:
+    """One figure of a bench.
+
+    Attributes
+    ----------
+    kind : str
+        A key of `FIGURE_KINDS`.
+    quantity : str
+        Key of the quantity; the source picture always shows the wave surface.
+    sides : "A", "B" or "AB"
+        Which crystals: a surface of both is drawn side by side, on one scale.
+    shown : str
+        What a hemisphere shows, a key of `SHOWN`; the other kinds do not read it.
+    time_us : float
+        Time after the pulse of a source picture, microseconds.
+    """
+
+    kind: str = "surface"
+    quantity: str = "young"
+    sides: str = "A"
+    shown: str = "A"
+    time_us: float = 1.0
+
+    @property
+    def title(self) -> str:
+        """The figure in a few words, for lists."""
+        words = FIGURE_KINDS[self.kind]
+        if self.kind == "source":
+            return f"{words}, {SIDES[self.sides]}"
+        what = SHOWN[self.shown] if self.kind == "hemisphere" else SIDES[self.sides]
+        return f"{quantity(self.quantity).name}: {words}, {what}"
+
+
+def one_of(key: str, choices: dict[str, str], name: str) -> str:
+    """Return a key that is among some.
+
+    Raises
+    ------
+    InputError
+        If it is not; the hint names the nearest, or all.
+    """
+    if key in choices:
+        return key
+    near = difflib.get_close_matches(key.strip().lower(), choices, n=1)
+    hint = f"Did you mean '{near[0]}'?" if near else f"There are {', '.join(choices)}."
+    raise InputError(f"'{key}' is no {name}.", hint, name)
+
+
+def state_for(state: BenchState, choice: FigureChoice) -> BenchState:
+    """Return the bench as a figure shows it.
+
+    Raises
+    ------
+    InputError
+        When the quantity needs a density that a crystal shown has not.
+    """
+    shown = quantity("wave" if choice.kind == "source" else choice.quantity)
+    sides = needed_sides(choice)
+    for side in sides:
+        specimen = state.specimen_of(side)
+        if shown.wave and specimen.density is None:
+            raise InputError(f"{shown.name} wants a density, and {specimen.name} has none.",
+                             "Enter it in the ledger or the specimen file.", "density")
+    display = replace(state.display, layout=sides, hemisphere=choice.shown, shared_scale=True)
+    return replace(state, quantity=shown.key, display=display)
+
+
+def needed_sides(choice: FigureChoice) -> str:
+    """Return the sides that a figure draws: a difference needs both."""
+    if choice.kind != "hemisphere":
+        return choice.sides
+    if choice.shown == "difference":
+        return "AB"
+    return choice.shown if choice.shown in ("A", "B") else choice.sides[:1]
+
+
+def caption(state: BenchState, choice: FigureChoice) -> str:
+    """Return what a figure shows and where it comes from, in a few sentences."""
+    sentences = [_what(state, choice), *_whose(state, needed_sides(choice))]
+    if choice.kind == "surface" and choice.sides == "AB":
+        sentences.append("One scale of lengths and colours for both.")
+    sentences.append(f"{PROGRAM}.")
+    return " ".join(sentences)
+
+
+def _what(state: BenchState, choice: FigureChoice) -> str:
+    entry = quantity("wave" if choice.kind == "source" else choice.quantity)
+    name = f"{entry.name} {entry.symbol}{', ' if entry.unit else ''}{entry.unit}"
+    if choice.kind == "surface":
+        return f"{name}, {_surface_words(entry)}. {_marks_words(state)}"
+    if choice.kind == "section":
+        return (f"{name}, in the plane {plane_words(state.section)} of the part"
+                f"{'; A solid, B dashed' if choice.sides == 'AB' else ''}.")
+    if choice.kind == "hemisphere":
+        projection = state.display.projection.replace("_", "-")
+        return f"{_hemisphere_words(state, choice, name)}; {projection} projection from part Z."
+    if choice.kind == "sweep":
+        axis = state.display.sweep_about or state.section
+        return (f"{name}, against the angle from the direction {vector_words(state.pin)} "
+                f"turned about {axis_words(axis)} of the part.")
+    return (f"Wavefronts in the plane {plane_words(state.section)} of the part "
+            f"{choice.time_us:g} µs after a pulse from a point; radius in mm.")
+
+
+def _surface_words(entry: Quantity) -> str:
+    if entry.key == "slowness":
+        return "three sheets along the wave normal"
+    if entry.shape == "slowness":
+        return "as colours on the slowness surface"
+    if entry.shape == "wave":
+        return "where the energy of plane waves has come to after a unit of time"
+    size = "size" if entry.signed else "value"
+    return f"over all directions; the distance from the middle is its {size}"
+
+
+def _marks_words(state: BenchState) -> str:
+    plane = plane_words(state.section)
+    how = "Opened at" if state.display.cut_away else "Disc:"
+    return f"{how} the plane {plane} of the part; ring: direction {vector_words(state.pin)}."
+
+
+def _hemisphere_words(state: BenchState, choice: FigureChoice, name: str) -> str:
+    if choice.shown == "difference":
+        return f"B − A of {name}"
+    if choice.shown == "cost":
+        return (f"Greatest change of {name} within a cutting error of "
+                f"±{state.cutting_error_deg:g}°")
+    return name
+
+
+def _whose(state: BenchState, sides: str) -> list[str]:
+    """Return the crystals, their sources and axes, and how the parts lie in them."""
+    turns = [_turn_words(state.orientation_of(side)) for side in sides]
+    if len(sides) == 2 and state.other is None:
+        return [f"{_crystal_words(state.specimen)}. A: {turns[0]}. B: {turns[1]}."]
+    return [f"{side}: {_crystal_words(state.specimen_of(side))}; {turn}."
+            for side, turn in zip(sides, turns, strict=True)]
+
+
+def _crystal_words(specimen: Specimen) -> str:
+    source = f" ({specimen.source})" if specimen.source else ""
+    axes = f", crystal axes {axes_words(specimen.crystal_axes)}" if specimen.cell else ""
+    return f"{specimen.name}{source}{axes}"
+
+
+def _turn_words(choice: OrientationChoice) -> str:
+    words = orientation_words(choice).replace("-", MINUS)
+    return "part axes along the crystal axes" if words == "identity" else f"part {words}"
+
+
+def plane_words(normal: Vector3) -> str:
+    """Return "XZ" for a plane of two part axes, else its normal."""
+    for name, axis in _PLANES.items():
+        if abs(float(np.dot(axis, normal))) > 1 - 1e-12:
+            return name
+    return f"normal to {vector_words(normal)}"
+
+
+def axis_words(vector: Vector3) -> str:
+    """Return "X" for a part axis, else the components."""
+    for name, axis in zip("XYZ", np.eye(3), strict=True):
+        if float(np.dot(axis, vector)) > 1 - 1e-9:
+            return name
+    return vector_words(vector)
+
+
+def vector_words(vector: Vector3) -> str:
+    """Return the components of a direction, part axes, rounded for reading."""
+    words = " ".join(f"{round(float(x), 4) + 0.0:g}" for x in vector)
+    return f"({words})".replace("-", MINUS)
+
+
+def parse_plane(text: str) -> Vector3:
+    """Return the unit normal of a section plane, part axes.
+
+    Parameters
+    ----------
+    text : str
+        "XY", "XZ", "YZ", or three components of the normal such as "1,1,0".
+
+    Raises
+    ------
+    InputError
+        For anything else.
+    """
+    named = "".join(sorted(text.strip().upper()))
+    if named in _PLANES:
+        return _PLANES[named]
+    try:
+        vector = np.array([float(word) for word in text.replace(",", " ").split()])
+    except ValueError:
+        vector = np.zeros(0)
+    if vector.shape != (3,) or not np.isfinite(vector).all() or not vector.any():
+        raise InputError(f"'{text}' is no section plane.",
+                         "XY, XZ, YZ or the normal in part axes, such as 1,1,0.", "plane")
+    x, y, z = (vector / np.linalg.norm(vector)).tolist()
+    return x, y, z

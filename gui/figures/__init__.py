@@ -1,0 +1,1 @@
+"""Figures and reports: what leaves the program for someone else's desk."""
