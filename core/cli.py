@@ -12,9 +12,10 @@ import json
 import os
 import re
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any, NoReturn
 
+from core import figure_words
 from core.errors import InputError
 from core.version import VERSION
 
@@ -109,14 +110,28 @@ Examples:
 """
 
 
-def main(argv: Sequence[str] | None = None) -> int:
-    """Run one headless verb; return the exit status."""
+def main(
+    argv: Sequence[str] | None = None,
+    drawing: Mapping[str, Callable[[argparse.Namespace], Any]] | None = None,
+) -> int:
+    """Run one headless verb; return the exit status.
+
+    Parameters
+    ----------
+    argv : sequence of str, optional
+    drawing : mapping of verb to callable, optional
+        Runs the verbs that draw, as those of `core.verbs.RUN` are run; nothing in `core` can.
+    """
     words = list(sys.argv[1:] if argv is None else argv)
     try:
         arguments = read_words(words)
         from core import verbs  # numpy and the kernels: only once there is something to compute
 
-        results, page = verbs.RUN[arguments.verb](arguments)
+        run = {**verbs.RUN, **(drawing or {})}.get(arguments.verb)
+        if run is None:
+            raise InputError(f"{arguments.verb} draws, and there is nothing to draw with here.",
+                             f"Run: tricline {arguments.verb}.")
+        results, page = run(arguments)
         return _write(_json(results) if arguments.json else page(results))
     except InputError as error:
         print(f"tricline: {error}", file=sys.stderr)
@@ -234,6 +249,21 @@ _VERBS: dict[str, tuple[str, str, Callable[[argparse.ArgumentParser], None]]] = 
     "along": ("every quantity along directions", _ALONG, _add_along),
     "rotate": ("the 6x6 in part axes, and engineering constants", _ROTATE, _add_rotate),
     "compare": ("two orientations, or two crystals, side by side", _COMPARE, _add_compare),
+    "section": (
+        "a polar section, as numbers or as a figure",
+        figure_words.SECTION_HELP,
+        figure_words.add_section,
+    ),
+    "figure": (
+        "a figure of any size: PNG, SVG, PDF; or the surface as a mesh",
+        figure_words.FIGURE_HELP,
+        figure_words.add_figure,
+    ),
+    "report": (
+        "the whole report as PDF or HTML",
+        figure_words.REPORT_HELP,
+        figure_words.add_report,
+    ),
 }
 """Verb, its line in the list of verbs, its own help, and what adds its arguments."""
 

@@ -10,8 +10,8 @@ import numpy as np
 from core.arrays import FloatArray
 from core.errors import InputError
 
-STIFFEST = 1e6  # GPa; the stiffest solid known has some 1e3
-DENSEST = 1e6  # kg/m³; the densest solid known has some 2e4
+SOFTEST, STIFFEST = 1e-9, 1e6  # GPa; the stiffest solid known has some 1e3, a jelly 1e-6
+LIGHTEST, DENSEST = 1e-12, 1e6  # kg/m³; the densest solid known has some 2e4, an aerogel 1
 COLDEST = -273.15  # °C
 HOTTEST = 1e5
 
@@ -24,7 +24,7 @@ def density(value: float, where: str) -> float:
             "In kg/m³; leave it out if it is not known.",
             where,
         )
-    if value > DENSEST:
+    if not LIGHTEST <= value <= DENSEST:
         raise InputError(f"No solid has {value:g} kg/m³.", "1 g/cm³ is 1000 kg/m³.", where)
     return value
 
@@ -41,8 +41,14 @@ def temperature(value: float, where: str) -> float:
 
 
 def stiffness(table: FloatArray, where: str) -> FloatArray:
-    """Return a table of stiffnesses in GPa, shape (6, 6)."""
+    """Return a table of stiffnesses in GPa, shape (6, 6); one of zeros only is accepted."""
     largest = float(np.abs(table).max())
+    if 0.0 < largest < SOFTEST:
+        raise InputError(
+            f"With no constant above {largest:.4g} GPa this is no solid.",
+            "Are the numbers compliances?",
+            where,
+        )
     if largest > STIFFEST:
         raise InputError(
             f"A constant of {largest:.4g} GPa is beyond any solid.",

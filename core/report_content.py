@@ -156,13 +156,13 @@ def default_figures(state: BenchState) -> tuple[FigureChoice, ...]:
         FigureChoice("surface", shown, sides), FigureChoice("section", shown, sides),
         FigureChoice("hemisphere", shown, sides, "A"),
         FigureChoice("hemisphere", shown, sides, "difference" if sides == "AB" else "cost"),
-        FigureChoice("sweep", shown, sides),
     ]
     if waves:
+        figures.append(FigureChoice("source", "wave", sides))
+    figures.append(FigureChoice("sweep", shown, sides))
+    if waves:
         other = "young" if quantity(shown).wave else "slowness"
-        figures += [FigureChoice("surface", other, sides),
-                    FigureChoice("section", other, sides),
-                    FigureChoice("source", "wave", sides)]
+        figures += [FigureChoice(kind, other, sides) for kind in ("surface", "section")]
     return tuple(figures)
 
 

@@ -34,6 +34,7 @@ SHEETS = ("fastest", "middle", "slowest")
 _ROWS = tuple(f"{i + 1}{j + 1}" for i, j in VOIGT_PAIRS)
 _DUST = 1e-12  # of the largest of a table: what is smaller is zero but for rounding
 _FLAT = 1e-8  # per degree: a slope this small is none but for rounding
+_NO_BREAK = "\N{NO-BREAK SPACE}\N{NO-BREAK SPACE}"
 _SAME_ANGLE = 5e-3  # degrees: nearer to a lattice direction is along it
 
 
@@ -234,7 +235,7 @@ def place(vector: Sequence[float] | FloatArray, specimen: Specimen) -> str:
     text = best.text.replace("-", MINUS)
     if best.angle_deg < _SAME_ANGLE:
         return text
-    return f"{significant(best.angle_deg, 2)}° from {text}"
+    return f"{significant(best.angle_deg, 2)}° from {text.replace(' ', _NO_BREAK[0])}"
 
 
 def _component(x: float) -> str:
@@ -242,7 +243,8 @@ def _component(x: float) -> str:
 
 
 def _vector(vector: Sequence[float]) -> str:
-    return "  ".join(f"{round(float(x), 4) + 0.0:.4f}".replace("-", MINUS) for x in vector)
+    texts = (f"{round(float(x), 4) + 0.0:.4f}".replace("-", MINUS) for x in vector)
+    return _NO_BREAK.join(texts)
 
 
 # --- averages and extremes ------------------------------------------------------------------
@@ -255,10 +257,10 @@ _INDICES = (
     ("zener", "Zener ratio", ""),
 )
 _EXTREMES = (
-    ("young_gpa", "Young's modulus E", "GPa"),
-    ("linear_compressibility_per_tpa", "linear compressibility β", "1/TPa"),
-    ("shear_gpa", "shear modulus G", "GPa"),
-    ("poisson", "Poisson's ratio ν", ""),
+    ("young_gpa", "E", "GPa"),
+    ("linear_compressibility_per_tpa", "β", "1/TPa"),
+    ("shear_gpa", "G", "GPa"),
+    ("poisson", "ν", ""),
     ("fast_km_s", "fastest wave", "km/s"),
     ("middle_km_s", "middle wave", "km/s"),
     ("slow_km_s", "slowest wave", "km/s"),

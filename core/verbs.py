@@ -9,9 +9,17 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
+import numpy as np
+
 from core import pages
+from core.captions import SIDES, one_of, parse_plane
+from core.crystal.directions import parse_direction
+from core.directional.quantities import quantity
+from core.errors import InputError
 from core.files.opening import open_file
-from core.state import BenchState, OrientationChoice, Specimen
+from core.files.origin import Origin, today
+from core.files.text import write_text
+from core.state import BenchState, OrientationChoice, Specimen, as_vector, rotation_of
 from core.summary import along, compare, rotate, summarise
 from core.tensor.notation import parse_rows
 
@@ -70,9 +78,55 @@ def _compare(arguments: Namespace) -> Outcome:
     return found, pages.comparison
 
 
+def bench_as_asked(arguments: Namespace, path: str) -> BenchState:
+    """Return the bench of a file, changed by the words of a verb that draws."""
+    state = open_bench(path)
+    if arguments.a is not None:
+        state = replace(state, orientation_a=OrientationChoice(arguments.a))
+    if arguments.b is not None:
+        state = replace(state, orientation_b=OrientationChoice(arguments.b))
+    display = state.display if arguments.b is None else replace(state.display, layout="AB")
+    if arguments.side is not None:
+        display = replace(display, layout=one_of(arguments.side.upper(), SIDES, "side"))
+    changes: dict[str, Any] = {"display": display}
+    if arguments.quantity is not None:
+        changes["quantity"] = quantity(arguments.quantity).key
+    if arguments.plane is not None:
+        changes["section"] = parse_plane(arguments.plane)
+    if arguments.pin is not None:
+        found = parse_direction(arguments.pin, state.specimen.frame)
+        turn = rotation_of(state.orientation_a, state.specimen)
+        changes["pin"] = as_vector(turn @ np.array(found.vector))
+    state = replace(state, **changes)
+    for side in state.display.layout:  # an orientation that cannot be read is refused here
+        rotation_of(state.orientation_of(side), state.specimen_of(side))
+    return state
+
+
+def _section(arguments: Namespace) -> Outcome:
+    from core.files import tables
+
+    state = bench_as_asked(arguments, arguments.file)
+    made = today(arguments.reproducible)
+    sides = state.display.layout
+    origins = [Origin(state.specimen_of(side), state.orientation_of(side), made,
+                      side if len(sides) > 1 else "") for side in sides]
+    found = tables.section_data(origins, state.quantity, state.section)
+    text = tables.section_csv(origins, state.quantity, state.section)
+    if arguments.out is None:
+        return found, lambda _: text
+    target = Path(arguments.out)
+    if target.suffix.lower() != ".csv":
+        raise InputError(f"“{target.name}” names no form of a section.",
+                         "A name ending in .csv, .png, .svg or .pdf is wanted.", "--out")
+    write_text(target, text)
+    return found, lambda _: f"wrote {target}\n"
+
+
 RUN: dict[str, Callable[[Namespace], Outcome]] = {
     "summary": _summary,
     "along": _along,
     "rotate": _rotate,
     "compare": _compare,
+    "section": _section,
 }

@@ -226,10 +226,15 @@ class LedgerIntents(Intents):
         )
 
     def one_crystal(self) -> None:
-        """Let B show the crystal of A again."""
+        """Let B show the crystal of A again; words that A cannot read become a matrix."""
         state = self.bench.state
         display = replace(state.display, ledger="A")
-        self.bench.edit("Show one crystal", replace(state, other=None, display=display))
+        one = replace(state, other=None, display=display)
+        try:
+            check_orientations(one)
+        except InputError:
+            one = replace(one, orientation_b=self._carried(state, "B", "A"))
+        self.bench.edit("Show one crystal", one)
 
     def reset_orientations(self) -> None:
         """Put both parts back along the crystal axes."""

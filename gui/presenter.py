@@ -28,6 +28,7 @@ from gui.window import Window
 
 _CRYSTALS = {"specimen", "other"}
 _PARTS = _CRYSTALS | {"orientation_a", "orientation_b"}
+_PIN = {"pin"}
 _EXTREMES = "extremes"
 
 
@@ -118,11 +119,12 @@ class Presenter(QObject):
         self._started = time.perf_counter()
         first = not self._pace.is_moving
         self._pace.move()
-        fine = self._pace.is_fine
         now = {"always": True, "often": self._pace.may_follow() or first, "at rest": False}
         for number, region in enumerate(self._regions):
             if not names & region.watches:
                 continue
+            # Behind a moved pin the fine picture stays: it is at hand once it was drawn.
+            fine = self._pace.is_fine or (names == _PIN and number not in self._stale)
             if now[region.follows]:
                 region.show(state, fine)
             if not (now[region.follows] and fine):

@@ -263,6 +263,7 @@ class ReadingView:
     rows: tuple[ReadingRow, ...]
     has_b: bool
     notice: str = ""
+    side: str = "A"  # whose numbers the first column has: "B" when B is shown alone
 
 
 @dataclass(frozen=True)

@@ -23,6 +23,7 @@ _SAME_NORMAL = 1e-5  # radians
 _SINGULAR = 1e-4  # ratio of the two ways the energy velocity turns with the normal
 _SAME_SPEED = 1e-6
 _FEWEST_ON_RING = 4
+_FLAT = 1e-30  # keeps the damped equations solvable where the miss does not change at all
 
 
 @dataclass(frozen=True, eq=False)
@@ -196,19 +197,24 @@ def _moved(
 def _jacobian(
     medium: Medium, ray: FloatArray, normals: FloatArray, sheets: IntArray
 ) -> FloatArray:
-    """Return the derivatives (2, 2, M) of the miss along the two tangents, by differences."""
+    """Return the derivatives (2, 2, M) of the miss along the two tangents, by differences.
+
+    Zero beside the end of a sheet, where there is no wave to compare with: such a normal stays.
+    """
     shifts = ((_SHIFT, 0.0), (-_SHIFT, 0.0), (0.0, _SHIFT), (0.0, -_SHIFT))
     moved = np.concatenate(
         [_moved(normals, *map(np.asarray, shift)) for shift in shifts], axis=1
     )
     miss = _misses(medium, ray, moved, np.tile(sheets, 4)).reshape(2, 4, -1)
-    return np.asarray((miss[:, 0::2] - miss[:, 1::2]) / (2.0 * _SHIFT))
+    slope = (miss[:, 0::2] - miss[:, 1::2]) / (2.0 * _SHIFT)
+    slope[:, :, ~np.isfinite(slope).all(axis=(0, 1))] = 0.0
+    return np.asarray(slope)
 
 
 def _damped_step(jacobian: FloatArray, miss: FloatArray, damping: FloatArray) -> FloatArray:
     """Return the step (2, M) of the damped normal equations, no longer than allowed."""
     (a, b), (c, d) = jacobian
-    size = damping * (a * a + b * b + c * c + d * d) + np.finfo(np.float64).tiny
+    size = damping * (a * a + b * b + c * c + d * d) + _FLAT
     aa, ab, bb = a * a + c * c + size, a * b + c * d, b * b + d * d + size
     right_a, right_b = a * miss[0] + c * miss[1], b * miss[0] + d * miss[1]
     determinant = aa * bb - ab * ab

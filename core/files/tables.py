@@ -278,6 +278,30 @@ def section_csv(
     return _csv(head, names, _texts(columns))
 
 
+def section_data(
+    origins: Sequence[Origin], key: str, normal: Sequence[float], count: int = 721
+) -> dict[str, Any]:
+    """Return a polar section as plain lists, keys with their units where they have one.
+
+    Parameters are those of `section_csv`.
+    """
+    plane = np.array(normal, dtype=float)
+    circle = great_circle(plane, count)
+    across, up = plane_axes(plane)
+    entry = quantity(key)
+    curves = []
+    for origin in origins:
+        values = _known(origin, key).values(origin.medium, circle)
+        for sheet, row in enumerate(values):
+            curves.append({
+                "side": origin.side or "A", "name": origin.specimen.name,
+                "sheet": SHEETS[sheet] if entry.sheets == 3 else None, "value": _plain(row)})
+    return {"quantity": key, "unit": entry.unit, "normal": plane.tolist(),
+            "right": (across + 0.0).tolist(), "up": (up + 0.0).tolist(),
+            "angle_deg": np.linspace(0.0, 360.0, count).tolist(),
+            "direction": circle.n.T.tolist(), "curves": curves}
+
+
 def _known(origin: Origin, key: str) -> Quantity:
     """Return a quantity that can be computed for a crystal."""
     entry = quantity(key)

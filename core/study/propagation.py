@@ -83,12 +83,13 @@ def propagate(function: Function, medium: Medium, factor: FloatArray) -> FloatAr
     """
     here = np.asarray(function(medium), dtype=np.float64)
     variance = np.zeros(here.shape)
+    step = _step(medium)
     for column in factor.T[factor.any(axis=0)]:
-        step = _step(medium, column)
+        unit, size = _unit(column)
         with np.errstate(invalid="ignore", over="ignore"):
             for sign in (1.0, -1.0):
-                there = np.asarray(function(changed(medium, sign * step * column)))
-                variance += 0.5 * ((there - here) / step) ** 2
+                there = np.asarray(function(changed(medium, sign * step * unit)))
+                variance += 0.5 * ((there - here) / step * size) ** 2
     known = np.isfinite(variance) & np.isfinite(here)
     return np.asarray(np.sqrt(np.where(known, variance, np.nan)))
 
@@ -108,23 +109,30 @@ def gradient(function: Function, medium: Medium) -> FloatArray:
         Per GPa; each constant off the diagonal changes both of its cells. Central differences
         to 1e-8 where the function is smooth.
     """
-    slopes = []
-    for unit in np.eye(21):
-        step = _step(medium, unit)
+    slopes, step = [], _step(medium)
+    for constant in np.eye(21):
+        unit, size = _unit(constant)
         ahead, behind = (
             np.asarray(function(changed(medium, sign * step * unit)), dtype=np.float64)
             for sign in (1.0, -1.0)
         )
         with np.errstate(invalid="ignore"):
-            slopes.append((ahead - behind) / (2 * step))
+            slopes.append((ahead - behind) / (2 * step) * size)
     return np.stack(slopes, axis=-1)
 
 
-def _step(medium: Medium, constants: FloatArray) -> float:
-    """Return the multiple of some changes of the constants, (21,), that is a small step."""
+def _step(medium: Medium) -> float:
+    """Return how far, GPa in the Kelvin norm, constants are changed to see the slope."""
     stiff = np.abs(medium.stiffness.eigenstiffness)
-    scale = _STEP * max(float(stiff.min()), _SOFTEST * float(stiff.max()))
-    return float(scale / np.linalg.norm(KELVIN_21 * constants))
+    return _STEP * max(float(stiff.min()), _SOFTEST * float(stiff.max()))
+
+
+def _unit(constants: FloatArray) -> tuple[FloatArray, float]:
+    """Return a change of the constants, (21,), at unit Kelvin norm, and its norm."""
+    largest = float(np.abs(constants).max())  # first, for the smallest numbers have no squares
+    plain = constants / largest
+    norm = float(np.linalg.norm(KELVIN_21 * plain))
+    return plain / norm, norm * largest
 
 
 def contributions(

@@ -94,8 +94,9 @@ def _turning(
     d_g = symmetric_times(stress, np.broadcast_to(p[:, None], d_p.shape))
     for other in {0, 1, 2} - {sheet}:
         to = found.polarisation[other]
+        gap = (v**2 - found.speed[other] ** 2) / scale
         with np.errstate(divide="ignore", invalid="ignore"):
-            turn = _work(stress, wave_strain(to, n)) * (scale / (v**2 - found.speed[other] ** 2))
+            turn = _work(stress, wave_strain(to, n)) / gap
         turn[~np.isfinite(turn)] = 0.0
         coupling = symmetric_times(medium.christoffel @ mixed_products(p, to), n)
         d_p += to[:, None] * turn

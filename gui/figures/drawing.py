@@ -71,6 +71,9 @@ class Look:
     dots : float
         Pixels of a picture inside a vector file per unit of its painter.
     has_caption : bool
+        Write the caption under the figure.
+    is_captioned : bool
+        Somebody else writes it there: titles need not say it all.
     """
 
     theme: Theme
@@ -80,6 +83,7 @@ class Look:
     surface: Surface = "pixels"
     dots: float = 1.0
     has_caption: bool = True
+    is_captioned: bool = False
 
     @property
     def ink(self) -> Theme:
@@ -167,7 +171,7 @@ def _draw_plot(
     painter: QPainter, rect: QRectF, figure: Drawable, look: Look, scale: float
 ) -> None:
     """Draw a plot with its title by the routine that draws it on the screen."""
-    view, theme, has_caption = figure.plot, look.ink, look.has_caption
+    view, theme, has_caption = figure.plot, look.ink, look.has_caption or look.is_captioned
     if isinstance(view, SectionView):
         draw_section(painter, rect, view, theme, scale, titled=True)
     elif isinstance(view, HemisphereView):

@@ -65,7 +65,8 @@ class FigureForm:
         Key of `GROUNDS`.
     theme : str
         "light" or "night".
-    has_caption : bool
+    has_caption, is_captioned : bool
+        Write the caption; or leave it, and what it says, to somebody else.
     all_vectors : bool
         In SVG and PDF draw surfaces as vectors too, from the coarse mesh.
     is_reproducible : bool
@@ -79,6 +80,7 @@ class FigureForm:
     ground: str = "white"
     theme: str = "light"
     has_caption: bool = True
+    is_captioned: bool = False
     all_vectors: bool = False
     is_reproducible: bool = False
 
@@ -153,7 +155,7 @@ def figure_bytes(
     ground: Ground = form.ground  # type: ignore[assignment]
     dots = form.dpi / VECTOR_DPI
     look = Look(form.look_theme, ground, renderer, cameras or {}, surface, dots,
-                form.has_caption)
+                form.has_caption, form.is_captioned)
     return _WRITERS[kind](figure, look, form)
 
 

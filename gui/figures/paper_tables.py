@@ -19,10 +19,11 @@ from gui.figures.paper import (
     wrapped_height,
 )
 
-_PAD = 1.6  # mm between columns, half on either side
+_PAD = 3.0  # mm between columns, half on either side
+_EDGE = 0.8  # mm from the left of a column to its text
 _LEAD = 0.55  # mm above and below the text of a row
-_LEAST_WORDS = 24.0  # mm: a column of words is never narrower
-_KEPT_ROWS = 3  # a table begins on a page that has room for so many rows
+_KEPT_ROWS = 8  # a table of up to so many rows is never parted
+_FIRST_ROWS = 3  # a longer one begins on a page that has room for so many rows
 
 
 @dataclass(frozen=True, eq=False)
@@ -50,8 +51,9 @@ def lay_table(paper: Paper, table: Table) -> None:
     grid = _measure(table, paper.room)
     heights = [_row_height(grid, row, grid.font) for row in table.rows]
     head = _row_height(grid, table.header, grid.bold) if table.header else 0.0
+    kept = len(heights) if len(heights) <= _KEPT_ROWS else _FIRST_ROWS
     title = line_of(grid.bold) + mm(0.8) if table.title else 0.0
-    paper.keep(title + head + sum(heights[:_KEPT_ROWS]) + mm(1.0))
+    paper.keep(title + head + sum(heights[:kept]) + mm(1.0))
     if table.title:
         lay_text(paper, table.title, page_font("small", bold=True))
         paper.y += mm(0.8)
@@ -84,20 +86,33 @@ def _measure(table: Table, room: float) -> _Grid:
 
 
 def _squeezed(grid: _Grid, room: float) -> list[float]:
-    """Return widths that fit: the widest columns of words give way, as much as they can."""
+    """Return widths that fit: columns of words give way, the widest first.
+
+    No column becomes narrower than its longest word.
+    """
     widths = list(grid.widths)
-    words = [column for column in range(len(widths)) if grid.is_words(column)]
-    while sum(widths) > room + 1.0 and words:
+    floors = [_floor(grid, column) for column in range(len(widths))]
+    for _ in range(4 * len(widths)):
         over = sum(widths) - room
-        widest = max(words, key=lambda column: widths[column])
-        others = [widths[column] for column in words if column != widest]
-        floor = max(max(others, default=0.0), mm(_LEAST_WORDS))
-        if widths[widest] - over >= floor or widths[widest] <= floor:
-            widths[widest] = max(widths[widest] - over, mm(_LEAST_WORDS))
-            words.remove(widest)
-        else:
-            widths[widest] = floor - 1.0
+        free = [k for k, width in enumerate(widths) if width > floors[k] + 1.0]
+        if over <= 1.0 or not free:
+            break
+        widest = max(free, key=lambda k: widths[k])
+        next_wide = max((widths[k] for k in free if k != widest), default=0.0)
+        least = max(floors[widest], min(next_wide, widths[widest] - over / 2))
+        widths[widest] = max(widths[widest] - over, least)
     return widths
+
+
+def _floor(grid: _Grid, column: int) -> float:
+    """Return the least width of a column: of its longest word, or of a number as it is."""
+    if not grid.is_words(column):
+        return grid.widths[column]
+    metrics = QFontMetricsF(grid.bold)
+    words = [word for row in (*grid.table.rows, grid.table.header) if column < len(row)
+             for word in row[column].split(" ")]
+    longest = max((metrics.horizontalAdvance(word) for word in words), default=0.0)
+    return min(grid.widths[column], longest + mm(_PAD) + 2.0)
 
 
 def _row_height(grid: _Grid, row: tuple[str, ...], font: QFont) -> float:
@@ -121,7 +136,7 @@ def _lay_row(
     for column, text in enumerate(row):
         width = grid.widths[column]
         if text:
-            cell = QRectF(x + mm(_PAD) / 2, paper.y + mm(_LEAD), width - mm(_PAD),
+            cell = QRectF(x + mm(_EDGE), paper.y + mm(_LEAD), width - mm(_PAD),
                           height - 2 * mm(_LEAD) + 1.0)
             flags = int(Qt.TextFlag.TextWordWrap) if grid.is_words(column) else int(
                 Qt.AlignmentFlag.AlignRight | Qt.TextFlag.TextDontClip)

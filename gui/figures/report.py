@@ -17,7 +17,7 @@ from PySide6.QtGui import QPageSize, QPainter
 from core.captions import one_of
 from core.report_blocks import Figure, Paragraph, Report, Section, SignOff, Table
 from core.state import BenchState
-from gui.figures.drawing import Drawable, Look, drawable, draw_figure
+from gui.figures.drawing import Drawable, Look, draw_figure, drawable
 from gui.figures.export import (
     VECTOR_DPI,
     FigureForm,
@@ -85,11 +85,15 @@ def report_steps(report: Report, kind: str, press: Press) -> Steps:
 
 def run(steps: Steps, tell: Callable[[float], None] = lambda fraction: None) -> bytes:
     """Make a report in one go, telling how far it has come."""
-    while True:
-        try:
-            tell(next(steps))
-        except StopIteration as end:
-            return bytes(end.value)
+    made = b""
+
+    def whole() -> Iterator[float]:
+        nonlocal made
+        made = yield from steps
+
+    for fraction in whole():
+        tell(fraction)
+    return made
 
 
 # --- PDF ------------------------------------------------------------------------------------
@@ -170,16 +174,24 @@ def _lay_figures(paper: Paper, figures: list[Figure], press: Press) -> None:
     widths = [mm(width) for width, _ in sizes]
     height = mm(max(height for _, height in sizes))
     words = [f"Figure {figure.number}. {figure.caption}" for figure in figures]
-    below = max(wrapped_height(font, text, width)
-                for text, width in zip(words, widths, strict=True))
+    alone = len(figures) == 1 and _is_narrow(figures[0])
+    below = 0.0 if alone else max(wrapped_height(font, text, width)
+                                  for text, width in zip(words, widths, strict=True))
     paper.keep(height + below + mm(2.0))
     draws = [_FigurePaint(figure, press) for figure in figures]
     before = len(paper.pages[-1])
     places = lay_side_by_side(paper, widths, height, draws)
     paper.pages[-1][before:] = [
         replace(draw, rect=place) for draw, place in zip(draws, places, strict=True)]
+    if alone:  # the caption stands beside it, at its foot
+        gap = mm(4.0)
+        room = paper.room - widths[0] - gap
+        tall = wrapped_height(font, words[0], room)
+        rect = QRectF(places[0].right() + gap, places[0].bottom() - tall, room, tall + 1.0)
+        paper.put(text_paint(rect, words[0], font, "secondary"))
+        words = []
     paper.y += mm(1.0)
-    for text, place in zip(words, places, strict=True):
+    for text, place in zip(words, places, strict=False):
         rect = QRectF(place.left(), paper.y, place.width(), below + 1.0)
         paper.put(text_paint(rect, text, font, "secondary"))
     paper.y += below + mm(5.0)
@@ -198,7 +210,7 @@ class _FigurePaint:
         press = self.press
         shown: Drawable = drawable(press.state, self.figure.choice)
         look = Look(LIGHT, "white", press.renderer, press.cameras, "picture",
-                    _DPI / VECTOR_DPI, has_caption=False)
+                    _DPI / VECTOR_DPI, has_caption=False, is_captioned=True)
         form = FigureForm(text_pt=_TEXT_POINTS)
         draw_figure(painter, rect or self.rect, shown, look, text_scale(form, VECTOR_DPI))
 
@@ -295,7 +307,7 @@ def _html_table(table: Table) -> str:
 def _html_figure(figure: Figure, press: Press) -> str:
     """Return a figure as an SVG picture inside the page, its caption as text."""
     width, height = figure_size(figure)
-    form = FigureForm(width, height, _DPI, _TEXT_POINTS, has_caption=False)
+    form = FigureForm(width, height, _DPI, _TEXT_POINTS, has_caption=False, is_captioned=True)
     data = figure_bytes(drawable(press.state, figure.choice), "svg", form, press.renderer,
                         press.cameras)
     words = html.escape(f"Figure {figure.number}. {figure.caption}")

@@ -97,15 +97,17 @@ class PlaneCombo(QComboBox):
     def _finish(self) -> None:
         """Send a typed text; an empty one means that nothing was meant."""
         text = self.currentText().strip()
-        if text in ("", OTHER):
+        if text in ("", OTHER, self._words):
             self.restore()
-        elif text != self._words:
+        else:
             index = self.findText(text, Qt.MatchFlag.MatchFixedString)
             self._send(text if index < 0 else str(self.itemData(index)))
 
     def _send(self, plane: str) -> None:
         """Send a plane once: Enter is told of both as a choice and as an end of editing."""
-        if plane not in (self._plane, self._sent):
+        if plane == self._plane:
+            self.restore()
+        elif plane != self._sent:
             self._sent = plane
             self.chosen.emit(plane)
 

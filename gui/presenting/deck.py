@@ -36,12 +36,14 @@ from gui.presenting.stage import (
     sides,
     unit_vector,
 )
+from gui.stage.remembered import Remembered
 from gui.viewdata import Curve, HemisphereView, SectionView, SourceView, SweepView
 
 _ON_PLANE = 0.02  # |n·pin| below which the pin is drawn on the section
 _SECTION_CLIP = {"focusing": 20.0}  # infinite on caustics: the plot stops here
 _TICK_STEP = 24  # every so many points of a section carry a polarisation tick
 _COST_LEVEL = 5
+_contours: Remembered[tuple[tuple[float, FloatArray], ...]] = Remembered(4)
 
 
 def shown_sides(state: BenchState) -> tuple[str, ...]:
@@ -171,7 +173,7 @@ def _section_ticks(
     found = live.section(medium, state.quantity, state.section)
     circle = live.section_circle(state.section)
     polarisation = modes(medium, circle).polarisation
-    size = 0.03 * float(np.nanmax(np.abs(found.points), initial=1.0))
+    size = 0.03 * float(np.nanmax(np.abs(found.points), initial=0.0))
     lines = []
     for sheet, visible in enumerate(state.display.sheets):
         if visible:
@@ -206,18 +208,20 @@ def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
     """
     size = live.DISC_SIZE if fine else live.COARSE_DISC_SIZE
     shown = quantity(state.quantity)
-    known = shown_sides(state)
-    choice = _hemisphere_choice(state, known)
+    choice = _hemisphere_choice(state)
+    sides_wanted = _sides_of(state, choice)
+    known = all(side in shown_sides(state) for side in sides_wanted)
     projection = state.display.projection
     sheet = min(state.display.hemisphere_sheet, shown.sheets - 1)
-    title = quantity_title(shown)
-    if not known:
-        picture = np.full((2, 2), np.nan)
-        about = ColourOf(title)
-    else:
-        picture, about = _hemisphere_picture(state, shown, choice, sheet, size)
-    scale = scale_view(about, *_picture_range(picture, projection, size))
-    levels = [value for value, _ in scale.ticks]
+    picture = np.full((2, 2), np.nan)
+    if known:
+        media = tuple(_medium(state, side) for side in sides_wanted)
+        picture = _disc_values(
+            media, shown.key, choice, sheet, projection, state.cutting_error_deg, size
+        )
+    about = _colour_of(state, shown, choice, sides_wanted)
+    scale = scale_view(about, *_picture_range(about, picture, projection, size))
+    levels = tuple(value for value, _ in scale.ticks)
     return HemisphereView(
         title=about.title,
         picture=picture,
@@ -233,11 +237,14 @@ def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
     )
 
 
-def _picture_range(picture: FloatArray, projection: str, size: int) -> tuple[float, float]:
+def _picture_range(
+    about: ColourOf, picture: FloatArray, projection: str, size: int
+) -> tuple[float, float]:
     """Return the least and the greatest value of a picture that its colours tell apart."""
     if not np.isfinite(picture).any():
         return 0.0, 1.0
-    limit = drawable_limit(picture[live.disc(projection, size)[1]])
+    values = picture[live.disc(projection, size)[1]]
+    limit = np.inf if about.logarithmic else drawable_limit(values)
     low, high = float(np.nanmin(picture)), float(np.nanmax(picture))
     return max(low, -limit), min(high, limit)
 
@@ -248,36 +255,47 @@ def _hemisphere_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
     return tuple((key, _SHOWN[key]) for key in keys)
 
 
-def _hemisphere_choice(state: BenchState, known: tuple[str, ...]) -> str:
+def _hemisphere_choice(state: BenchState) -> str:
     choice = state.display.hemisphere
     offered = [key for key, _ in _hemisphere_choices(state)]
-    if choice not in offered or (choice == "difference" and len(known) < 2):
-        return offered[0]
-    return choice
+    return choice if choice in offered else offered[0]
 
 
-def _hemisphere_picture(
-    state: BenchState, shown: Quantity, choice: str, sheet: int, size: int
-) -> tuple[FloatArray, ColourOf]:
-    projection = state.display.projection
-    known = shown_sides(state)
+def _sides_of(state: BenchState, choice: str) -> tuple[str, ...]:
+    """Return the sides that a choice of the hemisphere is about."""
+    if choice == "difference":
+        return ("A", "B")
+    return (choice,) if choice in ("A", "B") else (shown_sides(state) or sides(state))[:1]
+
+
+def _colour_of(
+    state: BenchState, shown: Quantity, choice: str, about: tuple[str, ...]
+) -> ColourOf:
+    """Return what the colours of the hemisphere tell."""
     title = quantity_title(shown)
     if choice == "difference":
-        a, b = (
-            live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
-            for side in ("A", "B")
-        )
-        return b - a, ColourOf(f"B − A: {title}", diverging=True)
-    side = choice if choice in known else known[0]
+        return ColourOf(f"B − A: {title}", diverging=True)
     if choice == "cost":
-        picture = _cost_picture(
-            _medium(state, side), shown.key, projection, state.cutting_error_deg, size
-        )[sheet]
-        return picture, ColourOf(
-            f"change of {title} within ±{state.cutting_error_deg:g}° ({side})"
-        )
-    picture = live.hemisphere(_medium(state, side), shown.key, projection, size)[sheet]
-    return picture, ColourOf(title, shown.signed, shown.logarithmic)
+        return ColourOf(f"change of {title} within ±{state.cutting_error_deg:g}° ({about[0]})")
+    return ColourOf(title, shown.signed, shown.logarithmic)
+
+
+@lru_cache(maxsize=8)
+def _disc_values(
+    media: tuple[Medium, ...],
+    key: str,
+    choice: str,
+    sheet: int,
+    projection: str,
+    delta: float,
+    size: int,
+) -> FloatArray:
+    """Return the picture of one sheet; the same request gives the same object."""
+    if choice == "cost":
+        costs: FloatArray = _cost_picture(media[0], key, projection, delta, size)[sheet]
+        return costs
+    values = [live.hemisphere(medium, key, projection, size)[sheet] for medium in media]
+    return values[1] - values[0] if choice == "difference" else values[0]
 
 
 @lru_cache(maxsize=4)
@@ -306,9 +324,15 @@ def _nearest_vertices(projection: str, size: int) -> IntArray:
 
 
 def _contour_lines(
-    picture: FloatArray, levels: list[float]
+    picture: FloatArray, levels: tuple[float, ...]
 ) -> tuple[tuple[float, FloatArray], ...]:
-    """Return contour lines of the picture in disc coordinates."""
+    """Return contour lines of the picture in disc coordinates, remembered by the picture."""
+    return _contours.get((picture, levels), lambda: _trace(picture, levels))
+
+
+def _trace(
+    picture: FloatArray, levels: tuple[float, ...]
+) -> tuple[tuple[float, FloatArray], ...]:
     import pyqtgraph as pg
 
     size = picture.shape[0]

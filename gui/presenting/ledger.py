@@ -68,7 +68,8 @@ def verdict_of(specimen: Specimen) -> Verdict:
     """Return the verdict on a specimen."""
     std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
     stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
-    return judge(stiffness, claimed_class(specimen), std)
+    covariance = None if specimen.covariance is None else np.array(specimen.covariance)
+    return judge(stiffness, claimed_class(specimen), std, covariance)
 
 
 def verdict_view(specimen: Specimen) -> VerdictView:

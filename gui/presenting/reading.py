@@ -46,6 +46,7 @@ def reading_view(state: BenchState) -> ReadingView:
         rows,
         bool(a and b),
         notice,
+        sides(state)[0],
     )
 
 

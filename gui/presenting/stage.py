@@ -305,12 +305,8 @@ def pane_title(state: BenchState, side: str) -> str:
     words = choice.text if choice.text != "identity" else "part axes = crystal axes"
     if any(choice.turn):
         words += ", turned " + " ".join(f"{x:g}°" for x in choice.turn)
-    name = state.specimen_of(side).name
-    return (
-        f"{name} · {words}".replace("-", "−")
-        if state.other is not None
-        else (words.replace("-", "−"))
-    )
+    words = words.replace("-", "−")
+    return words if state.other is None else f"{state.specimen_of(side).name} · {words}"
 
 
 def _triads(state: BenchState, side: str) -> tuple[Triad, ...]:

@@ -16,7 +16,10 @@ BOTH = (
     Column("B \N{MINUS SIGN} A", "number"),
     Column("", "unit"),
 )
-ONE = (Column("", "label"), Column("A", "number", "a"), Column("", "unit"))
+ONE = {
+    side: (Column("", "label"), Column(side, "number", side.lower()), Column("", "unit"))
+    for side in "AB"
+}
 
 
 def _line(row: ReadingRow, has_b: bool) -> Line:
@@ -72,7 +75,7 @@ class PinTable(QWidget):
         self._notice = label(role="secondary", wrap=True)
         self._notice.hide()
         self._lay_out()
-        self.direction.returnPressed.connect(self._go)
+        self.direction.finished.connect(self._go)
         self.table.opened.connect(self._choose)
 
     def _lay_out(self) -> None:
@@ -92,11 +95,11 @@ class PinTable(QWidget):
         """Show the numbers; a typed direction goes when the pin has moved."""
         if view.where != self._where_text:
             self._where_text = view.where
-            self.direction.clear()
             self.direction.clear_error()
+            self.direction.show_text("")
         self._where.setText(view.where)
-        self._near["A"].show_text(view.near_a)
-        self._near["B"].show_text(view.near_b if view.has_b else "")
+        for side, text in (("A", view.near_a), ("B", view.near_b)):
+            self._near[side].show_text(text if view.has_b or view.side == side else "")
         lines: list[Line] = []
         keys: list[str] = []
         group = ""
@@ -108,7 +111,7 @@ class PinTable(QWidget):
             lines.append(_line(row, view.has_b))
             keys.append(row.key)
         self._keys = tuple(keys)
-        self.table.show_lines(BOTH if view.has_b else ONE, tuple(lines))
+        self.table.show_lines(BOTH if view.has_b else ONE[view.side], tuple(lines))
         set_or_hide(self._notice, view.notice)
 
     def show_error(self, field: str, message: str) -> None:
@@ -119,11 +122,9 @@ class PinTable(QWidget):
         """Take the mark off the direction."""
         self.direction.clear_error()
 
-    def _go(self) -> None:
-        text = self.direction.text().strip()
-        if text:
-            self.direction.clear_error()
-            self.direction_typed.emit(text)
+    def _go(self, field: str, text: str) -> None:
+        if text.strip():
+            self.direction_typed.emit(text.strip())
 
     def _choose(self, row: int) -> None:
         if self._keys[row]:

@@ -197,7 +197,7 @@ def test_no_document_holds_what_json_has_not(run, folder):
         (["compare", "cube.json", "--a", "sideways"], "not an orientation"),
         (["compare", "cube.json", "--a"], "expected one argument"),
         (["sumary", "cube.json"], "“sumary” is not a verb. Did you mean summary?"),
-        (["frobnicate"], "There are summary, along, rotate, compare."),
+        (["frobnicate"], "There are summary, along, rotate, compare"),
         ([], "VERB"),
         (["--frobnicate"], "See tricline --help."),
     ],

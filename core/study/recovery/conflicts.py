@@ -8,7 +8,7 @@ from scipy.special import gammaincc, ndtri
 from core.arrays import BoolArray, FloatArray, IntArray
 from core.study.recovery.descent import Goal, Trial, descend
 from core.study.recovery.evidence import Spectrum, diagnose
-from core.study.recovery.search import spectrum_at, weights_of
+from core.study.recovery.spectrum import spectrum_at, weights_of
 from core.tensor.notation import stiffness_to_kelvin
 
 UNLIKELY = 1e-3

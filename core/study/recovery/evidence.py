@@ -77,7 +77,7 @@ class Spectrum:
 
 
 def spectrum_of(
-    jacobian: FloatArray, relative: FloatArray, basis: Basis, typical: float
+    jacobian: FloatArray, squared: FloatArray, basis: Basis, typical: float
 ) -> Spectrum:
     """Return the singular spectrum of a weighted Jacobian.
 
@@ -85,9 +85,9 @@ def spectrum_of(
     ----------
     jacobian : (M, P) array
         d residual / d constant, 1/GPa.
-    relative : (M, P) array
-        The same for residuals that are relative changes of speed: the floor under the largest
-        singular value must not depend on how unequal the uncertainties are.
+    squared : (M, P) array
+        Derivatives of ρv² in any unit: the floor under the largest singular value must depend
+        neither on how unequal the uncertainties are nor on how slow the slowest wave is.
     basis : Basis
     typical : float
         Mean eigenstiffness, GPa.
@@ -96,7 +96,7 @@ def spectrum_of(
     _left, values, right = np.linalg.svd(_to_kelvin(jacobian, basis))
     singular = np.zeros(size)
     singular[: values.size] = values
-    plain = np.linalg.svd(_to_kelvin(relative, basis), compute_uv=False)
+    plain = np.linalg.svd(_to_kelvin(squared, basis), compute_uv=False)
     certain = int((singular * SEEN_PART * typical > 1.0).sum())
     rank = min(certain, int((plain > RELATIVE_FLOOR * plain[0]).sum()))
     changes = solve_triangular(basis.kelvin_root, right.T, lower=True, trans="T")

@@ -87,6 +87,11 @@ def basis_of(cls: CrystalClass) -> Basis:
     return Basis(cls, read_only(np.array(tables)), read_only(root))
 
 
+def mean_stiffness(basis: Basis, constants: FloatArray) -> float:
+    """Return the mean eigenstiffness, GPa: the trace of the Kelvin form over six."""
+    return float(np.trace(stiffness_to_kelvin(basis.table(constants)))) / 6.0
+
+
 @dataclass(frozen=True, eq=False)
 class Survey:
     """Wave normals and the readings along them, ready for many evaluations.

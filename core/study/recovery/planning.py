@@ -19,9 +19,15 @@ from core.directional.medium import Medium
 from core.directional.sphere import directions, pair_products, sphere_mesh
 from core.study.recovery.evidence import Spectrum, spectrum_of
 from core.study.recovery.fit import Fit
-from core.study.recovery.model import Basis, basis_of, predict, survey_of, waves
+from core.study.recovery.model import (
+    Basis,
+    basis_of,
+    mean_stiffness,
+    predict,
+    survey_of,
+    waves,
+)
 from core.study.recovery.readings import DEFAULT_RELATIVE_SIGMA
-from core.study.recovery.search import mean_stiffness
 from core.tensor.stiffness import Stiffness
 from core.tensor.symmetry import CrystalClass, laue_rotations
 
@@ -155,7 +161,9 @@ def rank_next(
         raise ValueError("the functional criterion needs the gradient of a number")
     basis = basis_of(fit.cls)
     vectors = candidate_directions() if candidates is None else directions(candidates).n
-    rows = _rows_along(basis, fit.density, fit.constants, vectors, sheets, relative_sigma)
+    rows, _speed = _rows_along(
+        basis, fit.density, fit.constants, vectors, sheets, relative_sigma
+    )
     covariance = _loose_inverse(basis, fit.information, fit.constants)
     update = _Update.of(covariance, rows)
     before = np.sqrt(np.diag(covariance))
@@ -215,15 +223,16 @@ def _rows_along(
     vectors: FloatArray,
     sheets: Sequence[int],
     relative_sigma: float,
-) -> FloatArray:
-    """Return the weighted derivatives (K, S, P) of the waves along each direction, 1/GPa."""
+) -> tuple[FloatArray, FloatArray]:
+    """Return weighted derivatives (K, S, P), 1/GPa, and speeds (K, S) along K directions."""
     count = vectors.shape[1]
     place = np.repeat(np.arange(count), len(sheets))
     survey = survey_of(basis, density, vectors, place)
     chosen = np.tile(np.array(sheets, dtype=np.intp) - 1, count)[None]
     speed, slopes = predict(survey, waves(survey, constants[None]), chosen)
     rows = slopes[0] / (relative_sigma * speed[0])[:, None]
-    return np.asarray(rows.reshape(count, len(sheets), basis.size))
+    shape = (count, len(sheets))
+    return rows.reshape(*shape, basis.size), speed.reshape(shape)
 
 
 def _loose_inverse(basis: Basis, information: FloatArray, constants: FloatArray) -> FloatArray:
@@ -317,7 +326,9 @@ def plan(
     constants = basis.constants(medium.stiffness.voigt)
     default = candidate_directions(_PLAN_LEVEL)
     vectors = default if candidates is None else directions(candidates).n
-    rows = _rows_along(basis, medium.density, constants, vectors, sheets, relative_sigma)
+    rows, speed = _rows_along(
+        basis, medium.density, constants, vectors, sheets, relative_sigma
+    )
     typical = mean_stiffness(basis, constants)
     loose = _prior(basis, typical)
     chosen: list[int] = []
@@ -326,7 +337,7 @@ def plan(
         if size < _fewest(basis.size, len(sheets)):
             continue
         chosen = _exchanged(rows, chosen, loose)
-        seen = _spectrum(rows, chosen, basis, relative_sigma, typical)
+        seen = _spectrum(rows[chosen], speed[chosen], basis, typical)
         if not _sees_all(seen, basis.size):
             continue
         information = np.einsum("ksp,ksq->pq", rows[chosen], rows[chosen])
@@ -368,12 +379,11 @@ def _exchanged(rows: FloatArray, chosen: list[int], loose: FloatArray) -> list[i
     return best
 
 
-def _spectrum(
-    rows: FloatArray, chosen: list[int], basis: Basis, sigma: float, typical: float
-) -> Spectrum:
-    """Return the singular spectrum of the readings of a set of blanks."""
-    jacobian = rows[chosen].reshape(-1, basis.size)
-    return spectrum_of(jacobian, jacobian * sigma, basis, typical)
+def _spectrum(rows: FloatArray, speed: FloatArray, basis: Basis, typical: float) -> Spectrum:
+    """Return the singular spectrum of blanks with derivatives (N, S, P) and speeds (N, S)."""
+    squared = rows * speed[:, :, None] ** 2
+    flat = (-1, basis.size)
+    return spectrum_of(rows.reshape(flat), squared.reshape(flat), basis, typical)
 
 
 def _sees_all(seen: Spectrum, size: int) -> bool:

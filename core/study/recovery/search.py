@@ -6,15 +6,15 @@ from dataclasses import dataclass
 import numpy as np
 
 from core.arrays import FloatArray
-from core.study.recovery.descent import HUBER, Goal, Trial, descend
-from core.study.recovery.doubt import without_slope
-from core.study.recovery.evidence import Spectrum, spectrum_of
+from core.study.recovery.descent import Goal, Trial, descend
+from core.study.recovery.evidence import Spectrum
 from core.study.recovery.fit import FitOptions
-from core.study.recovery.model import Basis
+from core.study.recovery.model import Basis, mean_stiffness
+from core.study.recovery.parsimony import simplest
 from core.study.recovery.problem import Problem, with_direction_sigma, with_ray_normals
+from core.study.recovery.spectrum import spectrum_at, weights_of
 from core.study.recovery.starts import isotropic_start, start_batches
 from core.task import Ticker
-from core.tensor.notation import stiffness_to_kelvin
 
 ANCHOR_PART = 0.3
 """Of the mean eigenstiffness: how loosely a fit is held to its start, for what is not seen."""
@@ -24,8 +24,6 @@ _SAME_COST = 1e-3  # relative
 _ROUGH_RAY = 0.03  # of a group speed: what taking its ray for the wave normal may cost
 _ROUNDS = 25
 _SETTLED = 1e-7  # relative change of the constants between rounds
-_DOUBTFUL_ROUNDS = 6
-_GIVEN_UP = 9.0  # rise of χ² allowed for each combination given up: three σ
 _ANOTHER = 0.01  # relative Kelvin distance beyond which two solutions differ
 
 
@@ -65,25 +63,14 @@ class Found:
         return weights_of(self.goal, self.trial)
 
 
-def weights_of(goal: Goal, trial: Trial) -> FloatArray:
-    """Return what each reading (M,) counts in the fit."""
-    size = np.abs(trial.residuals[0])
-    return HUBER / np.maximum(size, HUBER) if goal.robust else np.ones_like(size)
-
-
-def mean_stiffness(basis: Basis, constants: FloatArray) -> float:
-    """Return the mean eigenstiffness, GPa; of any crystal, the trace of its Kelvin form / 6."""
-    return float(np.trace(stiffness_to_kelvin(basis.table(constants)))) / 6.0
-
-
 def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
     """Return the constants that fit the readings best.
 
     Starts are tried in batches of 1, 4, 8, 12 and 15, the first being the isotropic crystal
     with the median speeds (and the prior, if there is one). The search stops when χ² is below
     dof + 6 √(2 dof), when at least three of 25 starts have arrived at one best place, or after
-    the last batch. With fewer spare readings than constants a second batch is always tried, since
-    several crystals may fit.
+    the last batch. With no more spare readings than constants a second batch is always tried,
+    since several crystals may fit.
     """
     first = isotropic_start(problem.readings, problem.survey.density, problem.basis)
     anchor, also = first, []
@@ -97,7 +84,7 @@ def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
     )  # fmt: skip
     trial, starts, rival = _multistart(goal, first, also, options.seed, ticker)
     problem, goal, trial = _refine(problem, goal, trial, options)
-    trial, spectrum = _give_up_doubtful(goal, trial)
+    trial, spectrum = simplest(goal, trial)
     if spectrum.rank == problem.basis.size:
         goal = goal.without_anchor()
         trial = descend(goal, trial.constants)
@@ -113,7 +100,7 @@ def _multistart(
     spare = goal.survey.count - basis.size
     dof = max(spare, 1)
     enough = dof + 6.0 * np.sqrt(2.0 * dof)
-    fewest = 2 if 0 <= spare < basis.size else 1
+    fewest = 2 if 0 <= spare <= basis.size else 1
     best: Trial | None = None
     costs: list[float] = []
     rivals = np.empty((0, basis.size))
@@ -171,38 +158,9 @@ def _refine(
     return problem, goal, trial
 
 
-def _give_up_doubtful(goal: Goal, trial: Trial) -> tuple[Trial, Spectrum]:
-    """Return the fit and its spectrum with what only looks seen put where it is not.
-
-    It is given up only if χ² hardly rises and the rank falls: otherwise the readings do see
-    it, if not in a linear way.
-    """
-    first = spectrum = spectrum_at(goal, trial)
-    now, given_up = trial, 0
-    for _ in range(_DOUBTFUL_ROUNDS):
-        typical = mean_stiffness(goal.survey.basis, now.constants[0])
-        found = without_slope(goal, now, spectrum, typical)
-        if found is None:
-            break
-        held, count = found
-        given_up = max(given_up, count)
-        if held.chi2[0] - trial.chi2[0] > _GIVEN_UP * given_up:
-            break
-        now, spectrum = held, spectrum_at(goal, held)
-    return (now, spectrum) if spectrum.rank < first.rank else (trial, first)
-
-
 def goal_for(problem: Problem, like: Goal) -> Goal:
     """Return a goal like another for a problem with other normals or uncertainties."""
     return Goal(
         problem.survey, problem.assignment, problem.measured * problem.cosine,
         problem.sigma * problem.cosine, like.robust, like.anchor, like.anchor_sigma,
     )  # fmt: skip
-
-
-def spectrum_at(goal: Goal, trial: Trial) -> Spectrum:
-    """Return what the readings of a goal see of the constants at a crystal."""
-    basis = goal.survey.basis
-    jacobian = trial.jacobian[0] * np.sqrt(weights_of(goal, trial))[:, None]
-    relative = trial.jacobian[0] * (goal.sigma / goal.speeds)[:, None]
-    return spectrum_of(jacobian, relative, basis, mean_stiffness(basis, trial.constants[0]))
