@@ -64,17 +64,19 @@ class FigureChoice:
 
 
 def one_of(key: str, choices: dict[str, str], name: str) -> str:
-    """Return a key that is among some.
+    """Return a key that is among some, small and capital letters being alike.
 
     Raises
     ------
     InputError
         If it is not; the hint names the nearest, or all.
     """
-    if key in choices:
-        return key
-    near = difflib.get_close_matches(key.strip().lower(), choices, n=1)
-    hint = f"Did you mean '{near[0]}'?" if near else f"There are {', '.join(choices)}."
+    known = {choice.lower(): choice for choice in choices}
+    given = key.strip().lower()
+    if given in known:
+        return known[given]
+    near = difflib.get_close_matches(given, known, n=1)
+    hint = f"Did you mean '{known[near[0]]}'?" if near else f"There are {', '.join(choices)}."
     raise InputError(f"'{key}' is no {name}.", hint, name)
 
 

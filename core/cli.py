@@ -15,7 +15,7 @@ import sys
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any, NoReturn
 
-from core import figure_words
+from core import figure_words, recovery_words
 from core.errors import InputError
 from core.version import VERSION
 
@@ -249,6 +249,11 @@ _VERBS: dict[str, tuple[str, str, Callable[[argparse.ArgumentParser], None]]] = 
     "along": ("every quantity along directions", _ALONG, _add_along),
     "rotate": ("the 6x6 in part axes, and engineering constants", _ROTATE, _add_rotate),
     "compare": ("two orientations, or two crystals, side by side", _COMPARE, _add_compare),
+    "recover": (
+        "constants from measured wave speeds",
+        recovery_words.RECOVER_HELP,
+        recovery_words.add_recover,
+    ),
     "section": (
         "a polar section, as numbers or as a figure",
         figure_words.SECTION_HELP,

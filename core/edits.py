@@ -189,6 +189,17 @@ def paste_guesses(face: str, text: str) -> tuple[str, ...]:
     return read_table(text, PASTED).guesses
 
 
+def is_open_table(face: str, text: str) -> bool:
+    """Return whether a text is a whole table about which the user has to be asked something."""
+    try:
+        if _smaller_block(text) is not None:
+            return False
+        readings = understand(text, _READ_AS[face], PASTED).readings
+    except InputError:
+        return False
+    return face == "stiffness" and any(reading.question for reading in readings)
+
+
 def _smaller_block(text: str) -> FloatArray | None:
     """Return a pasted block that is less than a table; None for a table.
 
@@ -249,20 +260,20 @@ def set_class(specimen: Specimen, key: str, unique_axis: str | None = None) -> S
     axis = unique_axis or specimen.unique_axis
     axis = crystal_class("monoclinic", axis).unique_axis  # refuses what is no axis
     claimed = crystal_class(key, axis)
-    changed = _changed(specimen, lambda table: complete(table, claimed))
+    changed = changed_by(specimen, lambda table: complete(table, claimed))
     return replace(changed, crystal_class=claimed.key, unique_axis=axis)
 
 
 def make_exact(specimen: Specimen) -> Specimen:
     """Return the specimen with the nearest table of its class (Kelvin norm)."""
     claimed = claimed_class(specimen)
-    return _changed(specimen, lambda table: project(table, claimed))
+    return changed_by(specimen, lambda table: project(table, claimed))
 
 
-def _changed(specimen: Specimen, change: Change) -> Specimen:
+def changed_by(specimen: Specimen, change: Change) -> Specimen:
     """Return the specimen with a linear change of its table, the uncertainties with it."""
     table = change(np.array(specimen.stiffness))
-    covariance = _covariance(specimen)
+    covariance = covariance_of(specimen)
     if covariance is None:
         return replace(specimen, stiffness=as_matrix(table))
     after = carried(covariance, change)
@@ -274,8 +285,12 @@ def _changed(specimen: Specimen, change: Change) -> Specimen:
     )
 
 
-def _covariance(specimen: Specimen) -> FloatArray | None:
-    """Return what is known of the errors as one covariance (21, 21), GPa², or None."""
+def covariance_of(specimen: Specimen) -> FloatArray | None:
+    """Return what is known of the errors as one covariance (21, 21), GPa², or None.
+
+    Uncertainties without correlations are those of independent constants: of the free ones of
+    the class where the table has its form, else of all 21.
+    """
     if specimen.covariance is not None:
         return np.array(specimen.covariance)
     if specimen.stiffness_std is None:
@@ -366,8 +381,17 @@ def set_axes(specimen: Specimen, axes: str, re_express: bool) -> Specimen:
             "axes",
         )
     turn = change_of_axes(specimen.cell, specimen.crystal_axes, canonical)
-    covariance = _covariance(specimen)
+    return replace(turned(specimen, turn), crystal_axes=canonical)
+
+
+def turned(specimen: Specimen, rotation: FloatArray) -> Specimen:
+    """Return the specimen with its numbers in other Cartesian axes, v_new = rotation v_old.
+
+    What is said of the axes stays as it was.
+    """
+    covariance = covariance_of(specimen)
     if covariance is not None:  # turned errors are correlated, even where they were not
         specimen = replace(specimen, covariance=as_matrix(covariance))
-    turned = _changed(specimen, lambda table: Stiffness.from_voigt(table).rotate(turn).voigt)
-    return replace(turned, crystal_axes=canonical)
+    return changed_by(
+        specimen, lambda table: Stiffness.from_voigt(table).rotate(rotation).voigt
+    )

@@ -99,6 +99,19 @@ def with_deviation(value: float, deviation: float) -> str:
     return f"{rounded:.{max(place, 0)}f} ± {spread}".replace("-", MINUS)
 
 
+def bracketed(value: float, deviation: float) -> str:
+    """Return "51.37(32)": like `with_deviation`, the uncertainty in units of the last digit.
+
+    An uncertainty of ten or more is written out: "168(12)", "1230(120)".
+    """
+    text = with_deviation(value, deviation)
+    number, plus_minus, spread = text.partition(" ± ")
+    if not plus_minus:
+        return text
+    digits = spread if float(spread) >= 10 else spread.replace(".", "").lstrip("0")
+    return f"{number}({digits})"
+
+
 def full_precision(value: float | None) -> str:
     """Return the shortest text that reads back to the same float, for files and copying.
 

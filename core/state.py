@@ -22,6 +22,22 @@ Vector3 = tuple[float, float, float]
 Matrix = tuple[tuple[float, ...], ...]
 Side = Literal["A", "B"]
 
+SPEED_COLUMNS = (
+    "direction",
+    "sheet",
+    "polarisation",
+    "kind",
+    "speed_m_s",
+    "sigma_m_s",
+    "thickness_mm",
+    "transit_us",
+    "sigma_us",
+    "path",
+    "delay_ns",
+    "sigma_mm",
+)
+"""What the cells of a row of measured speeds hold, in their order."""
+
 
 @dataclass(frozen=True)
 class Specimen:
@@ -87,6 +103,52 @@ class OrientationChoice:
 
 
 @dataclass(frozen=True)
+class MeasuredSpeeds:
+    """Readings of wave speeds as they were typed, and how they are to be fitted.
+
+    Attributes
+    ----------
+    rows : tuple of tuples of str
+        A cell of text for each of `SPEED_COLUMNS`; what is wrong with it is marked, not lost.
+    density : str
+        kg/m³, with its standard uncertainty where that is known: "2684 ± 1".
+    crystal_class, unique_axis : str
+        The symmetry whose independent constants are sought.
+    cell : UnitCell or None
+    crystal_axes : str
+        What indices refer to.
+    entered : "speed", "flight" or "both"
+        Which columns the table shows.
+    direction_sigma : str
+        Degrees: standard uncertainty of every direction; empty for none.
+    robust : bool
+        Let readings far off count less.
+    criterion : "determinant", "largest" or "functional"
+        What the next blank is to make more certain: all constants, the least certain one, or
+        Young's modulus along the pin.
+    comments : tuple of str
+        Comment lines of the file, kept on saving.
+    """
+
+    rows: tuple[tuple[str, ...], ...] = ()
+    density: str = ""
+    crystal_class: str = "triclinic"
+    unique_axis: str = "y"
+    cell: UnitCell | None = None
+    crystal_axes: str = DEFAULT_AXES
+    entered: str = "speed"
+    direction_sigma: str = ""
+    robust: bool = False
+    criterion: str = "determinant"
+    comments: tuple[str, ...] = ()
+
+    @property
+    def frame(self) -> CrystalFrame:
+        """The cell, axes and symmetry in which the directions are said."""
+        return CrystalFrame(self.cell, self.crystal_axes, self.crystal_class, self.unique_axis)
+
+
+@dataclass(frozen=True)
 class Display:
     """How the bench is looked at: everything a reopened bench must show again.
 
@@ -123,6 +185,12 @@ class Display:
         Face of the constants grid: "stiffness", "compliance" or "uncertainty".
     hemisphere_sheet : int
         Which sheet the hemisphere shows of three: 0, 1, 2 from the fastest.
+    page : "bench" or "speeds"
+        Which page of the window is seen.
+    speeds_plot : str
+        What is plotted of a fit: "residuals", "section", "spectrum" or "correlation".
+    speeds_plane : 3 floats
+        Unit normal of the section of the fitted speeds, crystal axes.
     """
 
     layout: str = "A"
@@ -140,6 +208,9 @@ class Display:
     ledger: str = "A"
     face: str = "stiffness"
     hemisphere_sheet: int = 0
+    page: str = "bench"
+    speeds_plot: str = "residuals"
+    speeds_plane: Vector3 = (0.0, 0.0, 1.0)
 
 
 @dataclass(frozen=True)
@@ -162,6 +233,8 @@ class BenchState:
     cutting_error_deg : float
         Half-angle of the cone of misorientation.
     display : Display
+    readings : MeasuredSpeeds or None
+        Measured wave speeds, in crystal axes of their own.
     unknown : str
         Keys of the file that this version does not know, as JSON text, kept on saving.
     """
@@ -175,6 +248,7 @@ class BenchState:
     quantity: str = "young"
     cutting_error_deg: float = 0.5
     display: Display = Display()
+    readings: MeasuredSpeeds | None = None
     unknown: str = "{}"
 
     def specimen_of(self, side: str) -> Specimen:

@@ -123,10 +123,37 @@ def _section(arguments: Namespace) -> Outcome:
     return found, lambda _: f"wrote {target}\n"
 
 
+def _recover(arguments: Namespace) -> Outcome:
+    from core import measured, recovery_summary
+    from core.study.recovery.fit import FitOptions
+
+    density, sigma = measured.read_density(arguments.density or "")
+    options = FitOptions(
+        density_sigma=sigma,
+        direction_sigma_deg=measured.read_direction_sigma(arguments.direction_sigma),
+        robust=arguments.robust,
+    )
+    path = Path(arguments.speeds)
+    found = recovery_summary.run_recover(path, density, arguments.class_name, options)
+    if not arguments.json:
+        return found, recovery_summary.recovery_page
+    for note in found["notes"]:
+        sys.stderr.write(f"tricline: {path}: {note}\n")
+    return {key: found[key] for key in _RECOVERED}, recovery_summary.recovery_page
+
+
+_RECOVERED = (
+    "constants_gpa", "std_gpa", "rank", "singular_values", "undetermined", "chi2", "dof",
+    "outliers", "next_directions",
+)  # fmt: skip
+"""What `recover --json` prints; its notes go to stderr."""
+
+
 RUN: dict[str, Callable[[Namespace], Outcome]] = {
     "summary": _summary,
     "along": _along,
     "rotate": _rotate,
     "compare": _compare,
+    "recover": _recover,
     "section": _section,
 }

@@ -14,10 +14,6 @@ from importlib import resources
 from pathlib import Path
 from types import TracebackType
 
-# One BLAS thread: the live kernels are too small for two, and the drawing wants the other core.
-for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
-    os.environ.setdefault(_variable, "1")
-
 from PySide6.QtCore import QSettings, Qt, QTimer
 from PySide6.QtGui import QIcon
 from PySide6.QtWidgets import QApplication, QMessageBox
@@ -45,6 +41,13 @@ NO_SCREEN = (
     "tricline: there is no screen to open a window on (DISPLAY and WAYLAND_DISPLAY are "
     "not set). The headless verbs work: try “tricline summary FILE”, or set "
     "QT_QPA_PLATFORM=offscreen."
+)
+_LEAVES = (  # of Help: words in the menu, leaf, key
+    ("&Quantities and formulas", "Quantities", "F1"),
+    ("&Conventions", "Conventions", ""),
+    ("&Keys", "Keys", ""),
+    ("Ca&utions", "Cautions", ""),
+    ("&About", "About", ""),
 )
 log = logging.getLogger("tricline")
 
@@ -135,17 +138,10 @@ def build(
 
 def _menus(window: Window, commands: Commands, words: str) -> tuple[HelpDialog, MenuBar]:
     """Return Help and the menu bar; each reads the other's table of keys or leaves."""
-    plain: Menus = commands.menus(())
+    plain: Menus = commands.menus(tuple(Entry(title, keys=keys) for title, _, keys in _LEAVES))
     dialog = HelpDialog(plain, words)
     entries = tuple(
-        Entry(title, partial(dialog.open_leaf, leaf), keys)
-        for title, leaf, keys in (
-            ("&Quantities and formulas", "Quantities", "F1"),
-            ("&Conventions", "Conventions", ""),
-            ("&Keys", "Keys", ""),
-            ("Ca&utions", "Cautions", ""),
-            ("&About", "About", ""),
-        )
+        Entry(title, partial(dialog.open_leaf, leaf), keys) for title, leaf, keys in _LEAVES
     )
     return dialog, MenuBar(window, commands.menus(entries))
 
@@ -196,12 +192,12 @@ def has_screen() -> bool:
 def run(words: list[str]) -> int:
     """Open the window, on a file or on the first demo specimen, and stay until it is closed."""
     if not has_screen():
-        print(NO_SCREEN, file=sys.stderr)
+        sys.stderr.write(f"{NO_SCREEN}\n")
         return 2
     try:
         state = first_state(open_file(Path(words[0])) if words else open_demo(FIRST_DEMO))
     except InputError as error:
-        print(f"tricline: {error}", file=sys.stderr)
+        sys.stderr.write(f"tricline: {error}\n")
         return 2
     faulthandler.enable()
     QApplication.setAttribute(Qt.ApplicationAttribute.AA_ShareOpenGLContexts)

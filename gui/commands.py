@@ -94,7 +94,7 @@ class Commands:
                 "Copy the table at the pin",
             ),
             Entry(
-                "Copy stage &picture",
+                "Copy s&tage picture",
                 self.copy_picture,
                 "Ctrl+Shift+C",
                 "Copy what the stage shows",

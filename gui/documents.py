@@ -95,13 +95,13 @@ class Documents(QObject):
 
     def open(self, path: Path) -> bool:
         """Open a file in place of what is on the bench; say so when it cannot be done."""
-        if not self.may_discard():
-            return False
         try:
             opened = open_file(path)
             state = first_state(opened)
         except InputError as error:
             self.complain("The file was not opened", str(error))
+            return False
+        if not self.may_discard():
             return False
         self._take(state, path, opened.guesses)
         return True

@@ -10,21 +10,12 @@ import PySide6
 import scipy
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QTabWidget, QTextBrowser, QVBoxLayout
 
+from core.cautions import CAUTIONS
 from core.crystal.cell import AXES_CONVENTIONS
 from core.crystal.orientation import WAYS
 from core.directional.quantities import QUANTITIES
 from gui.actions import Menus
 
-CAUTIONS = (
-    "Everything here is linear elasticity of a perfect single crystal. It says nothing of "
-    "strength, fatigue, creep or residual stress.",
-    "Where a part carries load or pressure, the codes that hold at its place and licensed or "
-    "certified people decide; a number from this program is one input to them.",
-    "In ultrasonic inspection the beam of an anisotropic part walks off its wave normal by the "
-    "power-flow angle: a probe set up for an isotropic part can miss a flaw.",
-    "A table that is stable is not therefore right: axes, units and the order of the shear rows "
-    "have to be checked against where it came from.",
-)
 _KEYS = (
     ("in the grid", "arrows, Tab and Enter move; typing replaces; F2 edits; Escape takes back"),
     (

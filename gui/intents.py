@@ -401,7 +401,8 @@ class DeckIntents(Intents):
         self._connect_deck()
         views.pin.direction_typed.connect(stage.type_pin)
         views.pin.quantity_chosen.connect(stage.choose_quantity)
-        views.extremes.go.connect(stage.move_pin)
+        for linked in (views.extremes, views.waves, views.degenerate):
+            linked.go.connect(stage.move_pin)
         views.cutting_error.edited.connect(self._set_cutting_error)
 
     def _connect_deck(self) -> None:

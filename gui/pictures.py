@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import QBuffer, QIODevice
-from PySide6.QtGui import QImage, QPainter
+from PySide6.QtGui import QImage, QImageWriter, QPainter
 
 from core.state import BenchState
 from gui.stage.composition import Ground
@@ -33,5 +33,5 @@ def png_bytes(picture: QImage) -> bytes:
     """Return a picture as a PNG file."""
     buffer = QBuffer()
     buffer.open(QIODevice.OpenModeFlag.WriteOnly)
-    picture.save(buffer, b"PNG")
+    QImageWriter(buffer, b"PNG").write(picture)
     return bytes(buffer.data().data())

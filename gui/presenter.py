@@ -17,13 +17,16 @@ from PySide6.QtCore import QObject, Slot
 from core import live
 from core.directional.extremes import extremes
 from core.directional.medium import Medium
+from core.directional.quantities import quantity
 from core.state import BenchState
 from core.task import Ticker
 from gui.bench import Bench
 from gui.pace import Pace
-from gui.presenting import deck, ledger, reading, stage
+from gui.presenting import deck, ledger, reading, spread, stage
 from gui.presenting.reading import Extremes
 from gui.scheduler import Job, Scheduler
+from gui.trust_details import TrustDetails
+from gui.wave_details import WaveDetails
 from gui.window import Window
 
 _CRYSTALS = {"specimen", "other"}
@@ -65,6 +68,8 @@ class Presenter(QObject):
         super().__init__(parent)
         self._bench, self._scheduler, self._pace, self._window = bench, scheduler, pace, window
         self._views = window.views
+        self._details = WaveDetails(bench, scheduler, window.views, self)
+        self.trust = TrustDetails(bench, scheduler, window.views, self)
         self._linked = True
         self._source_time_us = 1.0
         self._stale: set[int] = set()
@@ -74,6 +79,9 @@ class Presenter(QObject):
         bench.changed.connect(self._on_changed)
         pace.rested.connect(self._on_rested)
         scheduler.finished.connect(self._on_finished)
+        self._details.axes_found.connect(self._on_axes_found)
+        self.trust.pin_found.connect(self._on_pin_found)
+        self.trust.tables_found.connect(self._on_tables_found)
         scheduler.failed.connect(self._on_failed)
         scheduler.progress.connect(window.show_progress)
         scheduler.idle.connect(window.hide_progress)
@@ -85,6 +93,7 @@ class Presenter(QObject):
         """Return which region draws what."""
         stage_names = _PARTS | {"pin", "section", "quantity", "display"}
         table = (
+            (_CRYSTALS | {"display"}, self.trust.show_verdict, "always"),
             (_CRYSTALS | {"display"}, self._show_ledger, "always"),
             (_PARTS | {"display"}, self._show_orientations, "always"),
             (_CRYSTALS | {"quantity", "section", "display"}, self._show_toolbar, "always"),
@@ -92,12 +101,19 @@ class Presenter(QObject):
             (stage_names, self._show_section, "always"),
             (stage_names | {"cutting_error_deg"}, self._show_deck, "often"),
             (_PARTS | {"pin", "display"}, self._show_reading, "often"),
+            (_PARTS | {"pin", "display"}, self._details.show_waves, "often"),
+            (_PARTS | {"pin", "display"}, self._details.show_arrivals, "at rest"),
+            (_PARTS | {"display"}, self._details.show_axes, "at rest"),
             (
                 _PARTS | {"pin", "quantity", "display", "cutting_error_deg"},
                 self._show_cutting_error,
                 "at rest",
             ),
+            (stage_names, self._show_bands, "at rest"),
+            (stage_names, self.trust.show_sheet, "at rest"),
+            (_PARTS | {"pin", "display"}, self.trust.ask_pin, "at rest"),
             (_PARTS | {"display"}, self._show_tables, "at rest"),
+            (_PARTS | {"display"}, self.trust.ask_tables, "at rest"),
             (_PARTS | {"display"}, self._show_extremes, "at rest"),
         )
         return tuple(Region(frozenset(names), show, follows) for names, show, follows in table)
@@ -146,7 +162,6 @@ class Presenter(QObject):
     # -------------------------------------------------------------- the regions
     def _show_ledger(self, state: BenchState, _fine: bool) -> None:
         views, specimen = self._views, ledger.ledger_specimen(state)
-        views.verdict.show_view(ledger.verdict_view(specimen))
         views.constants.show_view(ledger.constants_view(specimen, state.display.face))
         views.spectrum.show_view(ledger.spectrum_view(specimen))
         views.specimen.show_view(ledger.specimen_view(state))
@@ -161,37 +176,60 @@ class Presenter(QObject):
         self._window.show_panes(state.display.layout)
 
     def _show_panes(self, state: BenchState, fine: bool) -> None:
-        for side, view in stage.pane_views(state, fine).items():
+        for side, view in stage.pane_views(state, fine, self._details.known_axes).items():
             self._views.panes[side].show_view(view)
 
     def _show_section(self, state: BenchState, _fine: bool) -> None:
-        self._views.section.show_view(deck.section_view(state))
+        self._views.section.show_view(deck.section_view(state, is_live=True))
+
+    def _show_bands(self, state: BenchState, _fine: bool) -> None:
+        """Add the bands of uncertainty that cannot follow every edit."""
+        if state.quantity not in spread.LIVE_KEYS:
+            self._views.section.show_view(deck.section_view(state))
 
     def _show_deck(self, state: BenchState, fine: bool) -> None:
         plots, face = self._views.deck, state.display.deck
         plots.show_face(face)
         if face == "hemisphere":
-            plots.hemisphere.show_view(deck.hemisphere_view(state, fine))
+            view = deck.hemisphere_view(state, fine, self._details.known_axes)
+            plots.hemisphere.show_view(view)
         elif face == "sweep":
             plots.sweep.show_view(deck.sweep_view(state))
         else:
             plots.source.show_view(deck.source_view(state, self._source_time_us))
 
     def _show_reading(self, state: BenchState, _fine: bool) -> None:
-        self._views.pin.show_view(reading.reading_view(state))
+        self._views.pin.show_view(reading.reading_view(state, self.trust.pin_spread(state)))
 
     def _show_cutting_error(self, state: BenchState, _fine: bool) -> None:
         self._views.cutting_error.show_half_angle(f"{state.cutting_error_deg:g}")
         self._views.cutting_error.show_view(reading.cutting_error_view(state))
 
     def _show_tables(self, state: BenchState, _fine: bool) -> None:
-        self._views.aggregate.show_view(reading.aggregate_view(ledger.ledger_specimen(state)))
-        self._views.part.show_view(reading.part_view(state))
+        known = self.trust.table_spread(state)
+        specimen = ledger.ledger_specimen(state)
+        self._views.aggregate.show_view(reading.aggregate_view(specimen, known))
+        self._views.part.show_view(reading.part_view(state, known))
 
     @Slot(float)
     def _set_source_time(self, microseconds: float) -> None:
         self._source_time_us = microseconds
         self._show_deck(self._bench.state, True)
+
+    @Slot()
+    def _on_pin_found(self) -> None:
+        self._show_reading(self._bench.state, True)
+
+    @Slot()
+    def _on_tables_found(self) -> None:
+        self._show_tables(self._bench.state, True)
+
+    @Slot()
+    def _on_axes_found(self) -> None:
+        """Draw marks and mended meshes, at once or with the rest when all has come to rest."""
+        if quantity(self._bench.state.quantity).wave and not self._pace.is_moving:
+            self._show_panes(self._bench.state, True)
+            self._show_deck(self._bench.state, True)
 
     # -------------------------------------------------------------- extremes, on the worker
     def _extremes_key(self, state: BenchState) -> tuple[Any, float | None]:

@@ -10,6 +10,7 @@ import numpy.typing as npt
 from PySide6.QtGui import QColor, QFont, QFontInfo, QPalette
 from PySide6.QtWidgets import QApplication
 
+_LIGATURES = QFont.Tag("liga")
 SEQUENTIAL_MAP = "viridis"
 DIVERGING_MAP = "CET-D1A"
 GREY_FOR_UNDEFINED = "#9A9A94"
@@ -55,6 +56,7 @@ class Theme:
         factor = {"small": 0.88, "body": 1.0, "title": 1.2}[size]
         font.setPixelSize(max(1, round(QFontInfo(font).pixelSize() * factor * scale)))
         font.setBold(bold)
+        font.setFeature(_LIGATURES, 0)  # so that “file” is found in a PDF
         return font
 
 
@@ -170,6 +172,7 @@ QLabel {{ background: transparent; }}
 QLabel[role="secondary"] {{ color: {secondary}; }}
 QLabel[role="faint"] {{ color: {faint}; }}
 QLabel[role="error"] {{ color: {alert}; }}
+QLabel[role="doubt"] {{ color: {doubt}; }}
 QLabel[role="side_a"] {{ color: {a}; font-weight: bold; }}
 QLabel[role="side_b"] {{ color: {b}; font-weight: bold; }}
 QLabel[role="heading"] {{ font-weight: bold; }}

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt
+from PySide6.QtCore import QEvent, QPointF, QRectF, QSize, Qt, Signal
 from PySide6.QtGui import (
     QColor,
     QContextMenuEvent,
@@ -15,9 +15,9 @@ from PySide6.QtGui import (
     QPen,
     QPolygonF,
 )
-from PySide6.QtWidgets import QFrame, QMenu, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QMenu, QSizePolicy, QWidget
 
-from gui.forms import below, claims, label, put_on_clipboard
+from gui.forms import claims, put_on_clipboard
 from gui.theme import LIGHT, Theme
 from gui.viewdata import Mark, VerdictView
 
@@ -27,7 +27,7 @@ MARK = 13.0
 GAP = 10.0
 BETWEEN = "  ·  "
 LEAST_PIECE = 90.0  # a fact cut shorter than this says nothing
-POPUP_WIDTH = 540
+HINT = "Click (F7) to see whether the table can be trusted."
 ROLES: dict[Mark, str] = {"stable": "good", "doubtful": "doubt", "unstable": "alert"}
 SAID: dict[Mark, str] = {
     "stable": "stable",
@@ -91,48 +91,22 @@ def fit_facts(
     return metrics.elidedText(whole, Qt.TextElideMode.ElideRight, room) if enough else ""
 
 
-class VerdictDetail(QFrame):
-    """The paragraphs behind the verdict, in a popup under the band."""
-
-    def __init__(self, parent: QWidget) -> None:
-        super().__init__(parent, Qt.WindowType.Popup)
-        self.setProperty("role", "panel")
-        self.headline = label(role="heading", wrap=True)
-        self.text = label(wrap=True)
-        self.text.setTextInteractionFlags(
-            Qt.TextInteractionFlag.TextSelectableByMouse
-            | Qt.TextInteractionFlag.TextSelectableByKeyboard
-        )
-        column = QVBoxLayout(self)
-        column.setContentsMargins(16, 12, 16, 14)
-        column.setSpacing(8)
-        for part in (self.headline, self.text):
-            column.addWidget(part)
-
-    def open_below(self, band: QWidget, view: VerdictView) -> None:
-        """Open with the words of a verdict."""
-        self.headline.setText(view.headline)
-        facts = "\n".join(f"– {fact}" for fact in view.facts)
-        self.text.setText("\n\n".join(part for part in (view.detail, facts) if part))
-        width = min(POPUP_WIDTH, max(band.width() - 64, 200))
-        for part in (self.headline, self.text):
-            part.ensurePolished()
-            part.setFixedSize(width, part.heightForWidth(width))
-        self.adjustSize()
-        corner = below(band)
-        corner.setX(corner.x() + 8)
-        self.move(corner)
-        self.show()
-
-
 class VerdictBand(QWidget):
-    """The band on the screen; a click, Enter or Space opens the detail."""
+    """The band on the screen.
+
+    Signals
+    -------
+    opened()
+        A click, Enter or Space: the sheet under the band is to be opened, or put away.
+    """
+
+    opened = Signal()
 
     def __init__(self) -> None:
         super().__init__()
         self._view = VerdictView("stable", "", (), "")
         self._theme = LIGHT
-        self.detail = VerdictDetail(self)
+        self._is_open = False
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setCursor(Qt.CursorShape.PointingHandCursor)
         self.setAttribute(Qt.WidgetAttribute.WA_Hover)
@@ -144,7 +118,7 @@ class VerdictBand(QWidget):
         self._view = view
         said = f"{SAID[view.mark]}: {view.headline}. {'. '.join(view.facts)}"
         self.setAccessibleDescription(said)
-        self.setToolTip("\n".join((view.headline, *view.facts, "Click for the detail.")))
+        self.setToolTip("\n".join((view.headline, *view.facts, HINT)))
         self.update()
 
     def set_theme(self, theme: Theme) -> None:
@@ -161,9 +135,10 @@ class VerdictBand(QWidget):
         """Make do with the headline."""
         return QSize(240, self.sizeHint().height())
 
-    def open_detail(self) -> None:
-        """Open the popup with the detail."""
-        self.detail.open_below(self, self._view)
+    def show_open(self, is_open: bool) -> None:
+        """Point the hint down while the sheet is away, and up while it is open."""
+        self._is_open = is_open
+        self.update()
 
     def copy(self) -> None:
         """Copy the verdict with its facts and detail."""
@@ -184,26 +159,27 @@ class VerdictBand(QWidget):
 
     def _draw_hint(self, painter: QPainter) -> None:
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        tip = QPointF(self.width() - MARGIN - 5, self.height() / 2 + 3)
+        rise = 5 if self._is_open else -5
+        tip = QPointF(self.width() - MARGIN - 5, self.height() / 2 - rise / 2)
         painter.setPen(QPen(self._theme.colour("secondary"), 1.5))
-        painter.drawPolyline(QPolygonF([tip + QPointF(-5, -5), tip, tip + QPointF(5, -5)]))
+        painter.drawPolyline(QPolygonF([tip + QPointF(-5, rise), tip, tip + QPointF(5, rise)]))
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:
-        """Open the detail."""
+        """Open the sheet, or put it away."""
         is_inside = self.rect().contains(event.position().toPoint())
         if event.button() == Qt.MouseButton.LeftButton and is_inside:
-            self.open_detail()
+            self.opened.emit()
 
     def event(self, event: QEvent) -> bool:
         """Keep copying for the band."""
         return claims(event, QKeySequence.StandardKey.Copy) or super().event(event)
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Open the detail with Enter or Space; copy with Ctrl+C."""
+        """Open the sheet with Enter or Space; copy with Ctrl+C."""
         if event.matches(QKeySequence.StandardKey.Copy):
             self.copy()
         elif event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Space):
-            self.open_detail()
+            self.opened.emit()
         else:
             super().keyPressEvent(event)
 

@@ -289,6 +289,56 @@ class ExtremesView:
 
 
 @dataclass(frozen=True)
+class WaveRow:
+    """One line of the wave table: the same of the three waves, fastest first."""
+
+    label: str
+    values: tuple[str, str, str]
+    unit: str
+    full: tuple[str, str, str]  # at full precision, for copying
+    tooltip: str
+
+
+@dataclass(frozen=True)
+class WaveTable:
+    """The three plane waves along the pin on one side."""
+
+    side: str
+    heading: str
+    rows: tuple[WaveRow, ...]
+    notes: tuple[str, ...] = ()  # where waves meet, or one does not propagate
+
+
+@dataclass(frozen=True)
+class WavesView:
+    """The waves along the pin, for one side or both."""
+
+    tables: tuple[WaveTable, ...]
+    notice: str = ""
+
+
+@dataclass(frozen=True)
+class LinkedRow:
+    """One line of a list of directions: cells, and where its go-link leads."""
+
+    cells: tuple[str, ...]
+    full: tuple[str, ...]
+    direction: Vector3 | None  # part axes
+    words: str  # what the link does, for its name
+    tooltip: str = ""
+
+
+@dataclass(frozen=True)
+class LinkedView:
+    """A list of directions in groups: a heading (or none) and its lines."""
+
+    header: tuple[str, ...]
+    groups: tuple[tuple[str, tuple[LinkedRow, ...]], ...]
+    pending: bool = False  # still being computed; draw dimmed
+    notice: str = ""
+
+
+@dataclass(frozen=True)
 class TableView:
     """Any small table: header, rows of text, and the same at full precision."""
 
@@ -333,6 +383,78 @@ class SourceView:
     rings: tuple[tuple[float, str], ...]  # radius in mm, text; the outermost is the rim
     axis_labels: tuple[str, str]  # part axis to the right and upwards
     notice: str = ""
+
+
+# ---------------------------------------------------------------- trust
+@dataclass(frozen=True)
+class ClassRow:
+    """How near the table is to one crystal class."""
+
+    key: str
+    cells: tuple[str, ...]  # as `TrustView.header` names them
+    full: tuple[str, ...]  # at full precision, for copying
+    tooltip: str
+    can_turn: bool  # its axes are worth turning to
+    can_exact: bool  # the table is not that class already
+
+
+@dataclass(frozen=True)
+class TrustView:
+    """Whether the table can be trusted: symmetry, stability, notes and uncertainties."""
+
+    sentence: str  # the symmetry in one sentence
+    header: tuple[str, ...]
+    classes: tuple[ClassRow, ...]
+    suggested: str  # key of the class that the sentence speaks of
+    support: str  # how many constants the data support, or ""
+    facts: tuple[str, ...]  # those of the verdict
+    chance: str  # how probable it is that the crystal is stable, or ""
+    strains: TableView
+    criteria: TableView
+    notes: tuple[str, ...]
+    shares: TableView  # what the anisotropy is made of
+    pin: TableView  # uncertainties at the pin and where they come from
+    draws: str  # where linear and drawn uncertainties differ, or ""
+    pending: bool = False  # symmetry still being searched for; draw dimmed
+
+
+# ---------------------------------------------------------------- taking in
+@dataclass(frozen=True)
+class ReadingChoice:
+    """How one thing about a foreign table was understood."""
+
+    field: str
+    label: str
+    value: str
+    choices: tuple[tuple[str, str], ...]  # key, words
+    reason: str
+    mark: Literal["certain", "guess", "question"]
+    is_free: bool = False  # something else than the choices may be typed
+
+
+@dataclass(frozen=True)
+class TakingInView:
+    """A foreign table, how it is read, and what comes of it."""
+
+    readings: tuple[ReadingChoice, ...]
+    preview: ConstantsView | None
+    verdict: VerdictView | None
+    lines: tuple[str, ...]  # symmetry, uncertainties, what will be replaced
+    notes: tuple[str, ...]
+    error: str  # why it cannot be read, or ""
+    status: str  # "2 questions are open", or ""
+    is_ready: bool
+
+
+@dataclass(frozen=True)
+class CellFileView:
+    """The cell of a CIF file, to be taken over."""
+
+    title: str
+    lines: tuple[tuple[str, str], ...]  # name, value with its uncertainty
+    notes: tuple[str, ...]
+    conventions: tuple[tuple[str, str], ...]
+    axes: str
 
 
 def empty_picture(size: int = 2) -> FloatArray:

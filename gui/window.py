@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
-from PySide6.QtCore import QSettings, Qt, Signal
-from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
+from PySide6.QtCore import QByteArray, QSettings, Qt, Signal
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent, QResizeEvent
 from PySide6.QtWidgets import (
     QFrame,
     QHBoxLayout,
@@ -33,17 +33,21 @@ from gui.reading.cutting_error import CuttingErrorPanel
 from gui.reading.extremes_table import ExtremesTable
 from gui.reading.pin_table import PinTable
 from gui.reading.small_table import SmallTable
+from gui.reading.waves_panel import DegenerateList, WavesPanel
 from gui.stage.camera import Camera
 from gui.stage.composition import Renderer
 from gui.stage.pane import StagePane
 from gui.theme import Theme
 from gui.toolbar import StageToolbar
+from gui.trust.sheet import TrustSheet
 from gui.verdict_band import VerdictBand
 
 LEDGER_WIDTH = 360
 READING_WIDTH = 338
 _NARROWER_BY = 14
-_LAYOUT_VERSION = 2  # a layout saved by an older arrangement is not restored
+SHEET_HEIGHT = 330
+_ROOM_FOR_ALL = 1010  # height of the window from which the plots stay beside the open sheet
+_LAYOUT_VERSION = 3  # a layout saved by an older arrangement is not restored
 
 
 @dataclass(frozen=True, eq=False)
@@ -51,6 +55,7 @@ class Views:
     """Every widget that shows something, for the presenter."""
 
     verdict: VerdictBand
+    trust: TrustSheet
     specimen: SpecimenForm
     constants: ConstantsGrid
     spectrum: StrainSpectrum
@@ -62,6 +67,8 @@ class Views:
     section: SectionPlot
     deck: Deck
     pin: PinTable
+    waves: WavesPanel
+    degenerate: DegenerateList
     extremes: ExtremesTable
     cutting_error: CuttingErrorPanel
     aggregate: SmallTable
@@ -77,6 +84,7 @@ def build_views(renderer: Renderer) -> Views:
     camera = Camera()
     return Views(
         verdict=VerdictBand(),
+        trust=TrustSheet(),
         specimen=SpecimenForm(),
         constants=ConstantsGrid(),
         spectrum=StrainSpectrum(),
@@ -88,6 +96,8 @@ def build_views(renderer: Renderer) -> Views:
         section=SectionPlot(),
         deck=Deck(),
         pin=PinTable(),
+        waves=WavesPanel(),
+        degenerate=DegenerateList(),
         extremes=ExtremesTable(),
         cutting_error=CuttingErrorPanel(),
         aggregate=SmallTable(),
@@ -121,6 +131,7 @@ class Window(QMainWindow):
         self._centre = QSplitter(Qt.Orientation.Vertical)
         self._stage = QSplitter(Qt.Orientation.Horizontal)
         self._plots = QSplitter(Qt.Orientation.Horizontal)
+        self._sheet = QSplitter(Qt.Orientation.Vertical)
         self.ledger_panel = _side_panel(_ledger(views), LEDGER_WIDTH, "Ledger")
         self.reading_panel = _side_panel(_reading(views), READING_WIDTH, "Reading")
         self._place()
@@ -161,11 +172,26 @@ class Window(QMainWindow):
         rows.setContentsMargins(0, 0, 0, 0)
         rows.setSpacing(0)
         rows.addWidget(self.views.verdict)
-        body = QHBoxLayout()
-        body.setContentsMargins(6, 6, 6, 0)
-        body.addWidget(self._columns)
-        rows.addLayout(body, 1)
+        body = QWidget()
+        box = QHBoxLayout(body)
+        box.setContentsMargins(6, 6, 6, 0)
+        box.addWidget(self._columns)
+        self._place_sheet(body)
+        rows.addWidget(self._sheet, 1)
         self.setCentralWidget(whole)
+
+    def _place_sheet(self, body: QWidget) -> None:
+        """Put the trust sheet above everything, put away at first."""
+        trust = self.views.trust
+        for part in (trust, body):
+            self._sheet.addWidget(part)
+        self._sheet.setChildrenCollapsible(False)
+        self._sheet.setHandleWidth(5)
+        self._sheet.setStretchFactor(1, 1)
+        self._sheet.setSizes([SHEET_HEIGHT, 520])
+        trust.hide()
+        trust.closed.connect(self.close_sheet)
+        self.views.verdict.opened.connect(self.toggle_sheet)
 
     def _fill_status_line(self) -> None:
         line = self.statusBar()
@@ -187,6 +213,25 @@ class Window(QMainWindow):
         """Show pane A, pane B or both."""
         for side, frame in self._pane_frames.items():
             frame.setVisible(side in layout)
+
+    def toggle_sheet(self) -> None:
+        """Open the trust sheet, or put it away."""
+        self.show_sheet(not self.views.trust.isVisibleTo(self))
+
+    def close_sheet(self) -> None:
+        """Put the trust sheet away."""
+        self.show_sheet(False)
+        self.views.verdict.setFocus()
+
+    def show_sheet(self, is_open: bool) -> None:
+        """Open the trust sheet or put it away; in a low window the plots make room for it."""
+        self.views.trust.setVisible(is_open)
+        self.views.verdict.show_open(is_open)
+        self._make_room()
+
+    def _make_room(self) -> None:
+        is_open = self.views.trust.isVisibleTo(self)
+        self._plots.setVisible(not is_open or self.height() >= _ROOM_FOR_ALL)
 
     def show_message(self, text: str, is_error: bool = False) -> None:
         """Say one sentence in the status line."""
@@ -222,16 +267,22 @@ class Window(QMainWindow):
         """Remember sizes and places."""
         settings.setValue("layout/version", _LAYOUT_VERSION)
         settings.setValue("layout/window", self.saveGeometry())
+        settings.setValue("layout/sheet_open", self.views.trust.isVisibleTo(self))
         for name, splitter in self._splitters():
             settings.setValue(f"layout/{name}", splitter.saveState())
 
     def restore_layout(self, settings: QSettings) -> None:
         """Bring back sizes and places, if they were saved by this arrangement."""
-        if int(str(settings.value("layout/version", 0))) != _LAYOUT_VERSION:
+        if str(settings.value("layout/version")) != str(_LAYOUT_VERSION):
             return
-        self.restoreGeometry(settings.value("layout/window"))
-        for name, splitter in self._splitters():
-            splitter.restoreState(settings.value(f"layout/{name}"))
+        parts = (("window", self.restoreGeometry),) + tuple(
+            (name, splitter.restoreState) for name, splitter in self._splitters()
+        )
+        for name, restore in parts:
+            saved = settings.value(f"layout/{name}")
+            if isinstance(saved, (QByteArray, bytes)):  # what else stands there was not ours
+                restore(saved)
+        self.show_sheet(str(settings.value("layout/sheet_open")).lower() == "true")
 
     def _splitters(self) -> tuple[tuple[str, QSplitter], ...]:
         return (
@@ -239,9 +290,15 @@ class Window(QMainWindow):
             ("centre", self._centre),
             ("stage", self._stage),
             ("plots", self._plots),
+            ("sheet", self._sheet),
         )
 
     # -------------------------------------------------------------- events
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Let the plots come back where there is room for them and the sheet."""
+        super().resizeEvent(event)
+        self._make_room()
+
     def closeEvent(self, event: QCloseEvent) -> None:
         """Ask before unsaved work is lost."""
         self.close_asked.emit(event)
@@ -319,7 +376,11 @@ def _ledger(views: Views) -> QWidget:
 def _reading(views: Views) -> QWidget:
     return _column(
         Section("Reading", views.pin, ruled=False),
+        Section("Waves", views.waves, "along the pin", is_open=False),
         Section("Extremes", views.extremes),
+        Section(
+            "Degenerate directions", views.degenerate, "two waves as fast", is_open=False
+        ),
         Section("Cutting error", views.cutting_error),
         Section("Aggregate", views.aggregate, "random polycrystal"),
         Section("Part", views.part, "along X, Y, Z", is_open=False),

@@ -1,4 +1,4 @@
-"""Invented measurements for tests: speeds from LAPACK and the full tensor, no waves of `core`."""
+"""Invented measurements for tests: speeds from LAPACK and the full tensor, not from `core`."""
 
 import numpy as np
 

@@ -46,8 +46,8 @@ class Quantity:
         Whether its values spread over decades, so that colours should follow their logarithm.
     values : callable
         (Medium, Directions of N) to a (sheets, N) array.
-    surface : callable
-        (Medium, SphereMesh of N vertices) to a (sheets, 7, N) float32 array; see `surfaces`.
+    maker : callable
+        Fills the surface that is drawn; see `surfaces`.
     """
 
     key: str
@@ -62,7 +62,7 @@ class Quantity:
     source: str
     decimals: int
     values: Callable[[Medium, Directions], FloatArray]
-    surface: Callable[[Medium, SphereMesh], Float32Array]
+    maker: SurfaceMaker
     shape: str = "radial"
     logarithmic: bool = False
 
@@ -70,6 +70,10 @@ class Quantity:
     def colour(self) -> str:
         """The kind of colour scale: "diverging" about zero, or "sequential"."""
         return "diverging" if self.signed else "sequential"
+
+    def surface(self, medium: Medium, mesh: SphereMesh) -> Float32Array:
+        """Return the surface over the N vertices of a mesh, (sheets, 7, N)."""
+        return surfaces.surface(medium, mesh, self.maker, self.sheets)
 
 
 def quantity(key: str) -> Quantity:
@@ -112,23 +116,14 @@ def _member(
     return lambda medium, dirs: pair(medium, dirs)[index][None, :]
 
 
-def _drawn(
-    maker: SurfaceMaker, sheets: int = 1
-) -> Callable[[Medium, SphereMesh], Float32Array]:
-    """Let the surface of a maker be made of a medium and a mesh."""
-    return lambda medium, mesh: surfaces.surface(medium, mesh, maker, sheets)
-
-
-def _coloured(
-    values: Callable[[Medium, Directions], FloatArray],
-) -> Callable[[Medium, SphereMesh], Float32Array]:
+def _coloured(values: Callable[[Medium, Directions], FloatArray]) -> SurfaceMaker:
     """Draw a quantity of the three sheets as colours on the slowness surface."""
 
     def fill(fields: Fields, out: Float32Array) -> None:
         colours = values(fields.medium, fields.directions)
         surfaces.fill_coloured_slowness(fields, colours, out)
 
-    return _drawn(fill, 3)
+    return fill
 
 
 _NYE = "J. F. Nye, Physical Properties of Crystals (Oxford 1957), chapter 8."
@@ -154,7 +149,7 @@ _ENTRIES = (
         source=_NYE,
         decimals=1,
         values=_single(moduli.young),
-        surface=_drawn(surfaces.fill_young),
+        maker=surfaces.fill_young,
     ),
     Quantity(
         key="compressibility",
@@ -170,7 +165,7 @@ _ENTRIES = (
         source=_NYE,
         decimals=2,
         values=_single(moduli.compressibility),
-        surface=_drawn(surfaces.fill_compressibility),
+        maker=surfaces.fill_compressibility,
     ),
     Quantity(
         key="shear_least",
@@ -186,7 +181,7 @@ _ENTRIES = (
         source=_TRANSVERSE,
         decimals=1,
         values=_member(moduli.shear_extremes, 0),
-        surface=_drawn(surfaces.fill_shear_least),
+        maker=surfaces.fill_shear_least,
     ),
     Quantity(
         key="shear_greatest",
@@ -202,7 +197,7 @@ _ENTRIES = (
         source=_TRANSVERSE,
         decimals=1,
         values=_member(moduli.shear_extremes, 1),
-        surface=_drawn(surfaces.fill_shear_greatest),
+        maker=surfaces.fill_shear_greatest,
     ),
     Quantity(
         key="poisson_least",
@@ -218,7 +213,7 @@ _ENTRIES = (
         source=_TRANSVERSE,
         decimals=3,
         values=_member(moduli.poisson_extremes, 0),
-        surface=_drawn(surfaces.fill_poisson_least),
+        maker=surfaces.fill_poisson_least,
     ),
     Quantity(
         key="poisson_greatest",
@@ -234,7 +229,7 @@ _ENTRIES = (
         source=_TRANSVERSE,
         decimals=3,
         values=_member(moduli.poisson_extremes, 1),
-        surface=_drawn(surfaces.fill_poisson_greatest),
+        maker=surfaces.fill_poisson_greatest,
     ),
     Quantity(
         key="slowness",
@@ -250,7 +245,7 @@ _ENTRIES = (
         source=_MUSGRAVE,
         decimals=4,
         values=_slowness,
-        surface=_drawn(surfaces.fill_slowness, 3),
+        maker=surfaces.fill_slowness,
         shape="slowness",
     ),
     Quantity(
@@ -267,7 +262,7 @@ _ENTRIES = (
         source=_AULD,
         decimals=3,
         values=waves.speeds,
-        surface=_drawn(surfaces.fill_phase, 3),
+        maker=surfaces.fill_phase,
     ),
     Quantity(
         key="wave",
@@ -283,7 +278,7 @@ _ENTRIES = (
         source=_MUSGRAVE,
         decimals=3,
         values=_ray_speed,
-        surface=_drawn(surfaces.fill_wave, 3),
+        maker=surfaces.fill_wave,
         shape="wave",
     ),
     Quantity(
@@ -299,7 +294,7 @@ _ENTRIES = (
         source=_AULD,
         decimals=2,
         values=waves.power_flow,
-        surface=_coloured(waves.power_flow),
+        maker=_coloured(waves.power_flow),
         shape="slowness",
     ),
     Quantity(
@@ -316,7 +311,7 @@ _ENTRIES = (
         source=_MUSGRAVE,
         decimals=2,
         values=waves.polarisation_deviation,
-        surface=_coloured(waves.polarisation_deviation),
+        maker=_coloured(waves.polarisation_deviation),
         shape="slowness",
     ),
     Quantity(
@@ -333,7 +328,7 @@ _ENTRIES = (
         source="H. J. Maris, J. Acoust. Soc. Am. 50 (1971) 812.",
         decimals=2,
         values=waves.focusing,
-        surface=_coloured(waves.focusing),
+        maker=_coloured(waves.focusing),
         shape="slowness",
         logarithmic=True,
     ),

@@ -1,8 +1,9 @@
 """Vertices and analytic normals of every directional surface.
 
 A surface is a float32 array (sheets, 7, N) over the vertices of a `SphereMesh`, planar rows
-x, y, z, nx, ny, nz, value. Normals point outward and are not normalised. Where a quantity is
-undefined all seven rows are NaN.
+x, y, z, nx, ny, nz, value. Normals point outward and are not normalised. Where a shape is
+undefined all seven rows are NaN; where only a colour on it is, as the focusing along an
+acoustic axis, the value alone.
 
 Four shapes are drawn:
 
@@ -36,6 +37,7 @@ from core.directional.sphere import (
 from core.directional.waves import Group, group_velocities
 
 ROWS = ("x", "y", "z", "nx", "ny", "nz", "value")
+_LARGEST = 1e30  # of a colour: still a float32, and what is made of it between two vertices too
 
 
 @dataclass(frozen=True, eq=False)
@@ -121,7 +123,9 @@ def fill_phase(fields: Fields, out: Float32Array) -> None:
 
 def fill_slowness(fields: Fields, out: Float32Array) -> None:
     """Fill the three sheets n/v, s/km; normal V."""
-    fill_coloured_slowness(fields, 1.0 / fields.group.speed, out)
+    speed, velocity = fields.group.speed, fields.group.velocity
+    for sheet, v, ray in zip(out, speed, velocity, strict=True):
+        _fill(sheet, fields.n / v, ray, 1.0 / v)
 
 
 def fill_wave(fields: Fields, out: Float32Array) -> None:
@@ -131,10 +135,13 @@ def fill_wave(fields: Fields, out: Float32Array) -> None:
 
 
 def fill_coloured_slowness(fields: Fields, values: FloatArray, out: Float32Array) -> None:
-    """Fill the three slowness sheets with other values (3, N), in their own unit."""
-    speed, velocity = fields.group.speed, fields.group.velocity
-    for sheet, v, ray, value in zip(out, speed, velocity, values, strict=True):
-        _fill(sheet, fields.n / v, ray, value)
+    """Fill the three slowness sheets with other values (3, N), in their own unit.
+
+    An infinite value, as the focusing on a caustic, becomes the largest that can be drawn.
+    """
+    fill_slowness(fields, out)
+    for sheet, value in zip(out, values, strict=True):
+        sheet[6] = np.where(np.isfinite(sheet[0]), np.minimum(value, _LARGEST), np.nan)
 
 
 ELASTIC_MAKERS: dict[str, SurfaceMaker] = {

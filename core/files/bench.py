@@ -12,6 +12,7 @@ import numpy as np
 from core.crystal.turning import unit
 from core.directional.quantities import quantity
 from core.errors import InputError
+from core.files.bench_readings import readings_from_dict, readings_to_dict
 from core.files.specimen import (
     check_format,
     json_text,
@@ -26,6 +27,7 @@ from core.numbers import shortened
 from core.state import (
     BenchState,
     Display,
+    MeasuredSpeeds,
     OrientationChoice,
     Specimen,
     Vector3,
@@ -57,6 +59,8 @@ def bench_to_dict(state: BenchState) -> dict[str, Any]:
         value = getattr(state, field.name)
         if isinstance(value, Specimen):
             data[field.name] = specimen_to_dict(value)
+        elif isinstance(value, MeasuredSpeeds):
+            data[field.name] = readings_to_dict(value)
         elif field.name != "unknown":
             data[field.name] = to_plain(value)
     kept: dict[str, Any] = parse_json(state.unknown, "unknown keys")
@@ -154,6 +158,8 @@ _ONE_OF: dict[str, tuple[object, ...]] = {
     "ledger": ("A", "B"),
     "face": ("stiffness", "compliance", "uncertainty"),
     "hemisphere_sheet": (0, 1, 2),
+    "page": ("bench", "speeds"),
+    "speeds_plot": ("residuals", "section", "spectrum", "correlation"),
 }
 """The display choices that are one of a few."""
 
@@ -172,6 +178,8 @@ def _display(value: Any) -> Display:
 def _choice(name: str, given: Any, default: Any) -> Any:
     if name == "sweep_about":
         return None if given is None else _unit_vector(given)
+    if name == "speeds_plane":
+        return _unit_vector(given)
     if name == "sheets":
         return _three_flags(given)
     if name == "colour_by" and given not in _OTHER_COLOURS:
@@ -209,5 +217,6 @@ _READERS: dict[str, Callable[[Any], Any]] = {
     "quantity": _quantity,
     "cutting_error_deg": _cone,
     "display": _display,
+    "readings": readings_from_dict,
 }
 """Key in the file, which is the attribute of `BenchState`, and how it is read."""

@@ -53,8 +53,11 @@ class Origin:
     @cached_property
     def medium(self) -> Medium:
         """The crystal in part axes."""
+        stiffness = stiffness_of(self.specimen)
         rotation = rotation_of(self.orientation, self.specimen)
-        return Medium(stiffness_of(self.specimen).rotate(rotation), self.specimen.density)
+        if not np.array_equal(rotation, np.eye(3)):  # else the very numbers that were entered
+            stiffness = stiffness.rotate(rotation)
+        return Medium(stiffness, self.specimen.density)
 
 
 def origin_facts(origin: Origin) -> tuple[tuple[str, str], ...]:

@@ -55,6 +55,8 @@ def judge(
     claimed: CrystalClass,
     deviations: FloatArray | None = None,
     covariance: FloatArray | None = None,
+    symmetry: str = "",
+    notes: int = 0,
 ) -> Verdict:
     """Return the verdict on a table.
 
@@ -69,6 +71,10 @@ def judge(
         independent: of the class where the table has its form, else of all 21.
     covariance : ndarray, shape (21, 21), optional
         GPa², along the upper triangle by rows; read in place of `deviations`.
+    symmetry : str
+        The sentence of `core.study.symmetry_verdict`, where the search has been made.
+    notes : int
+        How many things `core.study.plausibility` finds odd.
     """
     stability = assess(stiffness)
     fits = distance(stiffness.voigt, claimed) <= NOTABLE_DISTANCE
@@ -77,7 +83,9 @@ def judge(
         covariance = independent_covariance(deviations, form)
     sigma = None if covariance is None else softest_deviation(stability, covariance)
     mark, headline = _mark(stability, sigma)
-    facts = _facts(stiffness, claimed, stability, sigma)
+    facts = _facts(stiffness, claimed, stability, sigma, symmetry)
+    if notes:
+        facts = (f"{notes} {'note' if notes == 1 else 'notes'}", *facts)
     return Verdict(mark, headline, facts, _detail(stiffness, claimed, stability))
 
 
@@ -106,17 +114,18 @@ def _mark(stability: Stability, sigma: float | None) -> tuple[Mark, str]:
 
 
 def _facts(
-    stiffness: Stiffness, claimed: CrystalClass, stability: Stability, sigma: float | None
+    stiffness: Stiffness,
+    claimed: CrystalClass,
+    stability: Stability,
+    sigma: float | None,
+    symmetry: str,
 ) -> tuple[str, ...]:
     least = float(stability.eigenstiffness[0])
     softest = significant(least, 3) if not sigma else with_deviation(least, sigma)
     facts = [f"softest strain {softest} GPa ({stability.descriptions[0]})"]
-    off = distance(stiffness.voigt, claimed)
-    form = claimed.name.replace(",", " with")  # "tetragonal with 6 constants"
-    if off > NOTABLE_DISTANCE:
-        facts.append(f"{significant(100 * off, 2)} % away from {form} in these axes")
-    else:
-        facts.append(f"{form} as entered")
+    about = _symmetry_facts(stiffness, claimed, symmetry)
+    is_news = bool(symmetry) and (len(about) > 1 or ";" in symmetry)
+    facts = [*about, *facts] if is_news and stability.stable else [*facts, *about]
     if stability.stable:
         hill = averages(stiffness).hill
         index = anisotropy(stiffness, claimed.key == "cubic").universal
@@ -125,6 +134,25 @@ def _facts(
             f"K {significant(hill.bulk, 3)}, G {significant(hill.shear, 3)} GPa (Hill)"
         )
     return tuple(facts)
+
+
+def _symmetry_facts(
+    stiffness: Stiffness, claimed: CrystalClass, symmetry: str
+) -> tuple[str, ...]:
+    """Return what is said of the claimed class, and of the class that the table has.
+
+    One sentence serves for both where the table has the class it claims.
+    """
+    off = distance(stiffness.voigt, claimed)
+    form = claimed.name.replace(",", " with")  # "tetragonal with 6 constants"
+    found = symmetry.replace(", 6 con", " with 6 con").replace(", 7 con", " with 7 con")
+    if off > NOTABLE_DISTANCE:
+        own = f"{significant(100 * off, 2)} % away from {form} in these axes"
+    elif found.startswith(form):
+        return (found,)
+    else:
+        own = f"{form} as entered"
+    return (own, found) if found else (own,)
 
 
 def _detail(stiffness: Stiffness, claimed: CrystalClass, stability: Stability) -> str:

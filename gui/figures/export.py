@@ -274,6 +274,11 @@ class PdfSteps:
         """Go on on a new page."""
         self._writer.newPage()
 
+    def stop(self) -> None:
+        """Leave the file; nothing can be drawn after."""
+        if self.painter.isActive():
+            self.painter.end()
+
     def finish(self) -> bytes:
         """Return the whole file; nothing can be drawn after."""
         self.painter.end()

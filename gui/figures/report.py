@@ -110,18 +110,21 @@ def _pdf_steps(report: Report, press: Press) -> Steps:
     total = sum(map(len, paper.pages))
     yield 0.0
     pdf = PdfSteps(size, f"{report.title}: {report.subtitle}", press.is_reproducible)
-    done = 0
-    for number, page in enumerate(paper.pages):
-        if number:
-            pdf.turn()
-        for paint in page:
-            pdf.painter.save()
-            paint(pdf.painter)
-            pdf.painter.restore()
-            done += 1
-            if done % 40 == 0 or isinstance(paint, _FigurePaint):
-                yield done / total
-    return pdf.finish()
+    try:
+        done = 0
+        for number, page in enumerate(paper.pages):
+            if number:
+                pdf.turn()
+            for paint in page:
+                pdf.painter.save()
+                paint(pdf.painter)
+                pdf.painter.restore()
+                done += 1
+                if done % 40 == 0 or isinstance(paint, _FigurePaint):
+                    yield done / total
+        return pdf.finish()
+    finally:  # when the making is given up half-way
+        pdf.stop()
 
 
 def _lay_section(paper: Paper, section: Section, press: Press) -> None:

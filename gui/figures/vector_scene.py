@@ -57,7 +57,7 @@ def draw_vector_scene(
     painter.save()
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     place = _Place(rect, camera)
-    lines = composition.free_lines(view, theme)
+    lines = composition.free_lines(view, theme, composition.kept_half(view, camera))
     for line in lines:
         _draw_lines(painter, place, view, line, scale, hidden=True)
     layers = composition.layers(view)

@@ -10,13 +10,15 @@ import sys
 from argparse import Namespace
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
+from functools import cache
 from pathlib import Path
 from typing import Any
 
 for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
     os.environ.setdefault(_variable, "1")  # the drawing wants the other core
 
-from PySide6.QtWidgets import QApplication  # noqa: E402 - after the threads are set
+from PySide6.QtCore import QCoreApplication  # noqa: E402 - after the threads are set
+from PySide6.QtWidgets import QApplication  # noqa: E402
 
 from core.captions import (  # noqa: E402
     FIGURE_KINDS,
@@ -28,7 +30,6 @@ from core.captions import (  # noqa: E402
 from core.directional.quantities import quantity  # noqa: E402
 from core.errors import InputError  # noqa: E402
 from core.figure_words import (  # noqa: E402
-    PICTURES,
     REPORTS,
     SURFACE_FILES,
     expand,
@@ -49,6 +50,7 @@ from core.state import BenchState  # noqa: E402
 from core.verbs import Outcome, bench_as_asked  # noqa: E402
 from gui.figures.drawing import drawable  # noqa: E402
 from gui.figures.export import (  # noqa: E402
+    GROUNDS,
     MM,
     FigureForm,
     check_form,
@@ -73,16 +75,24 @@ _X_PORT = 6000
 @contextmanager
 def drawing_board() -> Iterator[tuple[Renderer, GlReport]]:
     """Give a renderer, with an application around it, on a screen or without one."""
-    if QApplication.instance() is None:
-        if "QT_QPA_PLATFORM" not in os.environ and not has_screen(os.environ):
-            os.environ["QT_QPA_PLATFORM"] = "offscreen"
-        QApplication(sys.argv[:1])
+    _application()
     report = probe()
     renderer = make_renderer(report)
     try:
         yield renderer, report
     finally:
         renderer.close()
+
+
+@cache
+def _application() -> QCoreApplication:
+    """Return the application that fonts and pictures need, kept for good once it is made."""
+    running = QApplication.instance()
+    if running is not None:
+        return running
+    if "QT_QPA_PLATFORM" not in os.environ and not has_screen(os.environ):
+        os.environ["QT_QPA_PLATFORM"] = "offscreen"
+    return QApplication(sys.argv[:1])
 
 
 def has_screen(environment: Mapping[str, str]) -> bool:
@@ -113,7 +123,7 @@ def figure(arguments: Namespace) -> Outcome:
     """Write a figure, a mesh or a grid of directions for every file."""
     files = expand(arguments.files)
     targets = outputs(arguments.out, files)
-    one_of(arguments.kind, FIGURE_KINDS, "kind of figure")
+    arguments.kind = one_of(arguments.kind, FIGURE_KINDS, "kind of figure")
     suffix = Path(arguments.out).suffix.lower()
     write = _write_surface if suffix in SURFACE_FILES else _write_figure
     if write is _write_figure:
@@ -133,11 +143,6 @@ def section(arguments: Namespace) -> Outcome:
     with drawing_board() as (renderer, _):
         state = bench_as_asked(arguments, arguments.file)
         return _told([_write_figure(state, arguments, target, renderer)])
-
-
-def wants_picture(arguments: Namespace) -> bool:
-    """Tell whether a section is to be drawn rather than listed."""
-    return bool(arguments.out) and Path(arguments.out).suffix.lower() in PICTURES
 
 
 def _write_figure(
@@ -160,7 +165,7 @@ def _write_figure(
 def _choice(state: BenchState, arguments: Namespace) -> FigureChoice:
     sides = state.display.layout
     shown = arguments.shown or (state.display.hemisphere if len(sides) == 2 else sides)
-    one_of(shown, SHOWN, "view of a hemisphere")
+    shown = one_of(shown, SHOWN, "view of a hemisphere")
     return FigureChoice(arguments.kind, state.quantity, sides, shown, arguments.time)
 
 
@@ -177,10 +182,11 @@ def form_of(arguments: Namespace, is_wide: bool) -> FigureForm:
         text = _WIDE_SIZE
     width, height, is_mm = parse_size(text)
     per = 1.0 if is_mm else MM / arguments.dpi if arguments.dpi > 0 else 1.0
-    one_of(arguments.theme, dict.fromkeys(THEMES, ""), "theme")
+    theme = one_of(arguments.theme, dict.fromkeys(THEMES, ""), "theme")
+    ground = one_of(arguments.ground, GROUNDS, "ground")
     return FigureForm(
         width * per, height * per, arguments.dpi, arguments.text if is_mm else 0.0,
-        arguments.ground, arguments.theme, not arguments.no_caption,
+        ground, theme, not arguments.no_caption,
         all_vectors=arguments.vectors, is_reproducible=arguments.reproducible)
 
 
@@ -278,11 +284,11 @@ def parse_figure(text: str, state: BenchState) -> FigureChoice:
     """
     kind, _, rest = text.partition(":")
     name, _, whose = rest.partition(":")
-    one_of(kind, FIGURE_KINDS, "kind of figure")
+    kind = one_of(kind, FIGURE_KINDS, "kind of figure")
     key = quantity(name or state.quantity).key
-    whose = whose or state.display.layout
+    whose = (whose or state.display.layout).strip()
     if kind == "hemisphere":
-        shown = one_of(whose if whose != "AB" else "A", SHOWN, "view of a hemisphere")
+        shown = one_of(whose if whose.upper() != "AB" else "A", SHOWN, "view of a hemisphere")
         return FigureChoice(kind, key, "AB" if shown == "difference" else "A", shown)
     return FigureChoice(kind, key, one_of(whose, SIDES, "side"))
 
@@ -318,7 +324,8 @@ def _told(written: list[dict[str, Any]]) -> Outcome:
 def _page(found: Any) -> str:
     lines = []
     for one in found if isinstance(found, list) else [found]:
-        size = f", {one['width_mm']:.4g} × {one['height_mm']:.4g} mm" if "width_mm" in one else ""
+        size = "" if "width_mm" not in one else (
+            f", {one['width_mm']:.4g} × {one['height_mm']:.4g} mm")
         lines.append(f"wrote {one['file']}  ({one['bytes']:,} bytes{size})\n")
     return "".join(lines)
 

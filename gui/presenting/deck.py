@@ -21,6 +21,8 @@ from core.numbers import significant
 from core.state import BenchState, Vector3
 from core.study.tolerance import cost_map
 from gui.plots.grid import nice_step, nice_ticks, tick_texts
+from gui.presenting.axes import AxesOf, axes_in_part, axes_now, single_directions
+from gui.presenting.spread import section_deviation
 from gui.presenting.stage import (
     NO_DENSITY,
     PLANES,
@@ -30,7 +32,6 @@ from gui.presenting.stage import (
     pane_title,
     plane_choices,
     plane_key,
-    point_axes,
     quantity_title,
     scale_view,
     sides,
@@ -61,14 +62,17 @@ def _medium(state: BenchState, side: str) -> Medium:
 
 
 # ------------------------------------------------------------------ section
-def section_view(state: BenchState) -> SectionView:
-    """Return the polar section of A and B."""
+def section_view(state: BenchState, is_live: bool = False) -> SectionView:
+    """Return the polar section of A and B, with bands of one standard uncertainty.
+
+    Of quantities whose uncertainty takes too long to follow an edit, the bands are left out
+    while `is_live`.
+    """
     shown = quantity(state.quantity)
-    curves = [curve for side in shown_sides(state) for curve in _curves(state, shown, side)]
-    radius = max(
-        (float(np.nanmax(np.hypot(*curve.points), initial=0.0)) for curve in curves),
-        default=0.0,
-    )
+    curves = [
+        curve for side in shown_sides(state) for curve in _curves(state, shown, side, is_live)
+    ]
+    radius = max((_reach(curve) for curve in curves), default=0.0)
     ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
     across, up = plane_axes(np.array(state.section))
     negative = any(curve.negative is not None and curve.negative.any() for curve in curves)
@@ -90,9 +94,18 @@ def section_view(state: BenchState) -> SectionView:
     )
 
 
-def _curves(state: BenchState, shown: Quantity, side: str) -> list[Curve]:
+def _reach(curve: Curve) -> float:
+    """Return how far out a curve goes, the outer edge of its band included."""
+    outer = curve.points if curve.band is None else curve.band[1]
+    return max(
+        float(np.nanmax(np.hypot(*points), initial=0.0)) for points in (curve.points, outer)
+    )
+
+
+def _curves(state: BenchState, shown: Quantity, side: str, is_live: bool) -> list[Curve]:
     found = live.section(_medium(state, side), state.quantity, state.section)
     limit = _SECTION_CLIP.get(shown.key, drawable_limit(found.values))
+    sigmas = section_deviation(state, side, is_live)
     curves = []
     for sheet, (points, values) in enumerate(zip(found.points, found.values, strict=True)):
         if shown.sheets == 3 and not state.display.sheets[sheet]:
@@ -102,10 +115,20 @@ def _curves(state: BenchState, shown: Quantity, side: str) -> list[Curve]:
         negative = values < 0 if shown.signed else None
         label = SHEET_NAMES[sheet] if shown.sheets == 3 else ""
         faint = found.out_of_plane[sheet] if shown.shape == "wave" else None
-        curves.append(
-            Curve(drawn, side, sheet, label, negative=negative if faint is None else faint)
-        )
+        band = None if sigmas is None else _band(drawn, sigmas[sheet], limit)
+        dotted = negative if faint is None else faint
+        curves.append(Curve(drawn, side, sheet, label, band, dotted))
     return curves
+
+
+def _band(points: FloatArray, sigma: FloatArray, limit: float) -> FloatArray:
+    """Return the inner and the outer edge of a band, (2, 2, N); nowhere beyond `limit`."""
+    radius = np.hypot(*points)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        width = np.where(sigma < limit, sigma, np.nan) / radius
+        inner = np.maximum(1.0 - width, 0.0)
+        outer = np.minimum(1.0 + width, limit / radius)
+    return np.stack([inner * points, outer * points])
 
 
 def _dotted_note(shown: Quantity, dotted: bool) -> str:
@@ -201,7 +224,9 @@ def plane_normal(state: BenchState, key: str) -> Vector3 | None:
 _SHOWN = {"A": "A", "B": "B", "difference": "B − A", "cost": "cutting error"}
 
 
-def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
+def hemisphere_view(
+    state: BenchState, fine: bool = True, axes_of: AxesOf = axes_now
+) -> HemisphereView:
     """Return the hemisphere of A, of B, of their difference, or of what a cutting error costs.
 
     While something moves it has fewer pixels and no contours.
@@ -227,7 +252,7 @@ def hemisphere_view(state: BenchState, fine: bool = True) -> HemisphereView:
         picture=picture,
         scale=scale,
         contours=_contour_lines(picture, levels) if known and fine else (),
-        marks=_hemisphere_marks(state, choice),
+        marks=_hemisphere_marks(state, choice, axes_of),
         projection=projection,  # type: ignore[arg-type]
         shown=choice,
         choices=_hemisphere_choices(state),
@@ -295,7 +320,8 @@ def _disc_values(
         costs: FloatArray = _cost_picture(media[0], key, projection, delta, size)[sheet]
         return costs
     values = [live.hemisphere(medium, key, projection, size)[sheet] for medium in media]
-    return values[1] - values[0] if choice == "difference" else values[0]
+    picture: FloatArray = values[1] - values[0] if choice == "difference" else values[0]
+    return picture
 
 
 @lru_cache(maxsize=4)
@@ -339,15 +365,15 @@ def _trace(
     lines = []
     for level in levels:
         for line in pg.functions.isocurve(picture, level, connected=True):
-            points = np.array(line).T
-            x = (points[1] + 0.5) / size * 2.0 - 1.0
-            y = 1.0 - (points[0] + 0.5) / size * 2.0
+            points = np.array(line).T  # the middle of the first pixel is (0.5, 0.5)
+            x = points[1] / size * 2.0 - 1.0
+            y = 1.0 - points[0] / size * 2.0
             lines.append((level, np.stack([x, y])))
     return tuple(lines)
 
 
 def _hemisphere_marks(
-    state: BenchState, choice: str
+    state: BenchState, choice: str, axes_of: AxesOf
 ) -> tuple[tuple[float, float, str, str], ...]:
     """Return the pin, the low-index directions and the acoustic axes on the disc."""
     projection = state.display.projection
@@ -364,7 +390,7 @@ def _hemisphere_marks(
     if state.display.marks and specimen.density is not None and (quantity(state.quantity).wave):
         marks += [
             (*_on_disc(unit_vector(axis.direction), projection), "", "axis")
-            for axis in point_axes(_medium(state, side))
+            for axis in single_directions(axes_in_part(state, side, axes_of))
         ]
     return tuple(marks)
 

@@ -28,6 +28,9 @@ from core.edits import FITS
 from core.errors import InputError
 from core.numbers import full_precision, significant, with_deviation
 from core.state import BenchState, OrientationChoice, Specimen, claimed_class
+from core.study.deviations import eigenstiffness_deviation
+from core.study.trust import Findings
+from core.study.uncertainty import deviations_of
 from core.study.verdict import Verdict, judge
 from core.tensor.notation import constant_name
 from core.tensor.stability import assess
@@ -41,6 +44,8 @@ from core.tensor.symmetry import (
     distance,
     laue_rotations,
 )
+from gui.presenting.sigmas import number_text, plain_or_bracketed
+from gui.presenting.spread import crystal_factor
 from gui.viewdata import (
     CellFormView,
     CellView,
@@ -55,6 +60,10 @@ from gui.viewdata import (
 UNITS = {"stiffness": "GPa", "compliance": "1/TPa", "uncertainty": "GPa"}
 NAMES = {"stiffness": "Stiffness", "compliance": "Compliance", "uncertainty": "Uncertainty"}
 _LIGHTEST, _HEAVIEST = 50.0, 25e3  # kg/m³: solid hydrogen has 86, osmium 22,590
+COVARIANCE_NOTE = (
+    "How the 21 errors are correlated is known too (a full covariance), and every ± goes by "
+    "it. Editing an uncertainty lets the correlations go."
+)
 _OFF_PATTERN = 1e-6  # of the largest constant: a cell this far from its class says so
 
 
@@ -64,17 +73,20 @@ def ledger_specimen(state: BenchState) -> Specimen:
 
 
 @lru_cache(maxsize=8)
-def verdict_of(specimen: Specimen) -> Verdict:
-    """Return the verdict on a specimen."""
+def verdict_of(specimen: Specimen, symmetry: str = "", notes: int = 0) -> Verdict:
+    """Return the verdict on a specimen; see `core.study.verdict.judge`."""
     std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
     stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
     covariance = None if specimen.covariance is None else np.array(specimen.covariance)
-    return judge(stiffness, claimed_class(specimen), std, covariance)
+    return judge(stiffness, claimed_class(specimen), std, covariance, symmetry, notes)
 
 
-def verdict_view(specimen: Specimen) -> VerdictView:
-    """Return the band above everything."""
-    verdict = verdict_of(specimen)
+def verdict_view(specimen: Specimen, findings: Findings | None = None) -> VerdictView:
+    """Return the band above everything, with what the search for symmetry has found."""
+    if findings is None:
+        verdict = verdict_of(specimen)
+    else:
+        verdict = verdict_of(specimen, findings.symmetry.sentence, len(findings.notes))
     facts = verdict.facts
     if specimen.density is None:
         facts = (*facts, "no density: waves are off")
@@ -94,8 +106,7 @@ def constants_view(specimen: Specimen, face: str) -> ConstantsView:
     claimed = claimed_class(specimen)
     table, note = _face_table(specimen, face)
     expected = _expected(specimen, claimed) if face == "stiffness" else table
-    known = face == "stiffness" and specimen.stiffness_std is not None
-    std = np.array(specimen.stiffness_std) if known else np.zeros((6, 6))
+    std = deviations(specimen) if face == "stiffness" else np.zeros((6, 6))
     slack = _OFF_PATTERN * float(np.abs(np.array(specimen.stiffness)).max())
     cells = tuple(
         tuple(
@@ -105,14 +116,25 @@ def constants_view(specimen: Specimen, face: str) -> ConstantsView:
         for i in range(6)
     )
     known_face = face if face in UNITS else "stiffness"
-    return ConstantsView(known_face, UNITS[known_face], cells, not note, note)  # type: ignore[arg-type]
+    is_editable = not note
+    if face == "uncertainty" and specimen.covariance is not None:
+        note = COVARIANCE_NOTE
+    return ConstantsView(known_face, UNITS[known_face], cells, is_editable, note)  # type: ignore[arg-type]
+
+
+def deviations(specimen: Specimen) -> FloatArray:
+    """Return the standard uncertainties of the constants, (6, 6), GPa; zeros if unknown."""
+    if specimen.stiffness_std is not None:
+        return np.array(specimen.stiffness_std)
+    if specimen.covariance is not None:
+        return deviations_of(np.array(specimen.covariance))
+    return np.zeros((6, 6))
 
 
 def _face_table(specimen: Specimen, face: str) -> tuple[FloatArray, str]:
     stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
     if face == "uncertainty":
-        known = specimen.stiffness_std
-        return (np.zeros((6, 6)) if known is None else np.array(known)), ""
+        return deviations(specimen), ""
     if face == "compliance":
         try:
             return np.array(stiffness.compliance) * 1e3, ""
@@ -178,16 +200,18 @@ def edit_label(face: str, row: int, column: int) -> str:
 
 def spectrum_view(specimen: Specimen) -> SpectrumView:
     """Return the six bars of the strain spectrum."""
-    stability = assess(Stiffness.from_voigt(np.array(specimen.stiffness)))
+    stiffness = Stiffness.from_voigt(np.array(specimen.stiffness))
+    stability = assess(stiffness)
+    factor = crystal_factor(specimen)
+    sigmas = np.zeros(6) if factor is None else eigenstiffness_deviation(stiffness, factor)
     bars = tuple(
-        SpectrumBar(
-            float(value),
-            significant(float(value), 3),
-            words,
-            f"{significant(float(value), 6)} GPa: {words}. An eigenvalue of the stiffness in "
-            "Kelvin form; the crystal is stable when all six are positive.",
+        _bar(value, sigma, words)
+        for value, sigma, words in zip(
+            stability.eigenstiffness.tolist(),
+            sigmas.tolist(),
+            stability.descriptions,
+            strict=True,
         )
-        for value, words in zip(stability.eigenstiffness, stability.descriptions, strict=True)
     )
     count = int((stability.eigenstiffness <= 0).sum())
     note = (
@@ -196,6 +220,17 @@ def spectrum_view(specimen: Specimen) -> SpectrumView:
         else (f"{count} of 6 strains release energy instead of storing it")
     )
     return SpectrumView(bars, note)
+
+
+def _bar(value: float, sigma: float, words: str) -> SpectrumBar:
+    known = number_text(value, sigma) if sigma else significant(value, 6)
+    return SpectrumBar(
+        value,
+        plain_or_bracketed(value, sigma) if sigma else significant(value, 3),
+        words,
+        f"{known} GPa: {words}. An eigenvalue of the stiffness in Kelvin form; the crystal is "
+        "stable when all six are positive.",
+    )
 
 
 # ------------------------------------------------------------------ forms
@@ -259,7 +294,7 @@ def cell_form_view(specimen: Specimen) -> CellFormView:
         return CellFormView(
             ("",) * 3,
             ("",) * 3,
-            axes_text(specimen.crystal_axes),  # type: ignore[arg-type]
+            axes_text(specimen.crystal_axes),
             conventions,
             note,
         )

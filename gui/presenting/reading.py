@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from functools import lru_cache
 from typing import Any
 
@@ -18,10 +19,22 @@ from core.directional.quantities import QUANTITIES, quantity
 from core.directional.sphere import Directions, directions
 from core.numbers import full_precision, signed, significant
 from core.state import BenchState, Specimen, Vector3, claimed_class
+from core.study.deviations import extreme_deviations
 from core.study.part import PartRow, part_table
 from core.study.tolerance import cone_extremes
 from core.tensor.averages import anisotropy, averages, hashin_shtrikman
 from core.tensor.stiffness import Stiffness
+from gui.presenting.sigmas import (
+    BRACKETS,
+    RowSigmas,
+    drawn_otherwise,
+    draws_notice,
+    number_text,
+    plain_or_bracketed,
+    sigma_words,
+    signed_text,
+)
+from gui.presenting.spread import PinSpread, TableSpread, crystal_factor, quick_deviations
 from gui.presenting.stage import SHEET_NAMES, sides
 from gui.viewdata import ExtremeRow, ExtremesView, ReadingRow, ReadingView, TableView
 
@@ -30,15 +43,35 @@ Row = tuple[str, str, str, float, str, str]  # key, label, unit, value, tooltip,
 
 
 # ------------------------------------------------------------------ the pin
-def reading_view(state: BenchState) -> ReadingView:
-    """Return the table at the pin for A and B."""
+def reading_view(state: BenchState, spread: PinSpread | None = None) -> ReadingView:
+    """Return the table at the pin for A and B.
+
+    Parameters
+    ----------
+    state : BenchState
+    spread : PinSpread, optional
+        All uncertainties at this pin; without it there are those that take no time.
+    """
     values = {side: pin_rows(_medium(state, side), state.pin) for side in sides(state)}
     a, b = values.get("A"), values.get("B")
     first = a or b or ()
     second = {_place_of(row): row[3] for row in b} if a and b else {}
-    rows = tuple(_reading_row(row, second.get(_place_of(row))) for row in first)
+    known = quick_deviations(state) if spread is None else spread.pin
+    sigmas = RowSigmas(
+        known.get(sides(state)[0], {}),
+        known.get("B", {}) if second else {},
+        spread.differences if spread is not None else {},
+        bool(second),
+        drawn_otherwise(spread, sides(state)[0]),
+    )
+    rows = tuple(_reading_row(row, second.get(_place_of(row)), sigmas) for row in first)
     missing = [side for side in sides(state) if state.specimen_of(side).density is None]
-    notice = "Waves want a density: enter it in the ledger." if missing else ""
+    notices = (
+        "Waves want a density: enter it in the ledger." if missing else "",
+        BRACKETS if known and second else "",
+        draws_notice(spread),
+    )
+    notice = " ".join(text for text in notices if text)
     return ReadingView(
         pin_words(state.pin),
         _near_words(state, "A"),
@@ -160,19 +193,23 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
     return rows
 
 
-def _reading_row(row: Row, other: float | None) -> ReadingRow:
+def _reading_row(row: Row, other: float | None, sigmas: RowSigmas) -> ReadingRow:
     key, label, unit, value, tooltip, group = row
+    place = group, label
     value, other = _without_dust(value), None if other is None else _without_dust(other)
-    second = "" if other is None else significant(other)
     difference = None if other is None else other - value
+    text = plain_or_bracketed if sigmas.in_brackets else number_text
+    own = sigmas.first.get(place, 0.0)
     return ReadingRow(
         label,
         unit,
-        significant(value),
-        second,
-        "" if difference is None else signed(difference, 3),
+        text(value, own),
+        "" if other is None else text(other, sigmas.second.get(place, 0.0)),
+        ""
+        if difference is None
+        else signed_text(difference, sigmas.difference.get(place, 0.0)),
         (full_precision(value), full_precision(other), full_precision(difference)),
-        tooltip,
+        "\n".join(line for line in (tooltip, sigma_words(own, unit, place, sigmas)) if line),
         key,
         group,
     )
@@ -211,11 +248,15 @@ def extremes_view(
     pending : bool
         Whether a newer result is on its way.
     """
+    sigmas = {} if found is None or pending else _extreme_sigmas(specimen, found)
     rows = (
         []
         if found is None
         else [
-            _extreme_row(specimen, turn, f"{label} {word}", unit, pair[which])
+            _extreme_row(
+                specimen, turn, f"{label} {word}", unit, pair[which],
+                sigmas.get(key, (None, None))[which],
+            )
             for key, label, unit in _EXTREMES
             if (pair := found.get(key)) is not None
             for which, word in ((0, "least"), (1, "greatest"))
@@ -227,8 +268,24 @@ def extremes_view(
     )
 
 
+def _extreme_sigmas(
+    specimen: Specimen, found: Extremes
+) -> dict[str, tuple[float | None, float | None]]:
+    """Return the uncertainties of extremes where those of the constants are known."""
+    factor = crystal_factor(specimen)
+    if factor is None:
+        return {}
+    medium = live.crystal_medium(specimen.stiffness, specimen.density)
+    return extreme_deviations(medium, found, factor)
+
+
 def _extreme_row(
-    specimen: Specimen, turn: np.ndarray, label: str, unit: str, extreme: Extreme | None
+    specimen: Specimen,
+    turn: np.ndarray,
+    label: str,
+    unit: str,
+    extreme: Extreme | None,
+    sigma: float | None,
 ) -> ExtremeRow:
     name = f"{label}{', ' if unit else ''}{unit}"
     if extreme is None:
@@ -236,16 +293,18 @@ def _extreme_row(
             name, "–", "not defined", None, "Not defined: the table is unstable.", ""
         )
     crystal = np.array(extreme.direction)
-    place = {"all": "every direction", "ring": f"ring through {_place(crystal, specimen)}"}.get(
-        extreme.where, _place(crystal, specimen)
+    place = place_words(crystal, specimen)
+    place = {"all": "every direction", "ring": f"ring through {place}"}.get(
+        extreme.where, place
     )
-    tooltip = f"{extreme.value!r} along {extreme.direction} in crystal axes"
+    spread = f" ± {significant(sigma, 2)}" if sigma else ""
+    tooltip = f"{extreme.value!r}{spread} along {extreme.direction} in crystal axes"
     if extreme.transverse is not None:
         tooltip += f", transverse direction {extreme.transverse}"
     x, y, z = (turn @ crystal).tolist()
     return ExtremeRow(
         name,
-        significant(extreme.value),
+        plain_or_bracketed(extreme.value, sigma or 0.0),
         place,
         (x, y, z),
         tooltip,
@@ -253,7 +312,8 @@ def _extreme_row(
     )
 
 
-def _place(vector: np.ndarray, specimen: Specimen) -> str:
+def place_words(vector: np.ndarray, specimen: Specimen) -> str:
+    """Return the lattice direction near a vector of crystal axes, or its components."""
     if not specimen.frame.has_basis:
         return "  ".join(significant(round(float(x), 3), 2) for x in vector)
     near = nearest_indices(vector, specimen.frame)
@@ -318,10 +378,28 @@ def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
 
 
 # ------------------------------------------------------------------ aggregates and part
-def aggregate_view(specimen: Specimen) -> TableView:
-    """Return averages, bounds and indices of anisotropy."""
-    return _aggregate(
+def aggregate_view(specimen: Specimen, spread: TableSpread | None = None) -> TableView:
+    """Return averages, bounds and indices of anisotropy, with uncertainties where known."""
+    view = _aggregate(
         specimen.stiffness, specimen.density, claimed_class(specimen).key == "cubic"
+    )
+    if spread is None or not spread.aggregate:
+        return view
+    rows = tuple(
+        (shown[0], *_bracketed_cells(shown[1:], full[1:], spread.aggregate.get(shown[0], ())))
+        for shown, full in zip(view.rows, view.full, strict=True)
+    )
+    return replace(view, rows=rows, notice=BRACKETS)
+
+
+def _bracketed_cells(
+    shown: tuple[str, ...], full: tuple[str, ...], sigmas: tuple[float, ...]
+) -> tuple[str, ...]:
+    """Return numbers with their uncertainties in brackets, as far as there are any."""
+    known = (*sigmas, *[0.0] * (len(shown) - len(sigmas)))
+    return tuple(
+        plain_or_bracketed(float(number), sigma) if number and sigma else text
+        for text, number, sigma in zip(shown, full, known, strict=True)
     )
 
 
@@ -391,15 +469,40 @@ def _padded(
     return label, *(text(value) for value in values), *[""] * (4 - len(values))
 
 
-def part_view(state: BenchState) -> TableView:
-    """Return E, ν, G, coupling, speeds and power flow along the part axes for A and B."""
+def part_view(state: BenchState, spread: TableSpread | None = None) -> TableView:
+    """Return E, ν, G, coupling, speeds and power flow along the part axes for A and B.
+
+    With uncertainties where they are known.
+    """
     tables = {side: _part(_medium(state, side)) for side in sides(state)}
     first = tables.get("A") or tables["B"]
     second = {row.key: row.value for row in tables["B"]} if len(tables) == 2 else {}
     header = ("", "A", "B", "B − A") if second else ("", sides(state)[0])
     rows = tuple(_part_row(row, second, significant, lambda x: signed(x, 3)) for row in first)
     full = tuple(_part_row(row, second, full_precision, full_precision) for row in first)
-    return TableView("Part", header, rows, full)
+    if spread is None or not spread.part:
+        return TableView("Part", header, rows, full)
+    sigmas = _part_sigmas(state, tables, spread)
+    rows = tuple(
+        (shown[0], *_bracketed_cells(shown[1:], exact[1:], own))
+        for shown, exact, own in zip(rows, full, sigmas, strict=True)
+    )
+    return TableView("Part", header, rows, full, notice=BRACKETS)
+
+
+def _part_sigmas(
+    state: BenchState, tables: dict[str, tuple[PartRow, ...]], spread: TableSpread
+) -> list[tuple[float, ...]]:
+    """Return the uncertainties of A and B, or of the one side shown, row by row."""
+    by_key = {
+        side: dict(zip([row.key for row in rows], spread.part[side].tolist(), strict=True))
+        for side, rows in tables.items()
+        if side in spread.part
+    }
+    first = tables[sides(state)[0]]
+    return [
+        tuple(by_key.get(side, {}).get(row.key, 0.0) for side in sides(state)) for row in first
+    ]
 
 
 @lru_cache(maxsize=4)

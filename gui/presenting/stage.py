@@ -10,14 +10,16 @@ import numpy as np
 from core import live
 from core.arrays import Float32Array, FloatArray
 from core.crystal.cell import axes_matrix
-from core.directional.acoustic_axes import AcousticAxis, acoustic_axes
 from core.directional.medium import Medium
 from core.directional.quantities import QUANTITIES, Quantity, quantity
+from core.directional.seams import MendedSheet, Seams, find_seams, mend
 from core.directional.sphere import sphere_mesh
+from core.directional.surfaces import Fields, SurfaceMaker
 from core.directional.waves import longitudinality, modes
 from core.numbers import significant
 from core.state import BenchState, Vector3
 from gui.plots.grid import nice_ticks, tick_texts
+from gui.presenting.axes import Axes, AxesOf, axes_in_part, axes_now, single_directions
 from gui.viewdata import (
     DirectionMark,
     PaneView,
@@ -43,6 +45,10 @@ NO_DENSITY = "Waves want a density. Enter it in the ledger; the stiffness side w
 LEFT_OUT = "Left out where it is not defined or has no bound: the table is unstable."
 _TICK_LEVEL = 2  # 162 vertices: enough ticks to read, few enough to see the sheet
 _TALLEST = 3.0  # times the median: where a quantity runs off to infinity, it is cut there
+_COLOUR_VALUES = {
+    "longitudinality": longitudinality,
+    **{key: entry.values for key, entry in QUANTITIES.items() if entry.sheets == 3},
+}
 _FOCUSING_RANGE = (0.05, 20.0)  # focusing is infinite on caustics: colours stop here
 
 
@@ -105,12 +111,19 @@ class Drawn:
     """The surfaces of one side, before scale and colours are settled between the sides."""
 
     side: str
-    rows: Float32Array
+    rows: tuple[Float32Array, ...]  # one array a sheet
     medium: Medium
+    axes: Axes  # acoustic axes in part axes, as far as they are known
 
 
-def pane_views(state: BenchState, fine: bool) -> dict[str, PaneView]:
-    """Return the panes that the stage shows."""
+def pane_views(
+    state: BenchState, fine: bool, axes_of: AxesOf = axes_now
+) -> dict[str, PaneView]:
+    """Return the panes that the stage shows.
+
+    With the fine mesh the sheets of waves are mended where they meet (see
+    `core.directional.seams`), as far as `axes_of` knows where that is.
+    """
     shown = quantity(state.quantity)
     level = live.FINE_LEVEL if fine else live.COARSE_LEVEL
     drawn = {}
@@ -118,36 +131,47 @@ def pane_views(state: BenchState, fine: bool) -> dict[str, PaneView]:
         if shown.wave and state.specimen_of(side).density is None:
             continue
         medium = live.part_medium(state.specimen_of(side), state.orientation_of(side))
-        drawn[side] = Drawn(side, coloured_rows(medium, state, level), medium)
+        axes = axes_in_part(state, side, axes_of) if shown.wave else ()
+        drawn[side] = Drawn(side, coloured_rows(medium, state, level), medium, axes)
     groups = [tuple(drawn)] if state.display.shared_scale else [(side,) for side in drawn]
     views = {}
     for group in groups:
         radius, scale = _settle([drawn[side] for side in group], state, shown)
         for side in group:
-            views[side] = _pane(state, shown, drawn[side], radius, scale, level)
+            views[side] = _pane(state, shown, drawn[side], radius, scale, level, fine)
     return {side: views.get(side) or _empty_pane(state, side, shown) for side in sides(state)}
 
 
-def coloured_rows(medium: Medium, state: BenchState, level: int) -> Float32Array:
-    """Return the surface rows with the values that the colours follow in the last row."""
-    rows = bounded_rows(medium, state.quantity, level)
-    colour = state.display.colour_by
-    if colour == "value" or len(rows) == 1 or colour == state.quantity:
-        return rows
-    return _recoloured(medium, state.quantity, colour, level)
+def coloured_rows(medium: Medium, state: BenchState, level: int) -> tuple[Float32Array, ...]:
+    """Return the rows of each sheet with the values that the colours follow in the last row."""
+    return _sheet_rows(medium, state.quantity, state.display.colour_by, level)
 
 
-@lru_cache(maxsize=4)
-def _recoloured(medium: Medium, key: str, colour: str, level: int) -> Float32Array:
-    rows = bounded_rows(medium, key, level).copy()
-    half = sphere_mesh(level).half
-    values = (
-        longitudinality(medium, half)
-        if colour == "longitudinality"
-        else quantity(colour).values(medium, half)
-    )
-    rows[:, 6, :] = np.concatenate([values, values], axis=1)
-    return rows
+@lru_cache(maxsize=8)
+def _sheet_rows(
+    medium: Medium, key: str, colour: str, level: int
+) -> tuple[Float32Array, ...]:
+    """Return the sheets apart, the same objects for the same request: the stage goes by it."""
+    is_plain = colour in ("value", key) or quantity(key).sheets == 1
+    rows = bounded_rows(medium, key, level)
+    if is_plain and not quantity(key).logarithmic:
+        return tuple(rows)
+    coloured = rows.copy()
+    if not is_plain:
+        values = _COLOUR_VALUES[colour](medium, sphere_mesh(level).half)
+        coloured[:, 6] = np.tile(values, 2)
+    _keep_to_colours(coloured, key if is_plain else colour)
+    return tuple(coloured)
+
+
+def _keep_to_colours(rows: Float32Array, colour: str) -> None:
+    """Take values beyond the ends of a logarithmic scale back to them.
+
+    Between two vertices the drawing goes straight from one value to the other: a thousand
+    beside a caustic would paint most of its triangles in the colour of twenty.
+    """
+    if colour in QUANTITIES and quantity(colour).logarithmic:
+        np.clip(rows[:, 6], *_FOCUSING_RANGE, out=rows[:, 6])
 
 
 def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[float, ScaleView]:
@@ -190,7 +214,8 @@ def bounded_rows(medium: Medium, key: str, level: int) -> Float32Array:
         shrink = np.minimum(np.float32(limit) / lengths, np.float32(1.0))
     bounded = rows.copy()
     bounded[:, :3] *= shrink[:, np.newaxis, :]
-    bounded[:, 6] *= shrink
+    if quantity(key).shape != "slowness" or key == "slowness":  # others only colour it
+        bounded[:, 6] *= shrink
     return bounded
 
 
@@ -200,9 +225,9 @@ def _squared_length(sheet: Float32Array) -> Float32Array:
     return squared
 
 
-def _visible(rows: Float32Array, state: BenchState) -> list[Float32Array]:
+def _visible(rows: tuple[Float32Array, ...], state: BenchState) -> list[Float32Array]:
     if len(rows) == 1:
-        return [rows[0]]
+        return list(rows)
     return [sheet for sheet, on in zip(rows, state.display.sheets, strict=True) if on]
 
 
@@ -260,14 +285,16 @@ def _pane(
     radius: float,
     scale: ScaleView,
     level: int,
+    fine: bool,
 ) -> PaneView:
-    triangles = sphere_mesh(level).triangles
     on = state.display.sheets if shown.sheets == 3 else (True,)
     sheets = tuple(
-        SheetView(rows, triangles, visible)
-        for rows, visible in zip(drawn.rows, on, strict=True)
+        SheetView(one.rows, one.triangles, visible)
+        for one, visible in zip(_sheets(state, drawn, level, fine), on, strict=True)
     )
-    missing = bool(np.isnan(drawn.rows[:, 0]).any()) and not drawn.medium.stiffness.is_stable
+    missing = not drawn.medium.stiffness.is_stable and any(
+        bool(np.isnan(rows[0]).any()) for rows in drawn.rows
+    )
     return PaneView(
         side=drawn.side,
         title=pane_title(state, drawn.side),
@@ -282,6 +309,44 @@ def _pane(
         notice=LEFT_OUT if missing else "",
         is_wave_surface=shown.shape == "wave",
     )
+
+
+def _sheets(
+    state: BenchState, drawn: Drawn, level: int, fine: bool
+) -> tuple[MendedSheet, ...]:
+    """Return the sheets of a side, mended when they are fine and defined everywhere."""
+    if fine and drawn.axes and drawn.medium.stiffness.is_stable:
+        colour = state.display.colour_by
+        return _mended(drawn.medium, state.quantity, colour, level, drawn.axes)
+    triangles = sphere_mesh(level).triangles
+    return tuple(MendedSheet(rows, triangles) for rows in drawn.rows)
+
+
+@lru_cache(maxsize=4)
+def _mended(
+    medium: Medium, key: str, colour: str, level: int, axes: Axes
+) -> tuple[MendedSheet, ...]:
+    rows = np.stack(_sheet_rows(medium, key, colour, level))
+    seams = _seams(medium, level, axes)
+    return mend(seams, medium, sphere_mesh(level), rows, _coloured_maker(key, colour))
+
+
+@lru_cache(maxsize=4)
+def _seams(medium: Medium, level: int, axes: Axes) -> Seams:
+    return find_seams(medium, sphere_mesh(level), axes)
+
+
+def _coloured_maker(key: str, colour: str) -> SurfaceMaker:
+    """Return what makes the rows of a quantity in the colours that are shown."""
+    is_plain = colour in ("value", key)
+
+    def fill(fields: Fields, out: Float32Array) -> None:
+        quantity(key).maker(fields, out)
+        if not is_plain:
+            out[:, 6] = _COLOUR_VALUES[colour](fields.medium, fields.directions)
+        _keep_to_colours(out, key if is_plain else colour)
+
+    return fill
 
 
 def _empty_pane(state: BenchState, side: str, shown: Quantity) -> PaneView:
@@ -335,38 +400,35 @@ def _marks(state: BenchState, shown: Quantity, drawn: Drawn) -> tuple[DirectionM
     if shown.wave and state.display.marks:
         marks += [
             DirectionMark(unit_vector(np.array(axis.direction)), "", "axis")
-            for axis in point_axes(drawn.medium)
+            for axis in single_directions(drawn.axes)
         ]
     return tuple(marks)
-
-
-@lru_cache(maxsize=4)
-def point_axes(medium: Medium) -> tuple[AcousticAxis, ...]:
-    """Return the acoustic axes of a medium that are single directions, part axes."""
-    return tuple(
-        axis for axis in acoustic_axes(medium) if axis.kind in ("conical", "tangential")
-    )
 
 
 def _polarisation_ticks(
     state: BenchState, shown: Quantity, drawn: Drawn, radius: float
 ) -> FloatArray | None:
     """Return short lines along the polarisation on every visible sheet, (M, 2, 3)."""
-    if not state.display.ticks or shown.sheets == 1:
+    if not state.display.ticks or shown.sheets == 1 or not any(state.display.sheets):
         return None
+    return _tick_lines(drawn.medium, state.quantity, state.display.sheets, radius)
+
+
+@lru_cache(maxsize=4)
+def _tick_lines(
+    medium: Medium, key: str, sheets: tuple[bool, bool, bool], radius: float
+) -> FloatArray:
     mesh = sphere_mesh(_TICK_LEVEL)
-    polarisation = modes(drawn.medium, mesh.half).polarisation
-    rows = live.surface(drawn.medium, state.quantity, _TICK_LEVEL)
+    polarisation = modes(medium, mesh.half).polarisation
+    rows = live.surface(medium, key, _TICK_LEVEL)
     lines = []
-    for sheet, visible in enumerate(state.display.sheets):
-        if not visible:
-            continue
+    for sheet in np.flatnonzero(sheets):
         points = rows[sheet, :3].T.astype(np.float64)
         both = np.concatenate([polarisation[sheet], polarisation[sheet]], axis=1).T
         lines.append(
             np.stack([points - 0.045 * radius * both, points + 0.045 * radius * both], axis=1)
         )
-    if not lines:
-        return None
     ticks = np.concatenate(lines)
-    return ticks[np.isfinite(ticks).all(axis=(1, 2))]
+    with np.errstate(invalid="ignore"):  # where nothing is defined, or it was drawn back
+        is_drawn = np.linalg.norm(ticks.mean(axis=1), axis=1) <= 1.001 * radius
+    return np.asarray(ticks[is_drawn])

@@ -200,11 +200,18 @@ def section_segments(
     return np.ascontiguousarray(np.stack(ends).transpose(2, 0, 1), dtype=np.float32)
 
 
-def free_lines(view: PaneView, theme: Theme) -> tuple[LineSet, ...]:
-    """Return the axes, the polarisation ticks and the rim of the section disc."""
+def free_lines(
+    view: PaneView, theme: Theme, kept: FloatArray | None = None
+) -> tuple[LineSet, ...]:
+    """Return the axes, the polarisation ticks and the rim of the section disc.
+
+    Ticks of what is cut away go with it; `kept` is the normal of the half that stays.
+    """
     result = [line for triad in view.triads for line in _triad_lines(triad, theme)]
     if view.ticks is not None and len(view.ticks):
         ticks = np.asarray(view.ticks / view.radius, dtype=np.float32)
+        if kept is not None:
+            ticks = np.ascontiguousarray(ticks[ticks.sum(axis=1) @ kept >= 0.0])
         result.append(LineSet(ticks, theme.colour("ink"), 1.3, lift=0.02))
     if has_disc(view):
         result.append(LineSet(_ring(view), theme.side(view.side, 0.55), 1.0))

@@ -93,7 +93,8 @@ class FlatRenderer:
             _draw_sheet(canvas, shot, layer)
             _draw_lines(canvas, shot, composition.outlines(view, layer, theme))
         _draw_disc(canvas, shot)
-        _draw_lines(canvas, shot, composition.free_lines(view, theme))
+        kept = composition.kept_half(view, camera)
+        _draw_lines(canvas, shot, composition.free_lines(view, theme, kept))
         return canvas.image if fine == 1 else canvas.image.scaled(
             tile[2], tile[3], Qt.AspectRatioMode.IgnoreAspectRatio,
             Qt.TransformationMode.SmoothTransformation,

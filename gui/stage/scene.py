@@ -201,9 +201,10 @@ class SceneRenderer:
             if curves:
                 self._draw_lines(shot, slot.outline(layer.index), curves)
         self._draw_disc(shot, slot)
-        key = (shot.view, shot.theme)
-        if len(slot.lines_of) != 2 or any(map(_differs, slot.lines_of, key)):
-            slot.lines, slot.lines_of = composition.free_lines(shot.view, shot.theme), key
+        key = (shot.view, shot.theme, _is_far_half(shot))
+        if len(slot.lines_of) != len(key) or any(map(_differs, slot.lines_of, key)):
+            slot.lines_of = key
+            slot.lines = composition.free_lines(shot.view, shot.theme, shot.kept)
         self._draw_lines(shot, slot.free_lines, slot.lines)
 
     def _prepare(self, shot: _Shot) -> None:
@@ -315,6 +316,13 @@ def _switch(what: int, is_on: bool) -> None:
 def _differs(a: object, b: object) -> bool:
     """Tell whether two things are not the same object."""
     return a is not b
+
+
+def _is_far_half(shot: _Shot) -> bool | None:
+    """Tell whether the half that the section's normal points from is the one that stays."""
+    if shot.kept is None or shot.view.section is None:
+        return None
+    return bool(shot.kept @ np.asarray(shot.view.section) < 0.0)
 
 
 def _straight(colour: QColor) -> tuple[float, float, float, float]:

@@ -13,6 +13,7 @@ from gui.documents import FIRST_DEMO, first_state, open_demo
 from tests.gui import driving
 
 SIZE = (1280, 800)
+SPLIT = ([360, 560, 338], [390, 310], [280, 280], [280, 280])  # columns, centre, stage, plots
 
 
 @pytest.fixture(scope="module")
@@ -59,6 +60,8 @@ def begin_anew(app):
     app.bench.load(driving.BLANK)
     app.bench.load(first_state(open_demo(FIRST_DEMO)))
     app.window.resize(*SIZE)
+    for (_, splitter), sizes in zip(app.window._splitters(), SPLIT, strict=True):
+        splitter.setSizes(sizes)
     app.window.ledger_panel.show()
     app.window.reading_panel.show()
     app.window.show_message("")

@@ -9,7 +9,7 @@ along one normal are one wave measured twice and stay together.
 
 from collections import defaultdict
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 from itertools import combinations
 
@@ -27,6 +27,39 @@ _HUGE = 1e5  # squared residuals are not counted further than this: all are hope
 
 
 @dataclass(frozen=True, eq=False)
+class Ways:
+    """The ways to give sheets to the open readings along each normal, as a flat list.
+
+    A way has one entry for each open reading along its normal. Ways of one normal, and entries
+    of one way, follow one another; there are E entries, O ways and K normals.
+
+    Attributes
+    ----------
+    reading, sheet : (E,) int arrays
+        What each entry gives to whom.
+    way : (E,) int array
+        Which way it belongs to.
+    first_entry : (O,) int array
+    first_way : (K,) int array
+    """
+
+    reading: IntArray
+    sheet: IntArray
+    way: IntArray
+    first_entry: IntArray
+    first_way: IntArray
+
+    def cheapest(self, cost: FloatArray) -> tuple[IntArray, IntArray]:
+        """Return chosen (crystal, entry) pairs for costs (B, M, 3) of readings on sheets."""
+        total = np.add.reduceat(cost[:, self.reading, self.sheet], self.first_entry, axis=1)
+        least = np.minimum.reduceat(total, self.first_way, axis=1)
+        count = np.diff(self.first_way, append=total.shape[1])
+        chosen = total <= np.repeat(least, count, axis=1)
+        crystal, entry = np.nonzero(chosen[:, self.way])
+        return crystal, entry
+
+
+@dataclass(frozen=True, eq=False)
 class Assignment:
     """What is known of the sheets of M readings before the crystal is known.
 
@@ -38,18 +71,14 @@ class Assignment:
         Direction of motion that picks the wave; NaN where there is none.
     shear : (M,) bool array
         Where only the longitudinal wave is ruled out.
-    choices : (O, M, 3) bool array
-        Each open normal has some ways to give its open readings sheets; way o gives reading m
-        sheet s where True.
-    normal_of_choice : (O,) int array
-        Which open normal a way belongs to, ascending.
+    ways : Ways or None
+        For the readings that are open; None where there are none.
     """
 
     fixed: IntArray
     pointed: FloatArray
     shear: BoolArray
-    choices: BoolArray
-    normal_of_choice: IntArray
+    ways: Ways | None
 
     @cached_property
     def is_settled(self) -> bool:
@@ -63,13 +92,7 @@ class Assignment:
 
     def with_fixed(self, rows: BoolArray, sheets: IntArray) -> "Assignment":
         """Return the assignment with the sheets (M,) of some rows settled."""
-        return Assignment(
-            np.where(rows, sheets, self.fixed),
-            np.where(rows[:, None], np.nan, self.pointed),
-            self.shear & ~rows,
-            self.choices & ~rows[None, :, None],
-            self.normal_of_choice,
-        )
+        return replace(self, fixed=np.where(rows, sheets, self.fixed))
 
     def sheets(
         self, survey: Survey, found: Waves, speeds: FloatArray, residual_unit: FloatArray
@@ -79,20 +102,17 @@ class Assignment:
         `speeds` (B, M) or (M,) are the measured ones, `residual_unit` (M,) the σ in m/s.
         """
         crystals, count = found.values.shape[1], survey.count
-        sheets = np.broadcast_to(np.maximum(self.fixed, 0), (crystals, count)).copy()
-        if self.is_settled:
-            return sheets
-        p = found.polarisation[:, :, :, survey.place]
-        if self.has_pointed:
-            along = dot(p.swapaxes(0, 1), np.nan_to_num(self.pointed.T)[:, None, None, :])
-            picked = np.abs(along).argmax(axis=0)
-            sheets = np.where(np.isfinite(self.pointed[:, 0]), picked, sheets)
-        if len(self.choices):
-            cost = self._costs(survey, found, speeds, residual_unit, p)
-            chosen = self._best_choices(cost)
-            given = np.any(self.choices[chosen], axis=1)
-            sheets = np.where(np.any(given, axis=2), np.argmax(given, axis=2), sheets)
-        return sheets
+        sheets = np.zeros((crystals, count), dtype=np.intp)
+        if not self.is_settled:
+            p = found.polarisation[:, :, :, survey.place]
+            if self.has_pointed:
+                along = dot(p.swapaxes(0, 1), np.nan_to_num(self.pointed.T)[:, None, None, :])
+                sheets[:] = np.abs(along).argmax(axis=0)
+            if self.ways is not None:
+                cost = self._costs(survey, found, speeds, residual_unit, p)
+                crystal, entry = self.ways.cheapest(cost)
+                sheets[crystal, self.ways.reading[entry]] = self.ways.sheet[entry]
+        return np.where(self.fixed >= 0, self.fixed, sheets)
 
     def _costs(
         self, survey: Survey, found: Waves, speeds: FloatArray, unit: FloatArray, p: FloatArray
@@ -107,17 +127,6 @@ class Assignment:
             longitudinal = np.arange(3)[:, None, None] == along.argmax(axis=0)
             cost += _UNFIT * (longitudinal & self.shear)
         return np.asarray(np.moveaxis(cost, 0, 2))
-
-    def _best_choices(self, cost: FloatArray) -> IntArray:
-        """Return the index of the cheapest way at every open normal of each crystal, (B, K)."""
-        crystals = len(cost)
-        flat = cost.reshape(crystals, -1)
-        total = flat @ self.choices.reshape(len(self.choices), -1).T.astype(np.float64)
-        starts = np.flatnonzero(np.diff(self.normal_of_choice, prepend=-1))
-        ends = np.append(starts[1:], len(self.normal_of_choice))
-        picked = [start + total[:, start:end].argmin(axis=1)
-                  for start, end in zip(starts, ends, strict=True)]  # fmt: skip
-        return np.stack(picked, axis=1)
 
 
 def assignment_of(readings: Sequence[Reading], place: IntArray) -> Assignment:
@@ -135,28 +144,27 @@ def assignment_of(readings: Sequence[Reading], place: IntArray) -> Assignment:
         else:
             shear[index] = reading.sheet is None and reading.polarisation == "shear"
             by_normal[int(place[index])].append(index)
-    choices, owner = _all_choices(readings, by_normal)
-    table = np.zeros((len(choices), count, 3), dtype=bool)
-    for row, choice in zip(table, choices, strict=True):
-        for index, sheet in choice.items():
-            row[index, sheet] = True
-    return Assignment(fixed, pointed, shear, table, np.array(owner, dtype=np.intp))
+    return Assignment(fixed, pointed, shear, _ways(readings, by_normal))
 
 
-def _all_choices(
-    readings: Sequence[Reading], by_normal: dict[int, list[int]]
-) -> tuple[list[dict[int, int]], list[int]]:
-    """Return every way to give open readings sheets, and the number of its normal."""
-    choices: list[dict[int, int]] = []
-    owner: list[int] = []
-    number = 0
+def _ways(readings: Sequence[Reading], by_normal: dict[int, list[int]]) -> Ways | None:
+    """Return every way to give open readings sheets, normal by normal."""
+    entries: list[tuple[int, int, int]] = []
+    first_entry: list[int] = []
+    first_way: list[int] = []
     for members in by_normal.values():
-        ways = _choices_along(readings, members)
-        if ways:
-            choices += ways
-            owner += [number] * len(ways)
-            number += 1
-    return choices, owner
+        choices = _choices_along(readings, members)
+        if choices:
+            first_way.append(len(first_entry))
+        for choice in choices:
+            way = len(first_entry)
+            first_entry.append(len(entries))
+            entries += [(index, sheet, way) for index, sheet in choice.items()]
+    if not entries:
+        return None
+    reading, sheet, way_of = np.array(entries, dtype=np.intp).T
+    return Ways(reading, sheet, way_of, np.array(first_entry, dtype=np.intp),
+                np.array(first_way, dtype=np.intp))  # fmt: skip
 
 
 def _choices_along(readings: Sequence[Reading], members: list[int]) -> list[dict[int, int]]:

@@ -1,11 +1,14 @@
 """What readings say about the constants and about one another, to first order around a fit.
 
-All rests on the weighted Jacobian J, d residual / d constant. A combination of constants counts
-as *seen* when its standard uncertainty is below `SEEN_PART` of the mean eigenstiffness: what is
-less certain is not known better than from knowing that it is a crystal at all. In the Kelvin
-norm a unit combination has the uncertainty 1/s with s its singular value, so that the
-rule is a limit on s; in addition s must not be lost under the largest by `RELATIVE_FLOOR`,
-where density, cut and model would have to be better than any are.
+All rests on the weighted Jacobian J, d residual / d constant. In the Kelvin norm a combination
+of constants of unit length has the standard uncertainty 1/s, with s its singular value. It
+counts as *seen* when all of this holds:
+
+- 1/s is below the mean eigenstiffness: what is less certain is not known better than from
+  knowing that it is a crystal at all;
+- its singular value in the derivatives of ρv² is not lost under the largest (`LOST`), where
+  density, cut and model would have to be better than any are;
+- 1/s is below a tenth of the mean eigenstiffness, or the geometry sees it well (`FAINT`).
 """
 
 from dataclasses import dataclass
@@ -18,8 +21,10 @@ from core.numbers import MINUS
 from core.study.recovery.model import Basis
 from core.tensor.notation import stiffness_to_kelvin
 
-SEEN_PART = 0.1
-RELATIVE_FLOOR = 2e-3
+LOST, FAINT = 2e-3, 0.02
+"""Parts of the largest singular value of the derivatives of ρv²."""
+
+_HOPELESS, _DOUBTFUL = 1.0, 0.1  # of the mean eigenstiffness
 
 _DUST = 1e-3  # parts of a combination, relative to its largest, that are left out
 _WORTH_SAYING = 0.02  # likewise, in words
@@ -93,12 +98,17 @@ def spectrum_of(
         Mean eigenstiffness, GPa.
     """
     size = basis.size
-    _left, values, right = np.linalg.svd(_to_kelvin(jacobian, basis))
+    few = len(jacobian) < size  # the whole of the right side is wanted, of the left nothing
+    _left, values, right = np.linalg.svd(_to_kelvin(jacobian, basis), full_matrices=few)
     singular = np.zeros(size)
     singular[: values.size] = values
     plain = np.linalg.svd(_to_kelvin(squared, basis), compute_uv=False)
-    certain = int((singular * SEEN_PART * typical > 1.0).sum())
-    rank = min(certain, int((plain > RELATIVE_FLOOR * plain[0]).sum()))
+    geometry = np.zeros(size)
+    geometry[: plain.size] = plain / plain[0]
+    known = singular * typical
+    seen = (known > 1.0 / _HOPELESS) & (geometry > LOST)
+    seen &= (known > 1.0 / _DOUBTFUL) | (geometry > FAINT)
+    rank = int(np.cumprod(seen).sum())
     changes = solve_triangular(basis.kelvin_root, right.T, lower=True, trans="T")
     return Spectrum(singular, rank, changes[:, :rank], changes[:, rank:])
 

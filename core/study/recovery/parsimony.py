@@ -21,6 +21,7 @@ from core.tensor.symmetry import CrystalClass, crystal_class, distance, project
 _FARTHEST = 0.15  # Kelvin distance to a higher class beyond which it is not tried
 _STEPS = 30
 _WORTH = 4.0  # fall of χ² that a further combination must bring: two σ
+_FEWEST_TO_SPARE = 2  # readings beyond what is given up, or nothing speaks for the symmetry
 _STIFF = 1e-4  # of the mean eigenstiffness: how closely a combination is held
 
 _HIGHER: dict[str, tuple[tuple[str, str], ...]] = {
@@ -58,7 +59,10 @@ def simplest(goal: Goal, trial: Trial) -> tuple[Trial, Spectrum]:
             continue
         held, fewer = _with_zeros_of(goal, cls, project(table, cls))
         given_up = spectrum.rank - fewer.rank
-        if given_up > 0 and held.chi2[0] - trial.chi2[0] <= _WORTH * given_up:
+        to_spare = goal.survey.count - fewer.rank
+        if not 0 < given_up < to_spare - _FEWEST_TO_SPARE:
+            continue
+        if held.chi2[0] - trial.chi2[0] <= _WORTH * given_up:
             return held, fewer
     return trial, spectrum
 

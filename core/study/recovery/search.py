@@ -7,9 +7,10 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.study.recovery.descent import Goal, Trial, descend
+from core.study.recovery.doubles import is_unstable, weigh_doubles
 from core.study.recovery.evidence import Spectrum
 from core.study.recovery.fit import FitOptions
-from core.study.recovery.model import Basis, mean_stiffness
+from core.study.recovery.model import mean_stiffness
 from core.study.recovery.parsimony import simplest
 from core.study.recovery.problem import Problem, with_direction_sigma, with_ray_normals
 from core.study.recovery.spectrum import spectrum_at, weights_of
@@ -24,7 +25,6 @@ _SAME_COST = 1e-3  # relative
 _ROUGH_RAY = 0.03  # of a group speed: what taking its ray for the wave normal may cost
 _ROUNDS = 25
 _SETTLED = 1e-7  # relative change of the constants between rounds
-_ANOTHER = 0.01  # relative Kelvin distance beyond which two solutions differ
 
 
 @dataclass(frozen=True, eq=False)
@@ -66,11 +66,12 @@ class Found:
 def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
     """Return the constants that fit the readings best.
 
-    Starts are tried in batches of 1, 4, 8, 12 and 15, the first being the isotropic crystal
-    with the median speeds (and the prior, if there is one). The search stops when χ² is below
-    dof + 6 √(2 dof), when at least three of 25 starts have arrived at one best place, or after
-    the last batch. With no more spare readings than constants a second batch is always tried,
-    since several crystals may fit.
+    Starts are tried in batches of 1, 4, 12, 12 and 11, the first being the isotropic crystal
+    with the median speeds (and the prior, if there is one). The search stops when a stable
+    crystal has χ² below dof + 6 √(2 dof), when no start has and at least three of 25 arrived
+    at one best place, or after the last batch. With no more spare readings than constants a
+    second batch is always tried, since several crystals may fit. Group speeds are always
+    fitted robustly: some may belong to another fold of the wave surface.
     """
     first = isotropic_start(problem.readings, problem.survey.density, problem.basis)
     anchor, also = first, []
@@ -79,7 +80,8 @@ def search(problem: Problem, options: FitOptions, ticker: Ticker) -> Found:
         also = [anchor]
     rough = np.where(problem.is_group, _ROUGH_RAY * problem.measured, problem.sigma)
     goal = Goal(
-        problem.survey, problem.assignment, problem.measured, rough, options.robust,
+        problem.survey, problem.assignment, problem.measured, rough,
+        options.robust or bool(problem.is_group.any()),
         anchor, ANCHOR_PART * mean_stiffness(problem.basis, first),
     )  # fmt: skip
     trial, starts, rival = _multistart(goal, first, also, options.seed, ticker)
@@ -103,7 +105,7 @@ def _multistart(
     fewest = 2 if 0 <= spare <= basis.size else 1
     best: Trial | None = None
     costs: list[float] = []
-    rivals = np.empty((0, basis.size))
+    others = np.empty((0, basis.size))
     for number, starts in enumerate(start_batches(first, also, basis, seed), start=1):
         ticker.tick(len(costs) / 40)
         trial = descend(goal, starts)
@@ -112,24 +114,17 @@ def _multistart(
         if best is None or trial.cost[place] < best.cost[0]:
             best = trial.rows(np.array([place]))
         good = trial.constants[trial.chi2 < enough]
-        rivals = np.concatenate([rivals, good])
+        others = np.concatenate([others, good])
         arrivals = sum(cost <= best.cost[0] * (1 + _SAME_COST) + _SAME_COST for cost in costs)
-        confirmed = arrivals >= _CONFIRMED and len(costs) >= _TRIED
-        if confirmed or (best.chi2[0] < enough and number >= fewest):
+        confirmed = best.chi2[0] >= enough and arrivals >= _CONFIRMED and len(costs) >= _TRIED
+        found = bool((~is_unstable(basis, others)).any())
+        if confirmed or (found and number >= fewest):
             break
     assert best is not None
-    rival = _rival(basis, best, rivals) if spare >= 0 else None
-    return best, len(costs), rival
-
-
-def _rival(basis: Basis, best: Trial, good: FloatArray) -> FloatArray | None:
-    """Return the one of some good constants (K, P) that is least like the best, if any is."""
-    if not len(good):
-        return None
-    apart = np.linalg.norm((good - best.constants[0]) @ basis.kelvin_root, axis=1)
-    farthest = int(apart.argmax())
-    size = np.linalg.norm(best.constants[0] @ basis.kelvin_root)
-    return basis.table(good[farthest]) if apart[farthest] > _ANOTHER * size else None
+    if spare < 0:
+        return best, len(costs), None
+    believed, rival = weigh_doubles(goal, best, others, enough)
+    return believed, len(costs), rival
 
 
 def _refine(

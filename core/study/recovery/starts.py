@@ -2,6 +2,7 @@
 
 from collections import defaultdict
 from collections.abc import Iterator, Sequence
+from itertools import product
 
 import numpy as np
 
@@ -11,10 +12,11 @@ from core.study.recovery.readings import Reading, direction_key
 from core.tensor.notation import kelvin_to_stiffness, stiffness_to_kelvin
 from core.tensor.symmetry import project
 
-BATCHES = (1, 4, 8, 12, 15)
+BATCHES = (1, 4, 12, 12, 11)
 """Starts tried together before the next look at the stopping rule: forty in all."""
 
 _SPREADS = (0.05, 0.15, 0.3)  # relative anisotropy of the starts, in turn
+_SUMS = ((0, 1, 5), (0, 2, 4), (1, 2, 3))  # C12 + C66, C13 + C55, C23 + C44
 _USUAL_RATIO = 3.0  # of ρv² longitudinal to shear, where only one is measured
 _LEAST_RATIO = 4.0 / 3.0 + 0.05  # a positive bulk modulus needs more than 4/3
 _SOFTEST = 0.05  # of the stiffest: floor of the eigenstiffnesses the starts scatter about
@@ -82,19 +84,41 @@ def start_batches(
 ) -> Iterator[FloatArray]:
     """Yield batches (B, P) of starts.
 
-    The first batch holds `first` and `also`; the others scatter about `first` by 5, 15 and
-    30 % of its eigenstiffnesses in turn, √C (1 + a H) √C in Kelvin form with H a random
-    symmetric matrix, projected on the class.
+    The first batch holds `first` and `also`. The third holds `first` with C12 + C66, C13 + C55
+    and C23 + C44 reversed in all ways: crystals in which longitudinal and shear waves change
+    places between directions. All others scatter about `first` by 5, 15 and 30 % of its
+    eigenstiffnesses in turn, √C (1 + a H) √C in Kelvin form with H a random symmetric matrix,
+    projected on the class.
     """
     rng = np.random.default_rng(seed)
     yield np.array([first, *also])
+    yield _scattered(first, basis, BATCHES[1], rng)
+    reversed_sums = with_reversed_sums(basis, first)
+    yield np.concatenate([reversed_sums, _scattered(first, basis, BATCHES[2] - 7, rng)])
+    for size in BATCHES[3:]:
+        yield _scattered(first, basis, size, rng)
+
+
+def with_reversed_sums(basis: Basis, constants: FloatArray) -> FloatArray:
+    """Return the constants (7, P) with C12 + C66, C13 + C55, C23 + C44 reversed in all ways."""
+    tables = []
+    for chosen in list(product((False, True), repeat=3))[1:]:
+        table = basis.table(constants)
+        for reverse, (i, j, shear) in zip(chosen, _SUMS, strict=True):
+            if reverse:
+                table[i, j] = table[j, i] = -table[i, j] - 2.0 * table[shear, shear]
+        tables.append(table)
+    return basis.constants(np.array(tables))
+
+
+def _scattered(
+    first: FloatArray, basis: Basis, count: int, rng: np.random.Generator
+) -> FloatArray:
+    """Return crystals (count, P) scattered about the first start."""
     values, vectors = np.linalg.eigh(stiffness_to_kelvin(basis.table(first)))
     root = vectors * np.sqrt(np.maximum(values, _SOFTEST * values.max()))
-    tried = 1
-    for size in BATCHES[1:]:
-        spread = np.array([_SPREADS[(tried + k) % 3] for k in range(size)])
-        noise = rng.standard_normal((size, 6, 6))
-        noise = (noise + noise.transpose(0, 2, 1)) / 2.0
-        kelvin = root @ (np.eye(6) + spread[:, None, None] * noise) @ root.T
-        yield basis.constants(project(kelvin_to_stiffness(kelvin), basis.cls))
-        tried += size
+    spread = np.resize(_SPREADS, count)
+    noise = rng.standard_normal((count, 6, 6))
+    noise = (noise + noise.transpose(0, 2, 1)) / 2.0
+    kelvin = root @ (np.eye(6) + spread[:, None, None] * noise) @ root.T
+    return basis.constants(project(kelvin_to_stiffness(kelvin), basis.cls))

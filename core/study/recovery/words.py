@@ -5,7 +5,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from core.arrays import BoolArray
-from core.directional.sphere import dot
+from core.directional.sphere import dot, sphere_mesh
 from core.study.recovery.conflicts import (
     UNLIKELY,
     chi2_probability,
@@ -13,7 +13,7 @@ from core.study.recovery.conflicts import (
     stable_compromise,
 )
 from core.study.recovery.evidence import Combination, Diagnostics
-from core.study.recovery.model import waves
+from core.study.recovery.model import speeds_of, survey_of, waves
 from core.study.recovery.readings import Reading, remarks
 from core.study.recovery.search import Found
 
@@ -21,6 +21,7 @@ _UNCHECKED = 1e-6  # 1 - leverage below which nothing checks a reading
 _SEVERAL = 5  # rows are named one by one up to so many
 _MOST_UNSEEN = 4
 _NEARLY_AS_WELL = 9.0  # rise of χ² that the readings do not speak against: 3 σ
+_SAME_SPEEDS = 0.01  # relative, over all directions
 _ACROSS = np.cos(np.radians(45.0))
 
 
@@ -42,6 +43,11 @@ def notes_of(
         notes.append(
             f"{_rows(readings, found.problem.lost)}: no wave of that sheet was found along the"
             " ray; the fold of the wave surface it belongs to may have been lost."
+        )
+    if found.problem.is_group.any():
+        notes.append(
+            "Group speeds serve for crystals of weak to moderate anisotropy, and are fitted"
+            " robustly: a reading on another fold of the wave surface counts as an outlier."
         )
     unchecked = 1.0 - diagnostics.leverage < _UNCHECKED
     if unchecked.all():
@@ -106,14 +112,23 @@ def _unstable(found: Found) -> str:
 
 
 def _rival(found: Found) -> str:
-    """Say that other constants fit as well, and by which constant they differ most."""
+    """Say that other constants fit as well, where they differ most, and what would decide."""
     assert found.rival is not None
     basis = found.problem.basis
     other = basis.constants(found.rival)
     worst = int(np.abs(other - found.constants).argmax())
+    everywhere = survey_of(basis, found.problem.survey.density, sphere_mesh(2).half.n)
+    own, its = (speeds_of(everywhere, constants) for constants in (found.constants, other))
+    same = float(np.abs(its / own - 1.0).max()) < _SAME_SPEEDS
+    decides = (
+        "Its speeds are the same in every direction: only the directions in which the waves"
+        " move can decide (the polarisation column)."
+        if same
+        else "A reading in another direction, or a polarisation, decides."
+    )
     return (
         f"Another crystal fits as well, with {basis.names[worst]} = {other[worst]:.4g} GPa in"
-        f" place of {found.constants[worst]:.4g} GPa. A reading in another direction decides."
+        f" place of {found.constants[worst]:.4g} GPa. {decides}"
     )
 
 

@@ -66,7 +66,8 @@ def test_inches_taken_for_millimetres_are_suspected():
 
 
 def test_a_whole_table_in_inches_is_suspected_too():
-    table = [reading_of_flight(X, Flight(t, 1.25, 0.001), i + 1) for i, t in enumerate((0.25, 0.2))]
+    flights = [Flight(thickness, 1.25, 0.001) for thickness in (0.25, 0.2)]
+    table = [reading_of_flight(X, flight, row) for row, flight in enumerate(flights, 1)]
     assert sum("inches" in note for note in remarks(table)) == 2
 
 

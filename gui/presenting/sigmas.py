@@ -1,0 +1,99 @@
+"""Uncertainties in words and numbers, as the tables of the reading show them."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from core.directional.quantities import quantity
+from core.numbers import MINUS, bracketed, signed, significant, with_deviation
+from core.study.draws import COUNT
+from gui.presenting.spread import Deviations, PinSpread, Place
+from gui.presenting.stage import SHEET_NAMES
+
+BRACKETS = "In brackets: one standard uncertainty, in units of the last digits."
+_NOTHING = 1e-9  # in any unit that is shown: what is less uncertain than this is rounding
+_DRAWN = {"young": "E", "phase": "v"}
+
+
+def number_text(value: float, sigma: float) -> str:
+    """Return "51.37 ± 0.32"; four significant digits where nothing is uncertain."""
+    return with_deviation(value, sigma if sigma > _NOTHING else 0.0)
+
+
+def plain_or_bracketed(value: float, sigma: float) -> str:
+    """Return "51.37(32)"; four significant digits where nothing is uncertain."""
+    return bracketed(value, sigma if sigma > _NOTHING else 0.0)
+
+
+@dataclass(frozen=True)
+class RowSigmas:
+    """Standard uncertainties of the rows at the pin.
+
+    Attributes
+    ----------
+    first, second, difference : dict
+        By place: of the first side shown, of B beside A, of B − A.
+    in_brackets : bool
+        Whether there is room for brackets only.
+    drawn : dict
+        By place what draws give instead, where they differ notably.
+    """
+
+    first: Deviations
+    second: Deviations
+    difference: Deviations
+    in_brackets: bool
+    drawn: Deviations
+
+
+def signed_text(difference: float, sigma: float) -> str:
+    """Return a difference with its sign, rounded to two digits of its uncertainty."""
+    if not sigma > _NOTHING:
+        return signed(difference, 3)
+    text = bracketed(difference, sigma)
+    return f"+{text}" if difference > 0 and not text.startswith(MINUS) else text
+
+
+def sigma_words(own: float, unit: str, place: Place, sigmas: RowSigmas) -> str:
+    """Return the uncertainty of a row in words, and what draws give where they differ."""
+    if not own > _NOTHING:
+        return ""
+    words = f"± {significant(own, 2)} {unit}".rstrip() + ", one standard uncertainty."
+    drawn = sigmas.drawn.get(place)
+    if drawn is not None:
+        words += f" {COUNT:,} draws of the constants give ± {significant(drawn, 2)}."
+    return words
+
+
+def drawn_otherwise(spread: PinSpread | None, side: str) -> Deviations:
+    """Return, by place, what draws give at the pin where they differ by more than 20 %."""
+    drawn = None if spread is None else spread.draws.get(side)
+    if drawn is None:
+        return {}
+    found: Deviations = {}
+    for key, of in drawn.spreads.items():
+        label = quantity(key).short
+        groups = ("stiffness",) if key == "young" else [f"{n} wave" for n in SHEET_NAMES]
+        for sheet, group in enumerate(groups):
+            if of.differs[sheet, 0]:
+                found[group, label] = float(of.deviation[sheet, 0])
+    return found
+
+
+def draws_notice(spread: PinSpread | None) -> str:
+    """Return where draws at the pin contradict the linear uncertainties; else nothing."""
+    if spread is None:
+        return ""
+    names = []
+    for side, drawn in spread.draws.items():
+        for key, of in drawn.spreads.items():
+            for sheet in range(len(of.mean)):
+                if of.differs[sheet, 0]:
+                    wave = f"{SHEET_NAMES[sheet]} " if key == "phase" else ""
+                    names.append(f"{wave}{_DRAWN[key]} ({side})")
+    if not names:
+        return ""
+    return (
+        f"{COUNT:,} draws give another ± than the linear one, by more than 20 %, for "
+        f"{', '.join(names)}."
+    )

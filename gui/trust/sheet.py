@@ -1,0 +1,188 @@
+"""The sheet under the verdict band that says whether a table can be trusted, and why."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QKeyEvent, QShowEvent
+from PySide6.QtWidgets import (
+    QFrame,
+    QHBoxLayout,
+    QLabel,
+    QScrollArea,
+    QToolButton,
+    QVBoxLayout,
+    QWidget,
+)
+
+from gui.forms import ElidedLabel, label, set_or_hide
+from gui.panel import Section
+from gui.reading.small_table import SmallTable
+from gui.trust.class_table import ClassPanel
+from gui.viewdata import TrustView
+
+TITLE = "Can this table be trusted?"
+WIDTHS = (46, 26, 28)  # shares of the three columns
+LEAST_HEIGHT = 180
+NO_NOTES = "Nothing about the numbers is odd."
+
+
+class Lines(QWidget):
+    """Sentences below one another, each with a dash in front."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._labels: list[QLabel] = []
+        self._column = QVBoxLayout(self)
+        self._column.setContentsMargins(0, 0, 0, 0)
+        self._column.setSpacing(4)
+
+    @property
+    def texts(self) -> tuple[str, ...]:
+        """What is shown."""
+        return tuple(each.text() for each in self._labels)
+
+    def show_lines(self, lines: tuple[str, ...], empty: str = "") -> None:
+        """Show sentences, or one that says there are none."""
+        shown = tuple(f"– {line}" for line in lines) or ((empty,) if empty else ())
+        if shown == self.texts:
+            return
+        for old in self._labels:
+            self._column.removeWidget(old)
+            old.hide()
+            old.deleteLater()
+        self._labels = [label(text, "" if lines else "secondary", wrap=True) for text in shown]
+        for each in self._labels:
+            each.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+            self._column.addWidget(each)
+
+
+class TrustSheet(QFrame):
+    """Three columns: symmetry, stability, and notes with uncertainties.
+
+    Signals
+    -------
+    asked(str, str)
+        "turn", "both" or "exact", and the key of a crystal class.
+    closed()
+        The sheet is to be put away.
+    shown()
+        The sheet has come into sight.
+    """
+
+    asked = Signal(str, str)
+    closed = Signal()
+    shown = Signal()
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.setProperty("role", "panel")
+        self.setMinimumHeight(LEAST_HEIGHT)
+        self.setAccessibleName(TITLE)
+        self.sentence = ElidedLabel()
+        self.classes = ClassPanel()
+        self.facts = Lines()
+        self.chance = label(role="secondary", wrap=True)
+        self.strains = SmallTable("Strain spectrum in numbers")
+        self.criteria = SmallTable("Stability criteria")
+        self.notes = Lines()
+        self.pin = SmallTable("Uncertainty at the pin")
+        self.draws = label(role="secondary", wrap=True)
+        self.shares = SmallTable("What the anisotropy is made of")
+        self._titles = {
+            name: Section(title, part, ruled=is_ruled)
+            for name, title, part, is_ruled in (
+                ("notes", "Notes", self.notes, False),
+                ("pin", "Uncertainty at the pin", _stack(self.pin, self.draws), True),
+                ("shares", "What the anisotropy is made of", self.shares, True),
+                ("facts", "Verdict", self.facts, False),
+                ("strains", "Strain spectrum", _stack(self.chance, self.strains), True),
+                ("criteria", "Stability criteria", self.criteria, True),
+            )
+        }
+        self._lay_out()
+        self.classes.asked.connect(self.asked)
+
+    def _lay_out(self) -> None:
+        self.close_button = QToolButton()
+        self.close_button.setText("×")
+        self.close_button.setAccessibleName("Put the sheet away")
+        self.close_button.setToolTip("Put the sheet away (F7)")
+        self.close_button.clicked.connect(self.closed)
+        top = QHBoxLayout()
+        top.setSpacing(14)
+        top.addWidget(label(TITLE, "heading"))
+        top.addWidget(self.sentence, 1)
+        top.addWidget(self.close_button)
+        body = QHBoxLayout()
+        body.setSpacing(10)
+        columns = (
+            _scrolled("Symmetry", self.classes),
+            _scrolled("Stability", *self._sections("facts", "strains", "criteria")),
+            _scrolled("Notes", *self._sections("notes", "pin", "shares")),
+        )
+        for area, share in zip(columns, WIDTHS, strict=True):
+            body.addWidget(area, share)
+        column = QVBoxLayout(self)
+        column.setContentsMargins(14, 8, 8, 6)
+        column.setSpacing(6)
+        column.addLayout(top)
+        column.addLayout(body, 1)
+
+    def _sections(self, *names: str) -> tuple[Section, ...]:
+        return tuple(self._titles[name] for name in names)
+
+    def show_view(self, view: TrustView) -> None:
+        """Show what is known of the table."""
+        self.sentence.setText(view.sentence)
+        self.classes.show_view(view)
+        self.facts.show_lines(view.facts)
+        set_or_hide(self.chance, view.chance)
+        self.strains.show_view(view.strains)
+        self.criteria.show_view(view.criteria)
+        self.notes.show_lines(view.notes, "" if view.pending else NO_NOTES)
+        self.pin.show_view(view.pin)
+        set_or_hide(self.draws, view.draws)
+        self.shares.show_view(view.shares)
+        for name in ("criteria", "pin"):
+            self._titles[name].button.setText(getattr(view, name).title)
+
+    def showEvent(self, event: QShowEvent) -> None:
+        """Ask to be filled."""
+        super().showEvent(event)
+        if not event.spontaneous():
+            self.shown.emit()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Put the sheet away with Escape."""
+        if event.key() == Qt.Key.Key_Escape:
+            self.closed.emit()
+        else:
+            super().keyPressEvent(event)
+
+
+def _stack(*parts: QWidget) -> QWidget:
+    box = QWidget()
+    column = QVBoxLayout(box)
+    column.setContentsMargins(0, 0, 0, 0)
+    column.setSpacing(4)
+    for part in parts:
+        column.addWidget(part)
+    return box
+
+
+def _scrolled(name: str, *parts: QWidget) -> QScrollArea:
+    content = QWidget()
+    column = QVBoxLayout(content)
+    column.setContentsMargins(0, 0, 8, 4)
+    column.setSpacing(2)
+    for part in parts:
+        column.addWidget(part)
+    column.addStretch(1)
+    area = QScrollArea()
+    area.setWidgetResizable(True)
+    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+    area.setFrameShape(QFrame.Shape.NoFrame)
+    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+    area.setAccessibleName(name)
+    area.setWidget(content)
+    return area
