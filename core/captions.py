@@ -26,6 +26,7 @@ SIDES: dict[str, str] = {"A": "A", "B": "B", "AB": "A and B"}
 SHOWN: dict[str, str] = {
     "A": "A", "B": "B", "difference": "B − A", "cost": "what a cutting error costs",
 }
+_WAVES = ("fastest", "middle", "slowest")
 _PLANES = {"XY": (0.0, 0.0, 1.0), "XZ": (0.0, 1.0, 0.0), "YZ": (1.0, 0.0, 0.0)}
 
 
@@ -43,15 +44,15 @@ class FigureChoice:
         Which crystals: a surface of both is drawn side by side, on one scale.
     shown : str
         What a hemisphere shows, a key of `SHOWN`; the other kinds do not read it.
-    time_us : float
-        Time after the pulse of a source picture, microseconds.
+    time_us : float or None
+        Time after the pulse of a source picture, microseconds; None: the bench's.
     """
 
     kind: str = "surface"
     quantity: str = "young"
     sides: str = "A"
     shown: str = "A"
-    time_us: float = 1.0
+    time_us: float | None = None
 
     @property
     def title(self) -> str:
@@ -132,8 +133,9 @@ def _what(state: BenchState, choice: FigureChoice) -> str:
         axis = state.display.sweep_about or state.section
         return (f"{name}, against the angle from the direction {vector_words(state.pin)} "
                 f"turned about {axis_words(axis)} of the part.")
+    time = state.display.source_time_us if choice.time_us is None else choice.time_us
     return (f"Wavefronts in the plane {plane_words(state.section)} of the part "
-            f"{choice.time_us:g} µs after a pulse from a point; radius in mm.")
+            f"{time:g} µs after a pulse from a point; radius in mm.")
 
 
 def _surface_words(entry: Quantity) -> str:
@@ -154,6 +156,8 @@ def _marks_words(state: BenchState) -> str:
 
 
 def _hemisphere_words(state: BenchState, choice: FigureChoice, name: str) -> str:
+    if quantity(choice.quantity).sheets == 3:
+        name += f", {_WAVES[state.display.hemisphere_sheet]} wave"
     if choice.shown == "difference":
         return f"B − A of {name}"
     if choice.shown == "cost":

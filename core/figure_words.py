@@ -93,8 +93,8 @@ def add_figure(verb: argparse.ArgumentParser) -> None:
                       help="surface (the usual), section, hemisphere, sweep or source")
     verb.add_argument("--shown", metavar="WHAT",
                       help="of a hemisphere: A, B, difference, or cost of a cutting error")
-    verb.add_argument("--time", type=float, default=1.0, metavar="US",
-                      help="of a source picture: microseconds after the pulse")
+    verb.add_argument("--time", type=float, metavar="US",
+                      help="of a source picture: µs after the pulse, else the bench's")
     verb.add_argument("--step", type=float, default=5.0, metavar="DEG",
                       help="of a .csv: degrees between directions")
     _add_bench(verb)

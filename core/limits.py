@@ -11,7 +11,7 @@ from core.arrays import FloatArray
 from core.errors import InputError
 
 SOFTEST, STIFFEST = 1e-9, 1e6  # GPa; the stiffest solid known has some 1e3, a jelly 1e-6
-LIGHTEST, DENSEST = 1e-12, 1e6  # kg/m³; the densest solid known has some 2e4, an aerogel 1
+LIGHTEST, DENSEST = 1e-12, 1e12  # kg/m³; the densest solid known has some 2e4, an aerogel 1
 COLDEST = -273.15  # °C
 HOTTEST = 1e5
 

@@ -23,7 +23,7 @@ from core.directional.sphere import (
     plane_axes,
     sphere_mesh,
 )
-from core.directional.waves import group_velocities
+from core.directional.waves import group_velocities, modes
 from core.state import Matrix, OrientationChoice, Specimen, Vector3, as_matrix, rotation_of
 from core.tensor.stiffness import Stiffness
 
@@ -32,6 +32,9 @@ FINE_LEVEL = 5  # 10,242 vertices: 150 ms later
 SECTION_POINTS = 721
 DISC_SIZE = 181  # pixels across the hemisphere's picture
 COARSE_DISC_SIZE = 91
+_ASIDE = 0.03  # radians: this far beside a plane a crossing must be found again …
+_SEARCHED = 8  # … among so many points to either side
+_EXCHANGED = 1.8  # of 2: how much of two polarisations has to be found in the other sheet
 _IN_PLANE = 1e-3  # of a ray's length: a ray this near the section plane lies in it
 
 
@@ -91,11 +94,16 @@ class SectionCurves:
         The signed value behind each point; the radius is its size.
     out_of_plane : ndarray of bool, shape (sheets, N)
         For the wave surface: where the ray leaves the section plane.
+    broken : ndarray of bool, shape (sheets, N - 1)
+        For the wave surface: where, between a point and the next, a line of directions is met
+        on which the sheet crosses another. No rays lie between the two points. At a single
+        acoustic axis they are the ends of the flat lid of the wave surface.
     """
 
     points: FloatArray
     values: FloatArray
     out_of_plane: BoolArray
+    broken: BoolArray
 
 
 @lru_cache(maxsize=8)
@@ -112,7 +120,8 @@ def section(medium: Medium, key: str, normal: Vector3) -> SectionCurves:
     values = quantity(key).values(medium, circle)
     plane = np.stack([across @ circle.n, up @ circle.n])
     points = np.abs(values)[:, np.newaxis, :] * plane[np.newaxis, :, :]
-    return SectionCurves(points, values, np.zeros(values.shape, dtype=bool))
+    nowhere = np.zeros(values.shape, dtype=bool)
+    return SectionCurves(points, values, nowhere, nowhere[:, 1:])
 
 
 def _ray_section(medium: Medium, circle: Directions, axes: FloatArray) -> SectionCurves:
@@ -121,8 +130,39 @@ def _ray_section(medium: Medium, circle: Directions, axes: FloatArray) -> Sectio
     across, up, off = np.einsum("ai,sin->asn", axes, velocity)
     length = np.sqrt((velocity**2).sum(axis=1))
     return SectionCurves(
-        np.stack([across, up], axis=1), length, np.abs(off) > _IN_PLANE * length
+        np.stack([across, up], axis=1),
+        length,
+        np.abs(off) > _IN_PLANE * length,
+        _crossed_lines(medium, circle, axes[2]),
     )
+
+
+def _crossed_lines(medium: Medium, circle: Directions, normal: FloatArray) -> BoolArray:
+    """Tell between which directions of a circle sheets cross along a line, (3, N - 1).
+
+    They then cross beside the plane, too, which they do not at a single axis.
+    """
+    crossed = _exchanges(medium, circle)
+    if crossed.any():
+        near = np.arange(-_SEARCHED, _SEARCHED + 1)
+        places = (np.arange(crossed.shape[1])[:, None] + near) % crossed.shape[1]
+        for tilt in (-_ASIDE, _ASIDE):
+            beside = _exchanges(medium, directions(circle.n + tilt * normal[:, None]))
+            crossed &= beside[:, places].any(axis=2)
+    return crossed
+
+
+def _exchanges(medium: Medium, circle: Directions) -> BoolArray:
+    """Tell from which direction to the next sheets exchange their polarisations, (3, N - 1)."""
+    polarisation = modes(medium, circle).polarisation
+    one, following = polarisation[:, :, :-1], polarisation[:, :, 1:]
+    overlap = np.abs(np.einsum("aiN,biN->abN", one, following))
+    crossing = np.zeros((3, overlap.shape[2]), dtype=bool)
+    for pair in (0, 1):
+        exchanged = overlap[pair, pair + 1] + overlap[pair + 1, pair]
+        kept = overlap[pair, pair] + overlap[pair + 1, pair + 1]
+        crossing[pair : pair + 2] |= (exchanged > _EXCHANGED) & (kept < 2.0 - _EXCHANGED)
+    return crossing
 
 
 @lru_cache(maxsize=4)

@@ -105,7 +105,9 @@ def understand(speeds: MeasuredSpeeds) -> Understood:
     except InputError as error:
         wanting = error.message
     if not readings:
-        wanting = "No row has a direction and a speed yet."
+        wanting = (
+            "No row has a direction and a speed yet: type them, paste readings, or open a file."
+        )
     elif density is None and not wanting:
         wanting = "The density is wanted: speeds alone give no stiffness."
     note = _note(speeds, bool(readings))

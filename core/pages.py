@@ -11,6 +11,7 @@ Data = dict[str, Any]
 Page = Callable[[Any], str]
 
 _DUST = 1e-9  # of what is shown with four digits: an index or a percentage below it is zero
+_EXACT = 1e-7  # percent
 _WIDE = 31  # columns of labels
 _EXTREMES = (
     ("young_gpa", "Young's modulus, GPa"),
@@ -55,6 +56,7 @@ def summary(data: Data) -> str:
     blocks = [
         [data["name"], "=" * len(data["name"]), data["verdict"]],
         _fact_lines(data),
+        _symmetry_lines(data["symmetry"]["nearest"]),
         _average_lines(data["averages"]),
         _index_lines(data["anisotropy"]),
         _extreme_lines(data["extremes"]),
@@ -77,6 +79,17 @@ def _fact_lines(data: Data) -> list[str]:
         else f"{class_words}, {significant(off, 3)} % away in these axes",
     }
     return [f"{label:{_WIDE}} {value}" for label, value in facts.items()]
+
+
+def _symmetry_lines(nearest: list[Data]) -> list[str]:
+    """Return how near every class is, and along what its axes lie in those of the table."""
+    lines = [f"{'Nearest table of class':24}{'distance':>9}   axes x; y; z of the class"]
+    for row in nearest:
+        percent = row["distance_percent"]
+        distance = "exact" if percent < _EXACT else f"{significant(percent, 3)} %"
+        axes = "; ".join(_vector(axis, 3).strip() for axis in row["axes"])
+        lines.append(f"   {row['class']:21}{distance:>9}   {axes}")
+    return lines
 
 
 def _average_lines(averages: Data) -> list[str]:

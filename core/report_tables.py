@@ -124,8 +124,7 @@ def constants(specimen: Specimen, lead: str) -> list[Block]:
     follows = [dependence_text(claimed, i, j) for i in range(6) for j in range(i, 6)
                if claimed.kinds[i][j] == "dependent"]
     if follows:
-        blocks.append(Paragraph(f"{lead}In the {claimed.name} class {', '.join(follows)}.",
-                                "note"))
+        blocks.append(Paragraph(f"{lead}By symmetry {', '.join(follows)}.", "note"))
     return blocks
 
 
@@ -161,19 +160,19 @@ def stability(specimen: Specimen, lead: str) -> list[Block]:
     note = "They read the free cells of the class only; this table departs from it." if (
         away) else ""
     return [Table(("criterion", "value", "unit", ""), rows,
-                  f"{lead}Criteria for {claimed.name} crystals", note, trailing_words=2)]
+                  f"{lead}Criteria of the class: {claimed.name}", note, trailing_words=2)]
 
 
 def symmetry(specimen: Specimen, found: Mapping[str, Any], lead: str) -> list[Block]:
     """Return how far the table is from the class it claims, and from others where known."""
     claimed = claimed_class(specimen)
     percent = found["as_entered_percent"]
-    away = (f"has exactly the form of the {claimed.name} class" if
+    away = ("has exactly the form of the class it claims" if
             percent <= 100 * NOTABLE_DISTANCE else
-            f"is {significant(percent, 3)} % away from the {claimed.name} class")
+            f"is {significant(percent, 3)} % away from the class it claims")
     blocks: list[Block] = [Paragraph(
-        f"{lead}In the axes given the table {away} ({len(claimed.independent)} independent "
-        "constants).")]
+        f"{lead}In the axes given the table {away}: {claimed.name}, point groups "
+        f"{claimed.groups}, {len(claimed.independent)} independent constants.")]
     nearest = found.get("nearest") or ()
     if nearest:
         rows = tuple((crystal_class(entry["class"]).name,

@@ -21,6 +21,8 @@ from core.tensor.symmetry import CrystalClass, crystal_class
 Vector3 = tuple[float, float, float]
 Matrix = tuple[tuple[float, ...], ...]
 Side = Literal["A", "B"]
+SOURCE_TIMES_US = (0.01, 10_000.0)
+"""The shortest and the longest time that a source picture shows."""
 
 SPEED_COLUMNS = (
     "direction",
@@ -183,6 +185,8 @@ class Display:
         Whose crystal the ledger shows.
     face : str
         Face of the constants grid: "stiffness", "compliance" or "uncertainty".
+    source_time_us : float
+        Microseconds since the pulse of the source picture.
     hemisphere_sheet : int
         Which sheet the hemisphere shows of three: 0, 1, 2 from the fastest.
     page : "bench" or "speeds"
@@ -208,6 +212,7 @@ class Display:
     ledger: str = "A"
     face: str = "stiffness"
     hemisphere_sheet: int = 0
+    source_time_us: float = 1.0
     page: str = "bench"
     speeds_plot: str = "residuals"
     speeds_plane: Vector3 = (0.0, 0.0, 1.0)

@@ -43,6 +43,7 @@ from core.study.part import (
 from core.study.verdict import judge
 from core.task import Ticker
 from core.tensor.averages import Averages, Bounds, anisotropy, averages, hashin_shtrikman
+from core.tensor.hidden_axes import nearest_classes
 from core.tensor.notation import reorder, rows_text
 from core.tensor.stability import assess
 from core.tensor.symmetry import distance
@@ -87,7 +88,7 @@ def summarise(specimen: Specimen, ticker: Ticker | None = None) -> dict[str, Any
         "symmetry": {
             "declared": claimed.key,
             "as_entered_percent": 100 * distance(stiffness.voigt, claimed),
-            "nearest": None,
+            "nearest": _nearest(specimen),
         },
         "density_kg_m3": specimen.density,
         "debye_speed_km_s": _debye(medium),
@@ -96,11 +97,27 @@ def summarise(specimen: Specimen, ticker: Ticker | None = None) -> dict[str, Any
 
 
 def _verdict(specimen: Specimen) -> str:
-    known = [
+    std, covariance = (
         None if matrix is None else np.array(matrix)
         for matrix in (specimen.stiffness_std, specimen.covariance)
+    )
+    return judge(stiffness_of(specimen), claimed_class(specimen), std, covariance).sentence
+
+
+def _nearest(specimen: Specimen) -> list[dict[str, Any]]:
+    """Return for every class how near the table comes, and about which axes (rows)."""
+    std = specimen.stiffness_std
+    found = nearest_classes(
+        stiffness_of(specimen), None if std is None else np.array(std), specimen.unique_axis
+    )
+    return [
+        {
+            "class": axes.class_key,
+            "distance_percent": float(axes.distance_percent),
+            "axes": axes.rotation.tolist(),
+        }
+        for axes in found
     ]
-    return judge(stiffness_of(specimen), claimed_class(specimen), *known).sentence
 
 
 def _debye(medium: Medium) -> float | None:

@@ -19,7 +19,7 @@ from PySide6.QtGui import QIcon
 from PySide6.QtWidgets import QApplication, QMessageBox
 
 from core.errors import InputError
-from core.files.opening import open_file
+from core.files.opening import open_file, table_text
 from core.state import BenchState
 from gui.actions import Entry, MenuBar, Menus
 from gui.bench import Bench
@@ -27,14 +27,20 @@ from gui.cameras import Cameras
 from gui.commands import Commands
 from gui.documents import FIRST_DEMO, Documents, first_state, open_demo
 from gui.dressing import Dressing
+from gui.figures.exports import Exports
 from gui.help import HelpDialog
+from gui.intake import Intake
 from gui.intents import DeckIntents, LedgerIntents, StageIntents
 from gui.pace import Pace
 from gui.presenter import Presenter
 from gui.scheduler import Scheduler
+from gui.speeds_files import SpeedFiles
+from gui.speeds_intents import SpeedsIntents
+from gui.speeds_presenter import SpeedsPresenter
 from gui.stage.composition import Renderer
 from gui.stage.gl_probe import GlReport, probe
 from gui.stage.renderer import make_renderer
+from gui.trust_intents import TrustIntents
 from gui.window import Window, build_views
 
 NO_SCREEN = (
@@ -70,6 +76,10 @@ class Application:
     ledger: LedgerIntents
     stage: StageIntents
     deck: DeckIntents
+    trust: TrustIntents
+    intake: Intake
+    speeds: SpeedsPresenter
+    speed_files: SpeedFiles
 
     def set_title(self, *_ignored: object) -> None:
         """Write the specimen, its file and whether it is saved into the title."""
@@ -83,6 +93,7 @@ class Application:
         self.bench.history.blockSignals(True)
         self.pace.stop()
         self.scheduler.close()
+        self.speeds.close()
         self.help.close()
         for pane in self.window.views.panes.values():
             pane.close()
@@ -109,8 +120,18 @@ def build(
     ledger = LedgerIntents(bench, views, window)
     stage = StageIntents(bench, views, window)
     deck = DeckIntents(bench, views, stage, window)
-    commands = Commands(bench, window, documents, ledger, stage, cameras, dressing)
-    help_dialog, menu_bar = _menus(window, commands, drawing_words(report))
+    trust = TrustIntents(bench, views, presenter.trust, window)
+    intake = Intake(bench, documents, scheduler, window, window)
+    speeds = SpeedsPresenter(bench, Scheduler(window, force_sync), window, window)
+    speed_files = SpeedFiles(
+        bench, window, documents, SpeedsIntents(bench, views.speeds, speeds, window)
+    )
+    words = drawing_words(report)
+    exports = Exports(bench, window, settings, renderer, lambda: documents.path, words)
+    commands = Commands(
+        bench, window, documents, intake, exports, speed_files, ledger, stage, cameras, dressing
+    )
+    help_dialog, menu_bar = _menus(window, commands, words)
     built = Application(
         bench,
         scheduler,
@@ -126,6 +147,10 @@ def build(
         ledger,
         stage,
         deck,
+        trust,
+        intake,
+        speeds,
+        speed_files,
     )
     _connect(built)
     if not report.ok:
@@ -133,6 +158,7 @@ def build(
     dressing.put_on()
     window.restore_layout(settings)
     presenter.show_all()
+    speeds.show_page()
     return built
 
 
@@ -160,7 +186,13 @@ def _connect(app: Application) -> None:
     app.documents.named.connect(app.set_title)
     history.cleanChanged.connect(app.set_title)
     app.window.cancel_asked.connect(app.scheduler.cancel)
-    app.ledger.said.connect(app.window.show_message)
+    app.window.cancel_asked.connect(app.speeds.stop)
+    app.window.switch.page_chosen.connect(app.speed_files.intents.choose_page)
+    for intents in (app.ledger, app.trust, app.intake):
+        intents.said.connect(app.window.show_message)
+    app.ledger.table_asked.connect(app.intake.take_in)
+    window.views.cell.file_asked.connect(app.intake.ask_cell)
+    app.trust.refused.connect(app.window.show_refusal)
     bar = window.views.toolbar
     bar.linked_toggled.connect(app.cameras.set_linked)
     bar.linked_toggled.connect(app.presenter.set_linked)
@@ -194,8 +226,13 @@ def run(words: list[str]) -> int:
     if not has_screen():
         sys.stderr.write(f"{NO_SCREEN}\n")
         return 2
+    path = Path(words[0]) if words else None
     try:
-        state = first_state(open_file(Path(words[0])) if words else open_demo(FIRST_DEMO))
+        # A text is looked at in the window: a table in its dialog, speeds on their page.
+        is_text = path is not None and table_text(path) is not None
+        state = first_state(
+            open_demo(FIRST_DEMO) if path is None or is_text else open_file(path)
+        )
     except InputError as error:
         sys.stderr.write(f"tricline: {error}\n")
         return 2
@@ -205,15 +242,17 @@ def run(words: list[str]) -> int:
     application.setApplicationName("Tricline")
     application.setApplicationDisplayName("")
     application.setStyle("Fusion")
-    with resources.as_file(resources.files("assets") / "tricline.svg") as path:
-        application.setWindowIcon(QIcon(path.as_posix()))
+    with resources.as_file(resources.files("assets") / "tricline.svg") as icon:
+        application.setWindowIcon(QIcon(icon.as_posix()))
     settings = QSettings("Tricline", "Tricline")
     built = build(application, state, settings)
-    built.documents.path = Path(words[0]) if words else None
+    built.documents.path = None if is_text else path
     built.set_title()
     sys.excepthook = partial(_report, built.window)
     _obey_interrupts(application)
     built.window.show()
+    if is_text and path is not None:
+        QTimer.singleShot(0, partial(built.documents.open, path))
     status = application.exec()
     built.window.save_layout(settings)
     built.close()

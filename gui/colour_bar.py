@@ -80,7 +80,7 @@ def draw_colour_bar(
     font = theme.font("small", scale)
     painter.setFont(font)
     metrics = QFontMetricsF(font)
-    strip = _strip(rect, metrics, scale)
+    strip = _strip(rect, view, metrics, scale)
     painter.setPen(theme.colour("secondary"))
     title = metrics.elidedText(view.title, Qt.TextElideMode.ElideRight, rect.width())
     top = QRectF(
@@ -94,9 +94,11 @@ def draw_colour_bar(
     painter.restore()
 
 
-def _strip(rect: QRectF, metrics: QFontMetricsF, scale: float) -> QRectF:
+def _strip(rect: QRectF, view: ScaleView, metrics: QFontMetricsF, scale: float) -> QRectF:
     """Return where the coloured strip goes: centred, between its two lines of text."""
-    width = min(rect.width() - 2.0 * metrics.averageCharWidth() * 4, _LONGEST * scale)
+    texts = (metrics.horizontalAdvance(text) / 2 for text in (view.low_text, view.high_text))
+    beside = max(metrics.averageCharWidth() * 4, *texts)  # the numbers reach past its ends
+    width = min(rect.width() - 2.0 * beside, _LONGEST * scale)
     width = max(width, 24.0 * scale)
     height = 7.0 * scale
     content = 2.0 * metrics.height() + height + 6.0 * scale

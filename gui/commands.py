@@ -2,40 +2,40 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 
 from PySide6.QtGui import QGuiApplication
-from PySide6.QtWidgets import QFileDialog, QMenu
+from PySide6.QtWidgets import QMenu
 
-from core.errors import InputError
-from core.files.text import write_bytes
 from gui.actions import LINE, Entry, Menus
 from gui.bench import Bench
 from gui.cameras import Cameras
 from gui.documents import Documents, demo_files, open_demo
 from gui.dressing import Dressing
+from gui.figures.exports import Exports
+from gui.intake import Intake
 from gui.intents import LedgerIntents, StageIntents
-from gui.pictures import png_bytes, stage_picture
+from gui.pictures import stage_picture
+from gui.speeds_files import DEMOS, SpeedFiles
 from gui.window import Window
 
 
+@dataclass(frozen=True, eq=False)
 class Commands:
-    """What the menus can do; holds the parts they act on."""
+    """What the menus can do, with the parts they act on."""
 
-    def __init__(
-        self,
-        bench: Bench,
-        window: Window,
-        documents: Documents,
-        ledger: LedgerIntents,
-        stage: StageIntents,
-        cameras: Cameras,
-        dressing: Dressing,
-    ) -> None:
-        self._bench, self._window, self._documents = bench, window, documents
-        self._ledger, self._stage = ledger, stage
-        self._cameras, self._dressing = cameras, dressing
+    bench: Bench
+    window: Window
+    documents: Documents
+    intake: Intake
+    exports: Exports
+    speeds: SpeedFiles
+    ledger: LedgerIntents
+    stage: StageIntents
+    cameras: Cameras
+    dressing: Dressing
 
     def menus(self, help_entries: tuple[Entry, ...]) -> Menus:
         """Return the whole menu table."""
@@ -49,13 +49,13 @@ class Commands:
         )
 
     def _file_menu(self) -> tuple[Entry, ...]:
-        documents = self._documents
+        documents = self.documents
         return (
             Entry(
                 "&Open…", documents.ask_open, "Ctrl+O", "Open a specimen, a bench or a table"
             ),
-            Entry("Open &recent", submenu=self._fill_recent),
-            Entry("Open a &demo specimen", submenu=self._fill_demos),
+            Entry("Open re&cent", submenu=self._fill_recent),
+            Entry("Open a &demo", submenu=self._fill_demos),
             LINE,
             Entry("&Save", documents.save, "Ctrl+S", "Save to the file it came from"),
             Entry(
@@ -65,18 +65,15 @@ class Commands:
                 "Save a bench with its view, or the specimen alone",
             ),
             LINE,
-            Entry(
-                "Save stage &picture…",
-                self.save_picture,
-                "Ctrl+E",
-                "Save what the stage shows as a PNG file",
-            ),
+            *self.exports.entries(),
             LINE,
-            Entry("&Quit", self._window.close, "Ctrl+Q", "Close the window"),
+            *self.speeds.entries(),
+            LINE,
+            Entry("&Quit", self.window.close, "Ctrl+Q", "Close the window"),
         )
 
     def _edit_menu(self) -> tuple[Entry, ...]:
-        views, history = self._window.views, self._bench.history
+        views, history = self.window.views, self.bench.history
         return (
             Entry("&Undo", history.undo, "Ctrl+Z", "Take the last change back"),
             Entry("&Redo", history.redo, "Ctrl+Shift+Z", "Make it again"),
@@ -108,8 +105,21 @@ class Commands:
         )
 
     def _specimen_menu(self) -> tuple[Entry, ...]:
-        documents, ledger = self._documents, self._ledger
+        documents, ledger = self.documents, self.ledger
         return (
+            Entry(
+                "&Take in a table…",
+                self.intake.take_in,
+                "Ctrl+I",
+                "Read a 6×6 in any usual form, look how it is understood, and use it",
+            ),
+            Entry(
+                "&Unit cell from a CIF file…",
+                self.intake.ask_cell,
+                "",
+                "Read the unit cell of a CIF file",
+            ),
+            LINE,
             Entry(
                 "Make the class &exact",
                 ledger.make_exact,
@@ -133,7 +143,7 @@ class Commands:
         )
 
     def _orientation_menu(self) -> tuple[Entry, ...]:
-        ledger = self._ledger
+        ledger = self.ledger
         return (
             Entry("&Swap A and B", ledger.swap, "Ctrl+T", "Exchange the two sides"),
             Entry(
@@ -154,18 +164,18 @@ class Commands:
         )
 
     def _view_menu(self) -> tuple[Entry, ...]:
-        look, theme = self._cameras.look_from, self._dressing
+        look, theme = self.cameras.look_from, self.dressing
         layouts = tuple(
             Entry(
                 words,
-                partial(self._stage.choose_layout, layout),
+                partial(self.stage.choose_layout, layout),
                 keys,
                 group="layout",
                 is_on=partial(self._has_layout, layout),
             )
             for words, layout, keys in (
                 ("Pane &A", "A", "Ctrl+1"),
-                ("Panes A &and B", "AB", "Ctrl+2"),
+                ("&Panes A and B", "AB", "Ctrl+2"),
                 ("Pane &B", "B", "Ctrl+3"),
             )
         )
@@ -174,6 +184,8 @@ class Commands:
             for axis in "XY"
         ) + (Entry("Look along part &Z", partial(look, "Z"), "Ctrl+Alt+Z"),)
         return (
+            *self.speeds.page_entries(),
+            LINE,
             *layouts,
             LINE,
             *looks,
@@ -193,35 +205,45 @@ class Commands:
             ),
             LINE,
             Entry(
-                "&Ledger",
+                "Can this table be &trusted?",
+                self.window.toggle_sheet,
+                "F7",
+                "Show or hide symmetry, stability, notes and uncertainties of the table",
+                is_on=self._is_sheet_open,
+            ),
+            Entry(
+                "Le&dger",
                 self._toggle_ledger,
                 "F8",
                 "Show or hide the ledger",
-                is_on=self._window.ledger_panel.isVisible,
+                is_on=self.window.ledger_panel.isVisible,
             ),
             Entry(
                 "&Reading",
                 self._toggle_reading,
                 "F9",
                 "Show or hide the reading",
-                is_on=self._window.reading_panel.isVisible,
+                is_on=self.window.reading_panel.isVisible,
             ),
         )
 
     def _has_layout(self, layout: str) -> bool:
-        return self._bench.state.display.layout == layout
+        return self.bench.state.display.layout == layout
+
+    def _is_sheet_open(self) -> bool:
+        return self.window.views.trust.isVisibleTo(self.window)
 
     def _toggle_ledger(self) -> None:
-        panel = self._window.ledger_panel
+        panel = self.window.ledger_panel
         panel.setVisible(not panel.isVisible())
 
     def _toggle_reading(self) -> None:
-        panel = self._window.reading_panel
+        panel = self.window.reading_panel
         panel.setVisible(not panel.isVisible())
 
     # -------------------------------------------------------------- submenus
     def _fill_recent(self, menu: QMenu) -> None:
-        for path in self._documents.recent:
+        for path in self.documents.recent:
             action = menu.addAction(Path(path).name)
             action.setToolTip(path)
             action.triggered.connect(partial(self._open_path, path))
@@ -232,39 +254,30 @@ class Commands:
     def _fill_demos(self, menu: QMenu) -> None:
         for file_name, words in demo_files():
             menu.addAction(words).triggered.connect(partial(self._open_demo, file_name))
+        menu.addSeparator()
+        for file_name, words in DEMOS:
+            menu.addAction(words).triggered.connect(partial(self._open_speeds, file_name))
 
     def _fill_other(self, menu: QMenu) -> None:
         for file_name, words in demo_files():
             menu.addAction(words).triggered.connect(partial(self._use_demo, file_name))
 
     def _open_path(self, path: str, _checked: bool = False) -> None:
-        self._documents.open(Path(path))
+        self.documents.open(Path(path))
 
     def _open_demo(self, name: str, _checked: bool = False) -> None:
-        self._documents.open_demo(name)
+        self.documents.open_demo(name)
+
+    def _open_speeds(self, name: str, _checked: bool = False) -> None:
+        self.speeds.open_demo(name)
 
     def _use_demo(self, name: str, _checked: bool = False) -> None:
-        self._documents.use_other(open_demo(name))
+        self.documents.use_other(open_demo(name))
 
     # -------------------------------------------------------------- pictures
     def copy_picture(self) -> None:
         """Put what the stage shows on the clipboard."""
         QGuiApplication.clipboard().setImage(
-            stage_picture(self._window.views, self._bench.state)
+            stage_picture(self.window.views, self.bench.state)
         )
-        self._window.show_message("Picture of the stage copied")
-
-    def save_picture(self) -> None:
-        """Ask for a file and save what the stage shows as PNG."""
-        path, _ = QFileDialog.getSaveFileName(
-            self._window, "Save stage picture", "stage.png", "PNG picture (*.png)"
-        )
-        if not path:
-            return
-        target = Path(path) if path.lower().endswith(".png") else Path(path + ".png")
-        try:
-            write_bytes(target, png_bytes(stage_picture(self._window.views, self._bench.state)))
-        except InputError as error:
-            self._documents.complain("The picture was not saved", str(error))
-            return
-        self._window.show_message(f"Saved {target.name}")
+        self.window.show_message("Picture of the stage copied")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import replace
 from importlib import resources
 from pathlib import Path
@@ -14,16 +15,17 @@ from core import live
 from core.directional.quantities import quantity
 from core.errors import InputError
 from core.files.bench import SUFFIX, write_bench
-from core.files.opening import Opened, open_file
+from core.files.opening import Opened, open_file, table_text
 from core.files.specimen import write_specimen
-from core.state import BenchState, OrientationChoice
+from core.state import BenchState, OrientationChoice, Specimen
 from gui.bench import Bench
 from gui.window import Window
 
 FIRST_DEMO = "two_cuts_lm7.tricline"
 _FILTERS = (
-    "Everything Tricline reads (*.tricline *.json *.txt *.csv *.dat *.tsv);;All files (*)"
+    "Everything Tricline reads (*.tricline *.json *.txt *.csv *.dat *.tsv *.cif);;All files (*)"
 )
+CIF_SUFFIXES = (".cif", ".mcif", ".mmcif")
 _BENCH_FILTER = f"Bench, with orientations and view (*{SUFFIX})"
 _SPECIMEN_FILTER = "Specimen only (*.json)"
 _MOST_RECENT = 8
@@ -68,14 +70,22 @@ class Documents(QObject):
     -------
     named()
         The file's name or the list of recent files has changed.
+    table_met(str, Path), other_met(str, Path)
+        A file to be opened, or to be the other crystal, is a text that may be a table.
+    cell_met(Path)
+        A file to be opened is a CIF.
     """
 
     named = Signal()
+    table_met = Signal(str, object)
+    other_met = Signal(str, object)
+    cell_met = Signal(object)
 
     def __init__(self, bench: Bench, window: Window, settings: QSettings) -> None:
         super().__init__(window)
         self._bench, self._window, self._settings = bench, window, settings
         self.path: Path | None = None
+        self.open_otherwise: Callable[[Path], bool] = _leave
         window.files_dropped.connect(self._open_dropped)
         window.close_asked.connect(self._on_close)
 
@@ -89,13 +99,26 @@ class Documents(QObject):
     # -------------------------------------------------------------- opening
     def ask_open(self) -> None:
         """Let the user choose a file, and open it."""
-        path, _ = QFileDialog.getOpenFileName(self._window, "Open", self._folder(), _FILTERS)
+        path, _ = QFileDialog.getOpenFileName(self._window, "Open", self.folder(), _FILTERS)
         if path:
             self.open(Path(path))
 
     def open(self, path: Path) -> bool:
-        """Open a file in place of what is on the bench; say so when it cannot be done."""
+        """Open a file in place of what is on the bench; say so when it cannot be done.
+
+        What `open_otherwise` knows what to do with, as readings, is left to it. A table of
+        text is looked at first, in its dialog; a CIF gives the unit cell.
+        """
+        if self.open_otherwise(path):
+            return True
+        if path.suffix.lower() in CIF_SUFFIXES:
+            self.cell_met.emit(path)
+            return True
         try:
+            text = table_text(path)
+            if text is not None:
+                self.table_met.emit(text, path)
+                return True
             opened = open_file(path)
             state = first_state(opened)
         except InputError as error:
@@ -103,7 +126,7 @@ class Documents(QObject):
             return False
         if not self.may_discard():
             return False
-        self._take(state, path, opened.guesses)
+        self._take(state, path)
         return True
 
     def open_demo(self, name: str) -> None:
@@ -114,13 +137,24 @@ class Documents(QObject):
     def ask_other(self) -> None:
         """Let the user choose another crystal for B."""
         path, _ = QFileDialog.getOpenFileName(
-            self._window, "Another crystal for B", self._folder(), _FILTERS
+            self._window, "Another crystal for B", self.folder(), _FILTERS
         )
         if path:
             try:
+                text = table_text(Path(path))
+                if text is not None:
+                    self.other_met.emit(text, Path(path))
+                    return
                 self.use_other(open_file(Path(path)))
             except InputError as error:
                 self.complain("The file was not opened", str(error))
+
+    def take_table(self, specimen: Specimen, path: Path) -> None:
+        """Open the specimen of a table; it has no file to be saved over."""
+        if self.may_discard():
+            self._take(BenchState(specimen), None)
+            self._remember(path)
+            self.named.emit()
 
     def use_other(self, opened: Opened) -> None:
         """Show another crystal in B, in its own crystal axes."""
@@ -133,17 +167,12 @@ class Documents(QObject):
             ),
         )
 
-    def _take(
-        self, state: BenchState, path: Path | None, guesses: tuple[str, ...] = ()
-    ) -> None:
-        self.path = path if not guesses else None
+    def _take(self, state: BenchState, path: Path | None) -> None:
+        self.path = path
         self._bench.load(state)
         if path is not None:
             self._remember(path)
-        said = "; ".join(guesses)
-        self._window.show_message(
-            f"Read with guesses: {said}" if said else f"Opened {state.specimen.name}"
-        )
+        self._window.show_message(f"Opened {state.specimen.name}")
         self.named.emit()
 
     def _open_dropped(self, paths: list[str]) -> None:
@@ -164,7 +193,7 @@ class Documents(QObject):
         path, kind = QFileDialog.getSaveFileName(
             self._window,
             "Save as",
-            str(Path(self._folder()) / f"{stem}{SUFFIX}"),
+            str(Path(self.folder()) / f"{stem}{SUFFIX}"),
             f"{_BENCH_FILTER};;{_SPECIMEN_FILTER}",
         )
         if not path:
@@ -225,7 +254,8 @@ class Documents(QObject):
         else:
             event.ignore()
 
-    def _folder(self) -> str:
+    def folder(self) -> str:
+        """Return where files were last opened or saved."""
         return (
             str(self.path.parent)
             if self.path
@@ -237,6 +267,11 @@ class Documents(QObject):
         others = [entry for entry in self.recent if entry != whole]
         self._settings.setValue("recent", [whole, *others][:_MOST_RECENT])
         self._settings.setValue("folder", str(path.resolve().parent))
+
+
+def _leave(_path: Path) -> bool:
+    """Leave a file to the usual ways of opening."""
+    return False
 
 
 def _file_stem(name: str) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import platform
+from collections.abc import Iterable
 from importlib import metadata
 
 import numpy as np
@@ -14,6 +15,7 @@ from core.cautions import CAUTIONS
 from core.crystal.cell import AXES_CONVENTIONS
 from core.crystal.orientation import WAYS
 from core.directional.quantities import QUANTITIES
+from core.report_methods import METHODS
 from gui.actions import Menus
 
 _KEYS = (
@@ -25,6 +27,36 @@ _KEYS = (
     ),
     ("in a table", "Ctrl+C copies the selected lines at full precision"),
     ("in a turn field", "drag its letter sideways; Shift drags finely"),
+)
+
+
+_CONVENTIONS = (
+    (
+        "Matrices",
+        "Voigt order 11, 22, 33, 23, 13, 12; engineering shears (γ = 2ε) in the compliance. "
+        "Stiffness in GPa, compliance in 1/TPa, density in kg/m³, speeds in km/s, angles in "
+        "degrees.",
+        (),
+    ),
+    (
+        "Crystal axes",
+        "The Cartesian axes x, y, z in which the table is given. Which directions of the cell "
+        "they follow belongs to the specimen:",
+        tuple(AXES_CONVENTIONS.values()),
+    ),
+    (
+        "Part axes",
+        "X, Y, Z of the blank, wafer, casting or model. An orientation is the matrix R with "
+        "v_part = R v_crystal; its rows are X, Y, Z in crystal axes. It can be said as:",
+        tuple(WAYS.values()),
+    ),
+    (
+        "Directions",
+        "[u v w] follows the vectors of the cell, (h k l) is the normal of the plane; four "
+        "indices for hexagonal and trigonal crystals, the third minus the sum of the first two. "
+        "0.3,0.4,0.87 are components along the crystal axes.",
+        (),
+    ),
 )
 
 
@@ -63,42 +95,30 @@ class HelpDialog(QDialog):
 
 
 def quantities_html() -> str:
-    """Return the definition, unit and source of every quantity of the table."""
-    return "".join(
+    """Return definition, unit and source of every quantity, and how everything is computed."""
+    quantities = "".join(
         f"<h3>{entry.name} <i>{entry.symbol}</i>{', ' if entry.unit else ''}{entry.unit}</h3>"
-        f"<p>{entry.definition}</p><p><small>{entry.source}</small></p>"
+        f"<p>{entry.definition}<br><small>{entry.source}</small></p>"
         for entry in QUANTITIES.values()
-    ) + (
-        "<h3>Averages and indices</h3>"
-        "<p>Voigt (uniform strain), Reuss (uniform stress), Hill (their mean) and "
-        "Hashin–Shtrikman (closest bounds without texture) of a random polycrystal; universal "
-        "index 5 G_V/G_R + K_V/K_R − 6 (Ranganathan &amp; Ostoja-Starzewski 2008); log-Euclidean "
-        "index √[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); percent anisotropies "
-        "(Chung &amp; Buessem 1967).</p>"
-        "<h3>Strain spectrum</h3><p>The six eigenvalues of the stiffness in Kelvin form, with "
-        "the strains they belong to. The crystal is stable when all six are positive.</p>"
-        "<h3>Cutting error</h3><p>The least and the greatest value of a quantity when the part "
-        "is cut anywhere within a cone about the direction that was meant.</p>"
     )
+    methods = "".join(
+        f"<h3>{what}</h3><p>{formula}<br><small>{source}</small></p>"
+        for of_section in METHODS.values()
+        for what, formula, source in of_section
+    )
+    return f"{quantities}<hr>{methods}"
 
 
 def conventions_html() -> str:
     """Return the conventions in words."""
-    axes = "".join(f"<li>{words}</li>" for words in AXES_CONVENTIONS.values())
-    ways = "".join(f"<li>{words}</li>" for words in WAYS.values())
-    return (
-        "<h3>Matrices</h3><p>Voigt order 11, 22, 33, 23, 13, 12; engineering shears (γ = 2ε) in "
-        "the compliance. Stiffness in GPa, compliance in 1/TPa, density in kg/m³, speeds in "
-        "km/s, angles in degrees.</p>"
-        "<h3>Crystal axes</h3><p>The Cartesian axes x, y, z in which the table is given. Which "
-        "directions of the cell they follow belongs to the specimen:</p><ul>" + axes + "</ul>"
-        "<h3>Part axes</h3><p>X, Y, Z of the blank, wafer, casting or model. An orientation is "
-        "the matrix R with v_part = R v_crystal; its rows are X, Y, Z in crystal axes. It can be "
-        "said as:</p><ul>" + ways + "</ul>"
-        "<h3>Directions</h3><p>[u v w] follows the cell's vectors, (h k l) is the normal of the "
-        "plane; four indices for hexagonal and trigonal crystals, the third minus the sum of the "
-        "first two; 0.3,0.4,0.87 are components along the crystal axes.</p>"
+    return "".join(
+        f"<h3>{title}</h3><p>{text}</p>{_listed(items)}" for title, text, items in _CONVENTIONS
     )
+
+
+def _listed(items: Iterable[str]) -> str:
+    lines = "".join(f"<li>{item}</li>" for item in items)
+    return f"<ul>{lines}</ul>" if lines else ""
 
 
 def keys_html(menus: Menus) -> str:

@@ -107,7 +107,15 @@ class Intents(QObject):
 
 
 class LedgerIntents(Intents):
-    """Edits of the specimen and of the orientations."""
+    """Edits of the specimen and of the orientations.
+
+    Signals
+    -------
+    table_asked(str)
+        A pasted table cannot be used before something is answered.
+    """
+
+    table_asked = Signal(str)
 
     def __init__(self, bench: Bench, views: Views, parent: QObject | None = None) -> None:
         super().__init__(bench, parent)
@@ -140,7 +148,11 @@ class LedgerIntents(Intents):
         )
 
     def _paste(self, row: int, column: int, text: str) -> None:
+        """Put a pasted block in; a table that leaves something to ask goes to its dialog."""
         face = self.bench.state.display.face
+        if edits.is_open_table(face, text):
+            self.table_asked.emit(text)
+            return
 
         def build(state: BenchState) -> BenchState:
             specimen = edits.set_block(self.specimen, face, row, column, text)
@@ -171,7 +183,8 @@ class LedgerIntents(Intents):
         form, texts = self._views.cell, self._views.cell.texts()
         wanting = [_CELL_WORDS[name] for name in edits.CELL_FIELDS if not texts[name].strip()]
         if 0 < len(wanting) < len(texts):
-            form.show_error(field, f"A cell has six numbers; {', '.join(wanting)} still wanted.")
+            missing = ", ".join(wanting)
+            form.show_error(field, f"A cell has six numbers; {missing} still wanted.")
             return
         for name in texts:
             form.clear_error(name)
@@ -414,6 +427,7 @@ class DeckIntents(Intents):
         plots.hemisphere.sheet_chosen.connect(self._choose_sheet)
         plots.sweep.angle_picked.connect(self._pick_sweep)
         plots.sweep.axis_chosen.connect(self._choose_sweep_axis)
+        plots.source.time_chosen.connect(self._choose_source_time)
 
     def _pick_angle(self, angle: float) -> None:
         self._stage.move_pin(deck.section_direction(self.bench.state, angle))
@@ -438,6 +452,12 @@ class DeckIntents(Intents):
 
     def _choose_sweep_axis(self, key: str) -> None:
         self.show_choice("Sweep about another axis", sweep_about=deck.sweep_choice(key))
+
+    def _choose_source_time(self, microseconds: float) -> None:
+        state = self.bench.state
+        display = replace(state.display, source_time_us=microseconds)
+        label = "Change the time since the pulse"
+        self.bench.edit(label, replace(state, display=display), merge="source time")
 
     def _set_cutting_error(self, _field: str, text: str) -> None:
         self.attempt(

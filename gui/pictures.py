@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QBuffer, QIODevice
-from PySide6.QtGui import QImage, QImageWriter, QPainter
+from PySide6.QtGui import QImage, QPainter
 
 from core.state import BenchState
 from gui.stage.composition import Ground
@@ -27,11 +26,3 @@ def stage_picture(views: Views, state: BenchState, ground: Ground = "theme") -> 
         painter.drawImage(number * PANE_WIDTH, 0, pane)
     painter.end()
     return whole
-
-
-def png_bytes(picture: QImage) -> bytes:
-    """Return a picture as a PNG file."""
-    buffer = QBuffer()
-    buffer.open(QIODevice.OpenModeFlag.WriteOnly)
-    QImageWriter(buffer, b"PNG").write(picture)
-    return bytes(buffer.data().data())

@@ -71,7 +71,6 @@ class Presenter(QObject):
         self._details = WaveDetails(bench, scheduler, window.views, self)
         self.trust = TrustDetails(bench, scheduler, window.views, self)
         self._linked = True
-        self._source_time_us = 1.0
         self._stale: set[int] = set()
         self._extremes: dict[Any, Extremes] = {}
         self._started = 0.0
@@ -85,7 +84,6 @@ class Presenter(QObject):
         scheduler.failed.connect(self._on_failed)
         scheduler.progress.connect(window.show_progress)
         scheduler.idle.connect(window.hide_progress)
-        self._views.deck.source.time_chosen.connect(self._set_source_time)
         for pane in self._views.panes.values():
             pane.frame_painted.connect(self._on_frame)
 
@@ -102,6 +100,9 @@ class Presenter(QObject):
             (stage_names | {"cutting_error_deg"}, self._show_deck, "often"),
             (_PARTS | {"pin", "display"}, self._show_reading, "often"),
             (_PARTS | {"pin", "display"}, self._details.show_waves, "often"),
+            (stage_names, self._show_bands, "at rest"),
+            (stage_names, self.trust.show_sheet, "at rest"),
+            (_PARTS | {"pin", "display"}, self.trust.ask_pin, "at rest"),
             (_PARTS | {"pin", "display"}, self._details.show_arrivals, "at rest"),
             (_PARTS | {"display"}, self._details.show_axes, "at rest"),
             (
@@ -109,9 +110,6 @@ class Presenter(QObject):
                 self._show_cutting_error,
                 "at rest",
             ),
-            (stage_names, self._show_bands, "at rest"),
-            (stage_names, self.trust.show_sheet, "at rest"),
-            (_PARTS | {"pin", "display"}, self.trust.ask_pin, "at rest"),
             (_PARTS | {"display"}, self._show_tables, "at rest"),
             (_PARTS | {"display"}, self.trust.ask_tables, "at rest"),
             (_PARTS | {"display"}, self._show_extremes, "at rest"),
@@ -196,7 +194,7 @@ class Presenter(QObject):
         elif face == "sweep":
             plots.sweep.show_view(deck.sweep_view(state))
         else:
-            plots.source.show_view(deck.source_view(state, self._source_time_us))
+            plots.source.show_view(deck.source_view(state))
 
     def _show_reading(self, state: BenchState, _fine: bool) -> None:
         self._views.pin.show_view(reading.reading_view(state, self.trust.pin_spread(state)))
@@ -211,11 +209,14 @@ class Presenter(QObject):
         self._views.aggregate.show_view(reading.aggregate_view(specimen, known))
         self._views.part.show_view(reading.part_view(state, known))
 
-    @Slot(float)
-    def _set_source_time(self, microseconds: float) -> None:
-        self._source_time_us = microseconds
-        self._show_deck(self._bench.state, True)
+    @Slot()
+    def _on_axes_found(self) -> None:
+        """Draw marks and mended meshes, at once or with the rest when all has come to rest."""
+        if quantity(self._bench.state.quantity).wave and not self._pace.is_moving:
+            self._show_panes(self._bench.state, True)
+            self._show_deck(self._bench.state, True)
 
+    # -------------------------------------------------------------- uncertainties, likewise
     @Slot()
     def _on_pin_found(self) -> None:
         self._show_reading(self._bench.state, True)
@@ -223,13 +224,6 @@ class Presenter(QObject):
     @Slot()
     def _on_tables_found(self) -> None:
         self._show_tables(self._bench.state, True)
-
-    @Slot()
-    def _on_axes_found(self) -> None:
-        """Draw marks and mended meshes, at once or with the rest when all has come to rest."""
-        if quantity(self._bench.state.quantity).wave and not self._pace.is_moving:
-            self._show_panes(self._bench.state, True)
-            self._show_deck(self._bench.state, True)
 
     # -------------------------------------------------------------- extremes, on the worker
     def _extremes_key(self, state: BenchState) -> tuple[Any, float | None]:

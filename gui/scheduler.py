@@ -70,11 +70,13 @@ class Scheduler(QObject):
         self._serials = itertools.count(1)
         self._waiting: dict[str, Job] = {}
         self._running: tuple[int, Job, threading.Event] | None = None
+        self._fraction = 0.0
         self._pool = QThreadPool(self)
         self._pool.setMaxThreadCount(1)
         self._gap = QTimer(self, singleShot=True, interval=QUIET_GAP_MS)
         self._gap.timeout.connect(self._start_next)
         self._patience = QTimer(self, singleShot=True, interval=SHOW_PROGRESS_AFTER_MS)
+        self._patience.timeout.connect(self._on_patience)
         self._ended.connect(self._on_ended)
         self._reported.connect(self._on_reported)
 
@@ -121,15 +123,19 @@ class Scheduler(QObject):
             return
         job = self._waiting.pop(next(iter(self._waiting)))
         serial, stop = next(self._serials), threading.Event()
-        self._running = (serial, job, stop)
+        self._running, self._fraction = (serial, job, stop), 0.0
         self._patience.start()
         self._pool.start(_Worker(serial, job, stop, self._reported, self._ended))
 
     def _on_reported(self, serial: int, fraction: float) -> None:
         if self._running is not None and self._running[0] == serial:
-            words = self._running[1].words
+            words, self._fraction = self._running[1].words, fraction
             if not self._patience.isActive():
                 self.progress.emit(words, fraction)
+
+    def _on_patience(self) -> None:
+        if self._running is not None:
+            self.progress.emit(self._running[1].words, self._fraction)
 
     def _on_ended(self, serial: int, result: object, error: object) -> None:
         if self._running is None or self._running[0] != serial:

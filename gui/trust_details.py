@@ -81,10 +81,11 @@ class TrustDetails(QObject):
                     state, shown, self.pin_spread(state), self._draws_of(asked), found is None
                 )
             )
-            if self._draws_of(asked) is None and spread.crystal_factor(specimen) is not None:
-                self._submit(_DRAWS, (asked, specimen), trust.draw_everywhere)
-        if self._findings.get(asked) is None:
+        if found is None:
             self._submit(_TRUST, (asked, specimen), trust.find)
+        is_uncertain = spread.crystal_factor(specimen) is not None
+        if self._sheet.isVisible() and is_uncertain and self._draws_of(asked) is None:
+            self._submit(_DRAWS, (asked, specimen), trust.draw_everywhere)
 
     def ask_pin(self, state: BenchState, _fine: bool) -> None:
         """Ask for the uncertainties at the pin where they are not known yet."""

@@ -183,6 +183,7 @@ class Curve:
     label: str = ""
     band: FloatArray | None = None  # (2, 2, N): inner and outer edge of ±1σ
     negative: BoolArray | None = None  # (N,): where the value is negative, drawn dotted
+    leaves: BoolArray | None = None  # (N,): where the ray leaves the plane, drawn dotted
 
 
 @dataclass(frozen=True, eq=False)
@@ -217,6 +218,8 @@ class HemisphereView:
     projection: Literal["equal_area", "stereographic"]
     shown: str  # "A", "B", "difference", "cost"
     choices: tuple[tuple[str, str], ...]
+    # (2, M) in the disc, NaN where it leaves it: along these two waves are as fast
+    lines: tuple[FloatArray, ...] = ()
     axis_labels: tuple[str, str] = ("X", "Y")
     sheet: int = 0
     sheets: tuple[tuple[int, str], ...] = ()
@@ -306,7 +309,7 @@ class WaveTable:
     side: str
     heading: str
     rows: tuple[WaveRow, ...]
-    notes: tuple[str, ...] = ()  # where waves meet, or one does not propagate
+    notes: tuple[str, ...] = ()  # near which low-index directions rays run; where waves meet
 
 
 @dataclass(frozen=True)

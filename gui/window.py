@@ -17,6 +17,7 @@ from PySide6.QtWidgets import (
     QScrollArea,
     QSizePolicy,
     QSplitter,
+    QStackedWidget,
     QVBoxLayout,
     QWidget,
 )
@@ -27,6 +28,7 @@ from gui.ledger.constants_grid import ConstantsGrid
 from gui.ledger.orientation_form import OrientationButtons, OrientationForm
 from gui.ledger.specimen_form import SpecimenForm
 from gui.ledger.strain_spectrum import StrainSpectrum
+from gui.pages import PageSwitch
 from gui.panel import Section
 from gui.plots.section import SectionPlot
 from gui.reading.cutting_error import CuttingErrorPanel
@@ -34,6 +36,7 @@ from gui.reading.extremes_table import ExtremesTable
 from gui.reading.pin_table import PinTable
 from gui.reading.small_table import SmallTable
 from gui.reading.waves_panel import DegenerateList, WavesPanel
+from gui.speeds.page import SpeedsPage
 from gui.stage.camera import Camera
 from gui.stage.composition import Renderer
 from gui.stage.pane import StagePane
@@ -47,7 +50,7 @@ READING_WIDTH = 338
 _NARROWER_BY = 14
 SHEET_HEIGHT = 330
 _ROOM_FOR_ALL = 1010  # height of the window from which the plots stay beside the open sheet
-_LAYOUT_VERSION = 3  # a layout saved by an older arrangement is not restored
+_LAYOUT_VERSION = 4  # a layout saved by an older arrangement is not restored
 
 
 @dataclass(frozen=True, eq=False)
@@ -73,10 +76,12 @@ class Views:
     cutting_error: CuttingErrorPanel
     aggregate: SmallTable
     part: SmallTable
+    speeds: SpeedsPage
 
     def painted(self) -> tuple[QWidget, ...]:
         """Every view that paints itself and wants the theme."""
-        return (self.verdict, self.spectrum, *self.panes.values(), self.section, self.deck)
+        own = (self.verdict, self.spectrum, self.section, self.deck, self.speeds)
+        return (*own, *self.panes.values())
 
 
 def build_views(renderer: Renderer) -> Views:
@@ -102,6 +107,7 @@ def build_views(renderer: Renderer) -> Views:
         cutting_error=CuttingErrorPanel(),
         aggregate=SmallTable(),
         part=SmallTable(),
+        speeds=SpeedsPage(),
     )
 
 
@@ -127,6 +133,8 @@ class Window(QMainWindow):
         self.setMinimumSize(1120, 680)
         self.resize(1440, 900)
         self._pane_frames = {side: _framed(pane) for side, pane in views.panes.items()}
+        self.switch = PageSwitch()
+        self._pages = QStackedWidget()
         self._columns = QSplitter(Qt.Orientation.Horizontal)
         self._centre = QSplitter(Qt.Orientation.Vertical)
         self._stage = QSplitter(Qt.Orientation.Horizontal)
@@ -175,7 +183,10 @@ class Window(QMainWindow):
         body = QWidget()
         box = QHBoxLayout(body)
         box.setContentsMargins(6, 6, 6, 0)
-        box.addWidget(self._columns)
+        for page in (self._columns, self.views.speeds):
+            self._pages.addWidget(page)
+        box.addWidget(self._pages)
+        self.menuBar().setCornerWidget(self.switch)
         self._place_sheet(body)
         rows.addWidget(self._sheet, 1)
         self.setCentralWidget(whole)
@@ -214,6 +225,12 @@ class Window(QMainWindow):
         for side, frame in self._pane_frames.items():
             frame.setVisible(side in layout)
 
+    def show_page(self, key: str) -> None:
+        """Show the bench or the measured speeds."""
+        shown = self.views.speeds if key == "speeds" else self._columns
+        self._pages.setCurrentWidget(shown)
+        self.switch.show_page(key)
+
     def toggle_sheet(self) -> None:
         """Open the trust sheet, or put it away."""
         self.show_sheet(not self.views.trust.isVisibleTo(self))
@@ -240,6 +257,10 @@ class Window(QMainWindow):
         self._message.style().polish(self._message)
         self._message.setText(text)
         self._message.setToolTip(text)
+
+    def show_refusal(self, text: str) -> None:
+        """Say why something cannot be done."""
+        self.show_message(text, is_error=True)
 
     def show_note(self, text: str) -> None:
         """Show a quiet lasting note at the right end of the status line."""
@@ -290,6 +311,8 @@ class Window(QMainWindow):
             ("centre", self._centre),
             ("stage", self._stage),
             ("plots", self._plots),
+            ("speeds", self.views.speeds.columns),
+            ("speeds_plots", self.views.speeds.middle),
             ("sheet", self._sheet),
         )
 

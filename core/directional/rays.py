@@ -18,6 +18,8 @@ _REACH = 0.3  # by how much of its size the ray may miss the image of a triangle
 _STEPS = 40
 _FARTHEST_STEP = 0.1  # radians
 _SHIFT = 1e-6  # radians, of the central differences
+_SHIFTS = ((_SHIFT, 0.0), (-_SHIFT, 0.0), (0.0, _SHIFT), (0.0, -_SHIFT))
+_OPEN = 1e-3  # a cone of rays is at least so wide, as a tangent of half its half-angle
 _HIT = 1e-9  # half-angle between energy velocity and ray, radians
 _SAME_NORMAL = 1e-5  # radians
 _SINGULAR = 1e-4  # ratio of the two ways the energy velocity turns with the normal
@@ -95,8 +97,9 @@ def arrivals(medium: Medium, ray: FloatArray) -> tuple[Arrival, ...]:
         return ()
     normals, miss, singular = _aim(medium, ray, normals, sheets)
     hit = miss < _HIT
+    hit[hit] = ~_is_on_lid(medium, ray, normals[:, hit], sheets[hit])
     found = _distinct(medium, normals[:, hit], sheets[hit], singular[hit])
-    return tuple(sorted(found, key=lambda arrival: -arrival.ray_speed))
+    return tuple(sorted(found, key=lambda one: (-round(one.ray_speed, 9), one.sheet)))
 
 
 def _seeds(medium: Medium, ray: FloatArray) -> tuple[FloatArray, IntArray]:
@@ -181,6 +184,20 @@ def _aim(
     return normals, np.sqrt(_square(miss)), stretch[:, 1] < _SINGULAR * stretch[:, 0]
 
 
+def _is_on_lid(
+    medium: Medium, ray: FloatArray, normals: FloatArray, sheets: IntArray
+) -> BoolArray:
+    """Tell which wave normals (3, M) are acoustic axes with a cone about the ray.
+
+    Of equal waves `group_velocities` gives the mean ray, which is a ray of theirs only if the
+    sheets touch; on a cone the rays of the closest normals lie well away from it.
+    """
+    degenerate = modes(medium, directions(normals)).degenerate[sheets, np.arange(sheets.size)]
+    beside = [_misses(medium, ray, _shifted(normals, *shift), sheets) for shift in _SHIFTS]
+    farthest = np.sqrt(np.max([_square(miss) for miss in beside], axis=0, initial=0.0))
+    return np.asarray(degenerate & (farthest > _OPEN))
+
+
 def _square(a: FloatArray) -> FloatArray:
     """Return the squared length of vectors (2, M)."""
     return np.asarray((a * a).sum(axis=0))
@@ -194,6 +211,11 @@ def _moved(
     return directions(normals + along_first * first + along_second * second).n
 
 
+def _shifted(normals: FloatArray, along_first: float, along_second: float) -> FloatArray:
+    """Return all normals moved by the same, radians."""
+    return _moved(normals, np.asarray(along_first), np.asarray(along_second))
+
+
 def _jacobian(
     medium: Medium, ray: FloatArray, normals: FloatArray, sheets: IntArray
 ) -> FloatArray:
@@ -201,10 +223,7 @@ def _jacobian(
 
     Zero beside the end of a sheet, where there is no wave to compare with: such a normal stays.
     """
-    shifts = ((_SHIFT, 0.0), (-_SHIFT, 0.0), (0.0, _SHIFT), (0.0, -_SHIFT))
-    moved = np.concatenate(
-        [_moved(normals, *map(np.asarray, shift)) for shift in shifts], axis=1
-    )
+    moved = np.concatenate([_shifted(normals, *shift) for shift in _SHIFTS], axis=1)
     miss = _misses(medium, ray, moved, np.tile(sheets, 4)).reshape(2, 4, -1)
     slope = (miss[:, 0::2] - miss[:, 1::2]) / (2.0 * _SHIFT)
     slope[:, :, ~np.isfinite(slope).all(axis=(0, 1))] = 0.0

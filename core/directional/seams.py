@@ -39,6 +39,7 @@ _STEPS = np.arange(SPOKES)
 _DISC = np.stack([np.full(SPOKES, SPOKES), _STEPS, (_STEPS + 1) % SPOKES], axis=1)
 _RADIUS = 1e-4  # of that circle, radians: far below a pixel, far above rounding
 _SLACK = 0.1  # barycentric: an axis this near an edge takes the triangle beyond it too
+_AT_VERTEX = 0.35  # edges of the mesh: an axis this near a vertex takes all about it
 _ALIKE, _UNLIKE = 0.8, 0.5  # |p.p| within one shape, and across a line of equal speeds
 _APART = 3.0  # edges of the mesh: this near an isolated axis polarisations turn anyway
 
@@ -189,10 +190,17 @@ def _cap(mesh: SphereMesh, end: FloatArray) -> Cap:
 
 
 def _triangles_at(mesh: SphereMesh, end: FloatArray) -> IntArray:
-    """Return the triangles in which a direction lies, or nearly."""
-    nearest = int(np.argmax(end @ mesh.vertices))
+    """Return the triangles in which a direction lies, or nearly.
+
+    All about a vertex that is near, else one, or the two at an edge that is near: a patch of
+    which every corner can be seen from the direction.
+    """
+    closeness = end @ mesh.vertices
+    nearest = int(np.argmax(closeness))
     order, starts = _triangles_by_vertex(mesh)
     candidates = order[starts[nearest] : starts[nearest + 1]] // 3
+    if closeness[nearest] > np.cos(_AT_VERTEX * edge_angle(mesh)):
+        return candidates
     a, b, c = mesh.vertices[:, mesh.triangles[candidates]].transpose(2, 0, 1)
     weights = np.stack([end @ np.cross(p, q, axis=0) for p, q in ((b, c), (c, a), (a, b))])
     inside = (weights >= -_SLACK * weights.sum(axis=0)).all(axis=0)

@@ -25,6 +25,7 @@ from core.files.specimen import (
 from core.files.text import read_text, write_text
 from core.numbers import shortened
 from core.state import (
+    SOURCE_TIMES_US,
     BenchState,
     Display,
     MeasuredSpeeds,
@@ -149,6 +150,14 @@ def _cone(value: Any) -> float:
     return degrees
 
 
+def _time(value: Any) -> float:
+    least, most = SOURCE_TIMES_US
+    time = read_number(value)
+    if not least <= time <= most:
+        raise InputError(f"A time from {least:g} to {most:,g} µs was expected.")
+    return time
+
+
 _OTHER_COLOURS = ("value", "longitudinality")
 _ONE_OF: dict[str, tuple[object, ...]] = {
     "layout": ("A", "AB", "B"),
@@ -182,6 +191,8 @@ def _choice(name: str, given: Any, default: Any) -> Any:
         return _unit_vector(given)
     if name == "sheets":
         return _three_flags(given)
+    if name == "source_time_us":
+        return _time(given)
     if name == "colour_by" and given not in _OTHER_COLOURS:
         return _sheet_quantity(given)
     if type(given) is not type(default):

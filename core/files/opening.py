@@ -36,6 +36,22 @@ class Opened:
     guesses: tuple[str, ...] = ()
 
 
+def table_text(path: Path) -> str | None:
+    """Return the text of a file that is neither a specimen nor a bench, but may be a table.
+
+    Raises
+    ------
+    InputError
+        When it cannot be read at all.
+    """
+    text = read_text(path)
+    return None if _is_json(path, text) else text
+
+
+def _is_json(path: Path, text: str) -> bool:
+    return path.suffix.lower() in _JSON_SUFFIXES or bool(_OBJECT.match(text))
+
+
 def open_file(path: Path) -> Opened:
     """Return what a file holds.
 
@@ -45,7 +61,7 @@ def open_file(path: Path) -> Opened:
         When it is none of the kinds that Tricline reads, or has a fault.
     """
     text = read_text(path)
-    if path.suffix.lower() not in _JSON_SUFFIXES and not _OBJECT.match(text):
+    if not _is_json(path, text):
         return _open_table(text, path)
     data = specimen.parse_json(text, path.name)
     if data.get("format") == bench.FORMAT:

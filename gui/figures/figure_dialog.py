@@ -115,11 +115,11 @@ class FigureDialog(QDialog):
         self.shown = choice_of(shown_names(state), "Shown on the hemisphere")
         self.columns = choice_of({**widths, _OWN_WIDTH: "another width"}, "Column width",
                                  "Widths that journals and slides have room for")
-        self.width = number_field("Width", "mm", 10.0, 1000.0, 1)
-        self.height = number_field("Height", "mm", 10.0, 1000.0, 1)
+        self.width_mm = number_field("Width", "mm", 10.0, 1000.0, 1)
+        self.height_mm = number_field("Height", "mm", 10.0, 1000.0, 1)
         self.dpi = number_field("Resolution", "dpi", 72.0, 1200.0, 0, "Of a PNG, and of a "
                                 "shaded surface inside SVG and PDF")
-        self.text = number_field("Text height", "pt", 4.0, 24.0, 1)
+        self.text_pt = number_field("Text height", "pt", 4.0, 24.0, 1)
         self.format = choice_of(FORMATS, "Format")
         self.ground = choice_of(GROUNDS, "Ground")
         self.captioned = tick_box("Caption", "Specimen, source, quantity, unit, axes and "
@@ -137,8 +137,8 @@ class FigureDialog(QDialog):
         form = QFormLayout()
         for words, field in (
             ("What", self.kind), ("Quantity", self.quantity), ("Whose", self.sides),
-            ("Hemisphere of", self.shown), ("Column", self.columns), ("Width", self.width),
-            ("Height", self.height), ("Text", self.text), ("Format", self.format),
+            ("Hemisphere of", self.shown), ("Column", self.columns), ("Width", self.width_mm),
+            ("Height", self.height_mm), ("Text", self.text_pt), ("Format", self.format),
             ("Resolution", self.dpi), ("Ground", self.ground), ("", self.captioned),
             ("", self.vectors),
         ):
@@ -164,9 +164,9 @@ class FigureDialog(QDialog):
     def _connect(self) -> None:
         for box in (self.kind, self.quantity, self.sides, self.shown, self.format, self.ground):
             box.activated.connect(self._changed)
-        for field in (self.height, self.dpi, self.text):
+        for field in (self.height_mm, self.dpi, self.text_pt):
             field.valueChanged.connect(self._changed)
-        self.width.valueChanged.connect(self._width_changed)
+        self.width_mm.valueChanged.connect(self._width_changed)
         self.columns.activated.connect(self._column_chosen)
         self.captioned.toggled.connect(self._changed)
         self.vectors.toggled.connect(self._changed)
@@ -183,7 +183,8 @@ class FigureDialog(QDialog):
     def form(self) -> FigureForm:
         """Return its form."""
         return FigureForm(
-            self.width.value(), self.height.value(), self.dpi.value(), self.text.value(),
+            self.width_mm.value(), self.height_mm.value(),
+            self.dpi.value(), self.text_pt.value(),
             key_of(self.ground), self._studio.theme, self.captioned.isChecked(),
             all_vectors=self.vectors.isEnabled() and self.vectors.isChecked())
 
@@ -194,10 +195,10 @@ class FigureDialog(QDialog):
         show_key(self.quantity, state.quantity)
         show_key(self.sides, state.display.layout)
         show_key(self.shown, state.display.hemisphere)
-        self.width.setValue(remembered_number(settings, "figure/width", 174.0))
-        self.height.setValue(remembered_number(settings, "figure/height", 100.0))
+        self.width_mm.setValue(remembered_number(settings, "figure/width", 174.0))
+        self.height_mm.setValue(remembered_number(settings, "figure/height", 100.0))
         self.dpi.setValue(remembered_number(settings, "figure/dpi", 300.0))
-        self.text.setValue(remembered_number(settings, "figure/text", 8.0))
+        self.text_pt.setValue(remembered_number(settings, "figure/text", 8.0))
         show_key(self.format, remembered_text(settings, "figure/format", "png"))
         show_key(self.ground, remembered_text(settings, "figure/ground", "white"))
         self.captioned.setChecked(remembered_flag(settings, "figure/caption", True))
@@ -225,10 +226,10 @@ class FigureDialog(QDialog):
 
     def _column_chosen(self, _index: int) -> None:
         if key_of(self.columns) != _OWN_WIDTH:
-            self.width.setValue(float(key_of(self.columns)))
+            self.width_mm.setValue(float(key_of(self.columns)))
 
     def _show_column(self) -> None:
-        index = self.columns.findData(f"{self.width.value():g}")
+        index = self.columns.findData(f"{self.width_mm.value():g}")
         self.columns.setCurrentIndex(
             index if index >= 0 else self.columns.findData(_OWN_WIDTH))
 
@@ -311,7 +312,7 @@ class FigureDialog(QDialog):
         form = self.form()
         data = figure_bytes(self._shown(form), "png", form, self._studio.renderer,
                             self._studio.cameras)
-        QGuiApplication.clipboard().setImage(QImage.fromData(data, "PNG"))
+        QGuiApplication.clipboard().setImage(QImage.fromData(data))
         self.words.setText("Copied as a picture.")
 
     def done(self, result: int) -> None:

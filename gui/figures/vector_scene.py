@@ -115,7 +115,8 @@ def _seen(
         return triangles
     a, b, c = (points[:, triangles[:, corner]] for corner in range(3))
     area = (b[0] - a[0]) * (c[1] - a[1]) - (b[1] - a[1]) * (c[0] - a[0])
-    return triangles[area < 0.0]  # counter-clockwise in the world; y runs down here
+    facing: IntArray = triangles[area < 0.0]
+    return facing  # counter-clockwise in the world; y runs down here
 
 
 def _face_colours(

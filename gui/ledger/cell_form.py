@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import Signal
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import (
     QComboBox,
     QFrame,
@@ -108,10 +108,14 @@ class AxesQuestion(QFrame):
 
 
 class CellForm(QWidget):
-    """Lengths, angles and axes. Changing the axes asks what is to become of the numbers."""
+    """Lengths, angles and axes. Changing the axes asks what is to become of the numbers.
+
+    `file_asked()` comes when the cell is to be read from a file.
+    """
 
     edited = Signal(str, str)
     axes_changed = Signal(str, bool)
+    file_asked = Signal()
 
     def __init__(self) -> None:
         super().__init__()
@@ -121,6 +125,10 @@ class CellForm(QWidget):
         self._axes = AxesChoice()
         self._question = AxesQuestion()
         self._note = label(role="secondary", wrap=True)
+        self._file = QPushButton("From a CIF file…")
+        self._file.setProperty("role", "link")
+        self._file.setToolTip("Read the unit cell of a CIF file")
+        self._file.clicked.connect(self.file_asked)
         self._lay_out()
         self._question.hide()
         self._note.hide()
@@ -150,6 +158,7 @@ class CellForm(QWidget):
         column.addWidget(self._axes.error_label)
         column.addWidget(self._question)
         column.addWidget(self._note)
+        column.addWidget(self._file, 0, Qt.AlignmentFlag.AlignLeft)
 
     def _add_row(
         self, grid: QGridLayout, row: int, names: tuple[tuple[str, str], ...], unit: str,

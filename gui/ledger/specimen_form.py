@@ -45,6 +45,7 @@ class SpecimenForm(QWidget):
         self._axis_label = label("Unique axis", "secondary")
         self._class_note = label(role="secondary", wrap=True)
         self._notes = NotesField("notes", "Notes")
+        self._notes.setToolTip("Anything else worth knowing; kept in the file.")
         self._notes_part = Expander("Notes", self._notes)
         self._lay_out()
         self._connect()

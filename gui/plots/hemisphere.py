@@ -18,6 +18,7 @@ from PySide6.QtWidgets import (
 )
 
 from core.arrays import FloatArray
+from core.directional.projection import from_disc
 from gui.colour_bar import bar_height, draw_colour_bar, table_position
 from gui.plots.disc_marks import draw_marks
 from gui.plots.disc_picture import disc_picture, undefined, value_in
@@ -35,7 +36,6 @@ from gui.plots.lettering import (
     text_rect,
 )
 from gui.plots.polar import PolarGround, Rim, draw_axis_ends, polar_ground
-from core.directional.projection import from_disc
 from gui.plots.strokes import draw_curve
 from gui.theme import GREY_FOR_UNDEFINED, LIGHT, Theme, colour_table
 from gui.viewdata import HemisphereView
@@ -144,7 +144,7 @@ def _draw_hatch(painter: QPainter, ground: PolarGround, scale: float) -> None:
     grey.setAlphaF(0.55)
     painter.setPen(QPen(grey, scale))
     along, across = QPointF(1.0, -1.0) / math.sqrt(2.0), QPointF(1.0, 1.0) / math.sqrt(2.0)
-    for away in np.arange(-ground.rim, ground.rim, _HATCH * scale):
+    for away in np.arange(-ground.rim, ground.rim, _HATCH * scale)[1:]:
         half = math.sqrt(max(0.0, ground.rim**2 - float(away) ** 2))
         middle = ground.centre + across * float(away)
         painter.drawLine(middle - along * half, middle + along * half)
@@ -157,6 +157,7 @@ def _draw_over(
     placement = Placement(2.0 * scale)
     _block_marks(ground, view, placement, scale)
     _draw_contours(painter, ground, view, placement, theme, scale)
+    _draw_lines(painter, ground, view, theme, scale)
     painter.setPen(QPen(theme.colour("ink"), 1.2 * scale))
     painter.setBrush(Qt.BrushStyle.NoBrush)
     painter.drawEllipse(ground.centre, ground.rim, ground.rim)
@@ -165,6 +166,19 @@ def _draw_over(
         painter.drawLine(ground.at(angle, ground.rim), ground.at(angle, ground.rim + 4 * scale))
     draw_axis_ends(painter, ground, view.axis_labels, placement, theme, scale)
     draw_marks(painter, ground, view.marks, placement, theme, scale)
+
+
+def _draw_lines(
+    painter: QPainter, ground: PolarGround, view: HemisphereView, theme: Theme, scale: float
+) -> None:
+    """Draw lines of equal speeds in dashes that are told from contours on any colour."""
+    halo = QPen(theme.colour("panel"), 3.2 * scale)
+    dashes = QPen(theme.colour("ink"), 1.6 * scale)
+    dashes.setDashPattern([4.0, 2.5])
+    dashes.setCapStyle(Qt.PenCapStyle.FlatCap)
+    for line in view.lines:
+        for pen in (halo, dashes):
+            draw_curve(painter, ground.place(line), pen, scale)
 
 
 def _block_marks(
@@ -237,8 +251,8 @@ def _draw_plate(
     """Write a notice on a plate in the middle of an empty disc."""
     if not text:
         return
-    half = 0.82 * ground.rim
-    plate = QRectF(ground.centre.x() - half, ground.centre.y() - half / 2, 2 * half, half)
+    wide, high = 0.82 * ground.rim, 0.56 * ground.rim  # the corners stay within the disc
+    plate = QRectF(ground.centre.x() - wide, ground.centre.y() - high, 2 * wide, 2 * high)
     painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(theme.colour("panel", 0.92))
     painter.drawRoundedRect(plate, 4 * scale, 4 * scale)
@@ -269,6 +283,9 @@ class HemispherePlot(PlotFrame):
         self._face_row = QHBoxLayout()
         self._face_row.setSpacing(10)
         self.header.addLayout(self._face_row)
+        self.canvas.setAccessibleDescription(
+            "Press, drag or arrow keys: put the pin. Ctrl+C: copy the picture."
+        )
         self._build_corners()
 
     def show_view(self, view: HemisphereView) -> None:
@@ -368,8 +385,12 @@ class HemispherePlot(PlotFrame):
                 self._face_row.removeWidget(old)
                 old.hide()
                 old.deleteLater()
+            before: QWidget = self.sheet
             for index, (_, words) in enumerate(view.choices):
                 self._add_face(index, words)
+                button = self._faces.button(index)
+                QWidget.setTabOrder(before, button)
+                before = button
         button = self.face(view.shown)
         if button is not None:
             button.setChecked(True)

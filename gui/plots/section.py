@@ -134,7 +134,8 @@ def _draw_body(
         curve = view.curves[index]
         pens = (side_pen(theme, curve.side, curve.sheet, scale),
                 side_pen(theme, curve.side, curve.sheet, scale, negative=True))  # fmt: skip
-        draw_signed_curve(painter, placed[index], curve.negative, pens, scale)
+        dotted = curve.leaves if curve.negative is None else curve.negative
+        draw_signed_curve(painter, placed[index], dotted, pens, scale)
     if view.pin_angle is not None:
         _draw_pin(painter, ground, view, theme, scale)
     _, strip = split_strip(rect, _has_strip(view), theme, scale)
@@ -149,7 +150,11 @@ def _has_strip(view: SectionView) -> bool:
 
 def _notes(view: SectionView) -> list[str]:
     """Return the small print of a section."""
-    has_negative = any(c.negative is not None and c.negative.any() for c in view.curves)
+    has_negative = any(
+        dotted is not None and dotted.any()
+        for curve in view.curves
+        for dotted in (curve.negative, curve.leaves)
+    )
     has_band = any(curve.band is not None for curve in view.curves)
     return [note for note, shown in ((view.negative_note, has_negative), ("band ±1σ", has_band))
             if note and shown]  # fmt: skip
@@ -225,7 +230,9 @@ class SectionPlot(PlotFrame):
         self.header.addWidget(self.plane)
         self.plane.chosen.connect(self.plane_chosen)
         self.plane.restored.connect(self.clear_error)
-        self.canvas.setToolTip("")
+        self.canvas.setAccessibleDescription(
+            "Press, drag or arrow keys: turn the pin in this plane. Ctrl+C: copy the numbers."
+        )
 
     def show_view(self, view: SectionView) -> None:
         """Draw this."""

@@ -9,6 +9,7 @@ from PySide6.QtCore import QPointF, QRectF, QSignalBlocker, Signal
 from PySide6.QtGui import QColor, QPainter, QPen
 from PySide6.QtWidgets import QAbstractSpinBox, QDoubleSpinBox, QWidget
 
+from core.state import SOURCE_TIMES_US
 from gui.plots.frame import PlotFrame
 from gui.plots.grid import MINUS, number_text
 from gui.plots.legend import draw_strip, split_strip
@@ -23,7 +24,6 @@ _NOTE = "dotted: the energy leaves the plane"
 _NO_ARROWS = """QDoubleSpinBox::up-button, QDoubleSpinBox::down-button {
     width: 0; border: none; }"""
 _FAINT = 0.7
-_LONGEST_US, _SHORTEST_US = 10_000.0, 0.01
 
 
 # ---------------------------------------------------------------- drawing
@@ -125,13 +125,14 @@ class SourcePicture(PlotFrame):
         self.time.setToolTip("Time since the pulse, µs")
         self.time.setSuffix(" µs")
         self.time.setDecimals(2)
-        self.time.setRange(_SHORTEST_US, _LONGEST_US)
+        self.time.setRange(*SOURCE_TIMES_US)
         # Not NoButtons: in a styled spin box Qt then makes the field one pixel wide.
         self.time.setStyleSheet(_NO_ARROWS)
         self.time.setStepType(QAbstractSpinBox.StepType.AdaptiveDecimalStepType)
         self.time.setKeyboardTracking(False)
         self.time.valueChanged.connect(self.time_chosen)
         self.header.addWidget(self.time)
+        self.canvas.setAccessibleDescription("Ctrl+C: copy the wavefronts as numbers.")
 
     def show_view(self, view: SourceView) -> None:
         """Draw this."""

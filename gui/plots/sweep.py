@@ -267,9 +267,16 @@ class SweepPlot(PlotFrame):
         self._view: SweepView | None = None
         self.axis = QComboBox(self)
         self.axis.setAccessibleName("Axis the pin is turned about")
-        self.axis.setToolTip("The part axis about which the pin is turned")
+        self.axis.setToolTip(
+            "The axis about which the pin is turned: the normal of the section or a part axis"
+        )
+        # The list comes later than the first show, up to which Qt would measure it.
+        self.axis.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToContents)
         self.axis.activated.connect(self._choose_axis)
         self.header.addWidget(self.axis)
+        self.canvas.setAccessibleDescription(
+            "Press or left and right keys: turn the pin. Ctrl+C: copy the numbers."
+        )
 
     def show_view(self, view: SweepView) -> None:
         """Draw this."""

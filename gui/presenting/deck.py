@@ -22,6 +22,7 @@ from core.state import BenchState, Vector3
 from core.study.tolerance import cost_map
 from gui.plots.grid import nice_step, nice_ticks, tick_texts
 from gui.presenting.axes import AxesOf, axes_in_part, axes_now, single_directions
+from gui.presenting.rays import parted, parted_flags
 from gui.presenting.spread import section_deviation
 from gui.presenting.stage import (
     NO_DENSITY,
@@ -75,7 +76,11 @@ def section_view(state: BenchState, is_live: bool = False) -> SectionView:
     radius = max((_reach(curve) for curve in curves), default=0.0)
     ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
     across, up = plane_axes(np.array(state.section))
-    negative = any(curve.negative is not None and curve.negative.any() for curve in curves)
+    dotted = any(
+        flags is not None and flags.any()
+        for curve in curves
+        for flags in (curve.negative, curve.leaves)
+    )
     return SectionView(
         title=quantity_title(shown),
         curves=tuple(curves),
@@ -84,7 +89,7 @@ def section_view(state: BenchState, is_live: bool = False) -> SectionView:
         axis_labels=(axis_label(across), axis_label(up)),
         unit=shown.unit,
         pin_angle=_pin_angle(state, across, up),
-        negative_note=_dotted_note(shown, negative),
+        negative_note=_dotted_note(shown, dotted),
         notice="" if curves else NO_DENSITY,
         legend=tuple((side, pane_title(state, side)) for side in shown_sides(state)),
         directions=_rim_directions(state, across, up),
@@ -114,10 +119,14 @@ def _curves(state: BenchState, shown: Quantity, side: str, is_live: bool) -> lis
             drawn = np.where(np.abs(values) > limit, np.nan, points)
         negative = values < 0 if shown.signed else None
         label = SHEET_NAMES[sheet] if shown.sheets == 3 else ""
-        faint = found.out_of_plane[sheet] if shown.shape == "wave" else None
         band = None if sigmas is None else _band(drawn, sigmas[sheet], limit)
-        dotted = negative if faint is None else faint
-        curves.append(Curve(drawn, side, sheet, label, band, dotted))
+        leaves = None
+        if shown.shape == "wave":
+            gaps = np.flatnonzero(found.broken[sheet])
+            drawn = parted(drawn, gaps)
+            leaves = parted_flags(found.out_of_plane[sheet], gaps)
+            band = None if band is None else parted(band, gaps)
+        curves.append(Curve(drawn, side, sheet, label, band, negative, leaves))
     return curves
 
 
@@ -252,7 +261,8 @@ def hemisphere_view(
         picture=picture,
         scale=scale,
         contours=_contour_lines(picture, levels) if known and fine else (),
-        marks=_hemisphere_marks(state, choice, axes_of),
+        marks=_hemisphere_marks(state, choice, axes_of) if known else (),
+        lines=_degenerate_lines(state, choice, axes_of) if known else (),
         projection=projection,  # type: ignore[arg-type]
         shown=choice,
         choices=_hemisphere_choices(state),
@@ -387,12 +397,39 @@ def _hemisphere_marks(
             for text, vector in low_directions(specimen.frame)
             if _is_upper(turn @ vector)
         ]
-    if state.display.marks and specimen.density is not None and (quantity(state.quantity).wave):
+    if _marks_axes(state, side):
         marks += [
             (*_on_disc(unit_vector(axis.direction), projection), "", "axis")
             for axis in single_directions(axes_in_part(state, side, axes_of))
         ]
     return tuple(marks)
+
+
+def _marks_axes(state: BenchState, side: str) -> bool:
+    """Return whether acoustic axes are to be marked on the hemisphere of a side."""
+    has_density = state.specimen_of(side).density is not None
+    return state.display.marks and has_density and quantity(state.quantity).wave
+
+
+def _degenerate_lines(
+    state: BenchState, choice: str, axes_of: AxesOf
+) -> tuple[FloatArray, ...]:
+    """Return the lines along which two waves are as fast, on the disc."""
+    side = choice if choice in ("A", "B") else sides(state)[0]
+    if not _marks_axes(state, side):
+        return ()
+    curves = [axis.curve for axis in axes_in_part(state, side, axes_of)]
+    return tuple(
+        _line_on_disc(curve, state.display.projection) for curve in curves if curve is not None
+    )
+
+
+def _line_on_disc(curve: FloatArray, projection: str) -> FloatArray:
+    """Return directions (3, M), or their opposites, on the disc; NaN where that changes."""
+    below = curve[2] < 0
+    points = to_disc(np.where(below, -curve, curve), projection)
+    points[:, 1:][:, below[1:] != below[:-1]] = np.nan
+    return points
 
 
 @lru_cache(maxsize=4)
@@ -477,7 +514,7 @@ def sweep_view(state: BenchState) -> SweepView:
         curves=tuple(curves),
         axis=f"turned about {axis_label(np.array(axis))}",
         choices=(
-            ("normal", "about the section's normal"),
+            ("normal", "about the normal"),
             *((key, f"about part {key}") for key in _SWEEP_AXES),
         ),
         chosen=chosen,
@@ -493,19 +530,24 @@ def sweep_direction(state: BenchState, degrees: float) -> Vector3:
 
 
 # ------------------------------------------------------------------ source picture
-def source_view(state: BenchState, time_us: float) -> SourceView:
-    """Return the wavefronts from a point source after a time, in the section plane."""
+def source_view(state: BenchState, time_us: float | None = None) -> SourceView:
+    """Return the wavefronts from a point source in the section plane.
+
+    They are as far as after the time that the bench shows, or after another one, µs.
+    """
+    if time_us is None:
+        time_us = state.display.source_time_us
     across, up = plane_axes(np.array(state.section))
     curves = []
     for side in sides(state):
         if state.specimen_of(side).density is None:
             continue
         found = live.section(_medium(state, side), "wave", state.section)
-        curves += [
-            (side, sheet, found.points[sheet] * time_us, found.out_of_plane[sheet])
-            for sheet in range(3)
-            if state.display.sheets[sheet]
-        ]
+        for sheet in np.flatnonzero(state.display.sheets).tolist():
+            gaps = np.flatnonzero(found.broken[sheet])
+            points = parted(found.points[sheet] * time_us, gaps)
+            leaves = parted_flags(found.out_of_plane[sheet], gaps)
+            curves.append((side, sheet, points, leaves))
     radius = max(
         (float(np.nanmax(np.hypot(*points), initial=0.0)) for _, _, points, _ in curves),
         default=0.0,

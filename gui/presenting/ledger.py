@@ -29,6 +29,7 @@ from core.errors import InputError
 from core.numbers import full_precision, significant, with_deviation
 from core.state import BenchState, OrientationChoice, Specimen, claimed_class
 from core.study.deviations import eigenstiffness_deviation
+from core.study.plausibility import DENSITY
 from core.study.trust import Findings
 from core.study.uncertainty import deviations_of
 from core.study.verdict import Verdict, judge
@@ -59,7 +60,6 @@ from gui.viewdata import (
 
 UNITS = {"stiffness": "GPa", "compliance": "1/TPa", "uncertainty": "GPa"}
 NAMES = {"stiffness": "Stiffness", "compliance": "Compliance", "uncertainty": "Uncertainty"}
-_LIGHTEST, _HEAVIEST = 50.0, 25e3  # kg/m³: solid hydrogen has 86, osmium 22,590
 COVARIANCE_NOTE = (
     "How the 21 errors are correlated is known too (a full covariance), and every ± goes by "
     "it. Editing an uncertainty lets the correlations go."
@@ -90,7 +90,7 @@ def verdict_view(specimen: Specimen, findings: Findings | None = None) -> Verdic
     facts = verdict.facts
     if specimen.density is None:
         facts = (*facts, "no density: waves are off")
-    elif not _LIGHTEST <= specimen.density <= _HEAVIEST:
+    elif not DENSITY[0] <= specimen.density <= DENSITY[1]:
         facts = (f"no crystal has a density of {significant(specimen.density)} kg/m³", *facts)
     return VerdictView(verdict.mark, verdict.headline, facts, verdict.detail)
 
@@ -255,7 +255,8 @@ def specimen_view(state: BenchState) -> SpecimenView:
         ""
         if off < FITS
         else (
-            f"The table is {significant(100 * off, 2)} % away from {claimed.name} in these axes."
+            f"The table is {significant(100 * off, 2)} % away from {claimed.name} "
+            "in these axes."
         )
     )
     choices = (

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from functools import lru_cache
+from itertools import zip_longest
 from typing import Any
 
 import numpy as np
@@ -25,14 +26,16 @@ from core.study.tolerance import cone_extremes
 from core.tensor.averages import anisotropy, averages, hashin_shtrikman
 from core.tensor.stiffness import Stiffness
 from gui.presenting.sigmas import (
-    BRACKETS,
+    DIFFERENCE_BRACKETS,
+    NOTHING,
     RowSigmas,
+    difference_text,
     drawn_otherwise,
     draws_notice,
     number_text,
     plain_or_bracketed,
+    rounded,
     sigma_words,
-    signed_text,
 )
 from gui.presenting.spread import PinSpread, TableSpread, crystal_factor, quick_deviations
 from gui.presenting.stage import SHEET_NAMES, sides
@@ -68,7 +71,7 @@ def reading_view(state: BenchState, spread: PinSpread | None = None) -> ReadingV
     missing = [side for side in sides(state) if state.specimen_of(side).density is None]
     notices = (
         "Waves want a density: enter it in the ledger." if missing else "",
-        BRACKETS if known and second else "",
+        DIFFERENCE_BRACKETS if sigmas.difference else "",
         draws_notice(spread),
     )
     notice = " ".join(text for text in notices if text)
@@ -198,7 +201,7 @@ def _reading_row(row: Row, other: float | None, sigmas: RowSigmas) -> ReadingRow
     place = group, label
     value, other = _without_dust(value), None if other is None else _without_dust(other)
     difference = None if other is None else other - value
-    text = plain_or_bracketed if sigmas.in_brackets else number_text
+    text = rounded if sigmas.beside else number_text
     own = sigmas.first.get(place, 0.0)
     return ReadingRow(
         label,
@@ -207,9 +210,9 @@ def _reading_row(row: Row, other: float | None, sigmas: RowSigmas) -> ReadingRow
         "" if other is None else text(other, sigmas.second.get(place, 0.0)),
         ""
         if difference is None
-        else signed_text(difference, sigmas.difference.get(place, 0.0)),
+        else difference_text(difference, sigmas.difference.get(place, 0.0)),
         (full_precision(value), full_precision(other), full_precision(difference)),
-        "\n".join(line for line in (tooltip, sigma_words(own, unit, place, sigmas)) if line),
+        "\n".join((tooltip, *sigma_words(unit, place, sigmas))),
         key,
         group,
     )
@@ -385,22 +388,34 @@ def aggregate_view(specimen: Specimen, spread: TableSpread | None = None) -> Tab
     )
     if spread is None or not spread.aggregate:
         return view
-    rows = tuple(
-        (shown[0], *_bracketed_cells(shown[1:], full[1:], spread.aggregate.get(shown[0], ())))
-        for shown, full in zip(view.rows, view.full, strict=True)
-    )
-    return replace(view, rows=rows, notice=BRACKETS)
+    sigmas = tuple(spread.aggregate.get(row[0], ()) for row in view.rows)
+    return replace(view, **_with_sigmas(view.rows, view.full, sigmas, view.tooltips))
 
 
-def _bracketed_cells(
-    shown: tuple[str, ...], full: tuple[str, ...], sigmas: tuple[float, ...]
-) -> tuple[str, ...]:
-    """Return numbers with their uncertainties in brackets, as far as there are any."""
-    known = (*sigmas, *[0.0] * (len(shown) - len(sigmas)))
-    return tuple(
-        plain_or_bracketed(float(number), sigma) if number and sigma else text
-        for text, number, sigma in zip(shown, full, known, strict=True)
-    )
+def _with_sigmas(
+    rows: tuple[tuple[str, ...], ...],
+    full: tuple[tuple[str, ...], ...],
+    sigmas: Sequence[tuple[float, ...]],
+    tooltips: tuple[str, ...],
+) -> dict[str, Any]:
+    """Return rows and tooltips of a table with uncertainties.
+
+    One number in a line has its own in brackets; of several, for which there is no room, the
+    tooltip tells.
+    """
+    shown, tips = [], []
+    for row, exact, known, tip in zip(rows, full, sigmas, tooltips, strict=True):
+        values = [float(text) if text else None for text in exact[1:]]
+        many = sum(value is not None for value in values) > 1
+        text = rounded if many else plain_or_bracketed
+        cells = [
+            cell if value is None or not sigma else text(value, sigma)
+            for cell, value, sigma in zip_longest(row[1:], values, known)
+        ]
+        shown.append((row[0], *cells))
+        spreads = ", ".join(significant(sigma, 2) for sigma in known if sigma > NOTHING)
+        tips.append(f"{tip}\n± {spreads}: one standard uncertainty." if spreads else tip)
+    return {"rows": tuple(shown), "tooltips": tuple(tips)}
 
 
 @lru_cache(maxsize=8)
@@ -483,11 +498,8 @@ def part_view(state: BenchState, spread: TableSpread | None = None) -> TableView
     if spread is None or not spread.part:
         return TableView("Part", header, rows, full)
     sigmas = _part_sigmas(state, tables, spread)
-    rows = tuple(
-        (shown[0], *_bracketed_cells(shown[1:], exact[1:], own))
-        for shown, exact, own in zip(rows, full, sigmas, strict=True)
-    )
-    return TableView("Part", header, rows, full, notice=BRACKETS)
+    view = TableView("Part", header, rows, full, ("",) * len(rows))
+    return replace(view, **_with_sigmas(rows, full, sigmas, view.tooltips))
 
 
 def _part_sigmas(

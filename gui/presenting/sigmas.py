@@ -5,24 +5,35 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from core.directional.quantities import quantity
-from core.numbers import MINUS, bracketed, signed, significant, with_deviation
+from core.numbers import bracketed, signed, significant, with_deviation
 from core.study.draws import COUNT
 from gui.presenting.spread import Deviations, PinSpread, Place
 from gui.presenting.stage import SHEET_NAMES
 
-BRACKETS = "In brackets: one standard uncertainty, in units of the last digits."
-_NOTHING = 1e-9  # in any unit that is shown: what is less uncertain than this is rounding
+DIFFERENCE_BRACKETS = "In brackets: the standard uncertainty of B − A, in its last digits."
+NOTHING = 1e-9  # in any unit that is shown: what is less uncertain than this is rounding
 _DRAWN = {"young": "E", "phase": "v"}
+
+
+def sentence(text: str) -> str:
+    """Return words as a sentence, with a class's number of constants in plain words."""
+    plain = text.replace(", 6 const", " with 6 const").replace(", 7 const", " with 7 const")
+    return f"{plain[0].upper()}{plain[1:]}."
 
 
 def number_text(value: float, sigma: float) -> str:
     """Return "51.37 ± 0.32"; four significant digits where nothing is uncertain."""
-    return with_deviation(value, sigma if sigma > _NOTHING else 0.0)
+    return with_deviation(value, sigma if sigma > NOTHING else 0.0)
+
+
+def rounded(value: float, sigma: float) -> str:
+    """Return "51.37": the digits that the uncertainty leaves, where there is no room for it."""
+    return number_text(value, sigma).split(" ")[0]
 
 
 def plain_or_bracketed(value: float, sigma: float) -> str:
     """Return "51.37(32)"; four significant digits where nothing is uncertain."""
-    return bracketed(value, sigma if sigma > _NOTHING else 0.0)
+    return bracketed(value, sigma if sigma > NOTHING else 0.0)
 
 
 @dataclass(frozen=True)
@@ -33,8 +44,8 @@ class RowSigmas:
     ----------
     first, second, difference : dict
         By place: of the first side shown, of B beside A, of B − A.
-    in_brackets : bool
-        Whether there is room for brackets only.
+    beside : bool
+        Whether A and B stand beside each other: then their difference has the room.
     drawn : dict
         By place what draws give instead, where they differ notably.
     """
@@ -42,27 +53,31 @@ class RowSigmas:
     first: Deviations
     second: Deviations
     difference: Deviations
-    in_brackets: bool
+    beside: bool
     drawn: Deviations
 
 
-def signed_text(difference: float, sigma: float) -> str:
-    """Return a difference with its sign, rounded to two digits of its uncertainty."""
-    if not sigma > _NOTHING:
-        return signed(difference, 3)
-    text = bracketed(difference, sigma)
-    return f"+{text}" if difference > 0 and not text.startswith(MINUS) else text
-
-
-def sigma_words(own: float, unit: str, place: Place, sigmas: RowSigmas) -> str:
+def sigma_words(unit: str, place: Place, sigmas: RowSigmas) -> tuple[str, ...]:
     """Return the uncertainty of a row in words, and what draws give where they differ."""
-    if not own > _NOTHING:
-        return ""
-    words = f"± {significant(own, 2)} {unit}".rstrip() + ", one standard uncertainty."
+    own, other = sigmas.first.get(place, 0.0), sigmas.second.get(place, 0.0)
+    if not own > NOTHING:
+        return ()
+    words = f"± {significant(own, 2)}"
+    if other > NOTHING:
+        words += f" in A, ± {significant(other, 2)} in B"
+    lines = [f"{words} {unit}".rstrip() + ": one standard uncertainty."]
     drawn = sigmas.drawn.get(place)
     if drawn is not None:
-        words += f" {COUNT:,} draws of the constants give ± {significant(drawn, 2)}."
-    return words
+        lines.append(f"{COUNT:,} draws of the constants give ± {significant(drawn, 2)}.")
+    return tuple(lines)
+
+
+def difference_text(difference: float, sigma: float) -> str:
+    """Return B − A as "+5.77(61)"; of one crystal the errors of both go together."""
+    if not sigma > NOTHING:
+        return signed(difference, 3)
+    text = bracketed(difference, sigma)
+    return f"+{text}" if difference > 0 else text
 
 
 def drawn_otherwise(spread: PinSpread | None, side: str) -> Deviations:

@@ -202,7 +202,8 @@ def spread_at_pin(request: Request, ticker: Ticker) -> PinSpread:
             slopes[side] |= dict(zip(places, gradients, strict=True))
             found.shares[side, key] = tuple(
                 contributions(gradient, covariance, claimed)
-                if np.isfinite(gradient).all() else ()
+                if np.isfinite(gradient).all()
+                else ()
                 for gradient in gradients
             )
         ticker.tick((number + 0.8) / len(known))
@@ -216,12 +217,15 @@ def spread_at_pin(request: Request, ticker: Ticker) -> PinSpread:
 
 
 def _places(medium: Medium) -> dict[str, tuple[Place, ...]]:
-    """Return the rows of the table at the pin whose slopes have a formula, by quantity."""
+    """Return the rows at the pin for which differences and contributions are worked out.
+
+    Slownesses are left out: phase speeds say the same.
+    """
     places: dict[str, tuple[Place, ...]] = {
         key: ((STIFFNESS, quantity(key).short),) for key in _MODULI
     }
     if medium.density is not None:
-        for key in ("slowness", "phase", "wave", "power_flow"):
+        for key in ("phase", "wave", "power_flow"):
             places[key] = tuple((f"{name} wave", quantity(key).short) for name in SHEET_NAMES)
     return places
 

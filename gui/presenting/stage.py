@@ -259,8 +259,14 @@ def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
     """Return the colour scale over a range of values."""
     if not (np.isfinite(low) and np.isfinite(high)):
         low, high = 0.0, 1.0
+    ends = significant(low), significant(high)
     if about.logarithmic:
-        low, high = max(low, _FOCUSING_RANGE[0]), min(high, _FOCUSING_RANGE[1])
+        least, most = _FOCUSING_RANGE
+        ends = (
+            f"≤ {least:g}" if low < 1.001 * least else ends[0],
+            f"≥ {most:g}" if high > 0.999 * most else ends[1],
+        )
+        low, high = np.clip((low, high), least, most).tolist()
         ticks = tuple(x for x in (0.1, 0.2, 0.5, 1.0, 2.0, 5.0, 10.0) if low < x < high)
         texts = tuple(f"{x:g}" for x in ticks)
     else:
@@ -269,8 +275,7 @@ def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
     return ScaleView(
         low,
         high,
-        significant(low),
-        significant(high),
+        *ends,
         about.title,
         about.diverging and low < 0,
         tuple(zip(ticks, texts, strict=True)),
@@ -357,7 +362,7 @@ def _empty_pane(state: BenchState, side: str, shown: Quantity) -> PaneView:
         sheets=(),
         radius=1.0,
         scale=scale,
-        triads=_triads(state, side),
+        triads=(),
         marks=(),
         section=None,
         notice=NO_DENSITY,

@@ -27,7 +27,7 @@ from core.tensor.hidden_axes import HiddenAxes
 from core.tensor.stability import assess, criteria
 from core.tensor.symmetry import crystal_class
 from gui.presenting.ledger import ledger_specimen, verdict_view
-from gui.presenting.sigmas import number_text
+from gui.presenting.sigmas import number_text, sentence
 from gui.presenting.spread import (
     STIFFNESS,
     PinSpread,
@@ -46,7 +46,7 @@ _LEAST_SHARE = 0.05
 _TENABLE = 10.0  # of Schwarz's criterion: more than that behind the best is hardly tenable
 _DRAW_LEVEL = 4  # 1,281 directions
 _CHAINS = {"trigonal_6": "trigonal", "trigonal_7": "trigonal", "cubic": "cubic"}
-HEADER = ("class", "constants", "as entered", "turned", "turn", "about", "log distance", "")
+HEADER = ("class", "free", "as entered", "turned", "by", "about", "log", "")
 
 
 # ------------------------------------------------------------------ requests
@@ -128,7 +128,7 @@ def trust_view(
         suggested = symmetry.as_entered.key if hidden is None else hidden.class_key
     shown = findings if not pending else None
     return TrustView(
-        sentence=FINDING if shown is None else _sentence(shown.symmetry.sentence),
+        sentence=FINDING if shown is None else sentence(shown.symmetry.sentence),
         header=HEADER,
         classes=() if findings is None else _class_rows(specimen, findings, suggested),
         suggested=suggested,
@@ -145,14 +145,8 @@ def trust_view(
     )
 
 
-def _sentence(text: str) -> str:
-    return f"{text[0].upper()}{text[1:]}."
-
-
 # ------------------------------------------------------------------ symmetry
-def _class_rows(
-    specimen: Specimen, findings: Findings, suggested: str
-) -> tuple[ClassRow, ...]:
+def _class_rows(specimen: Specimen, findings: Findings, suggested: str) -> tuple[ClassRow, ...]:
     best = findings.supports[0].class_key if findings.supports else ""
     return tuple(
         _class_row(specimen, entered, axes, suggested, best)
@@ -171,7 +165,7 @@ def _class_row(
         words
         for words, holds in (
             ("claimed", cls.key == specimen.crystal_class),
-            ("best supported", cls.key == best),
+            ("supported", cls.key == best),
             ("fits", cls.key == suggested),
         )
         if holds
@@ -200,9 +194,10 @@ def _class_row(
         cells[7],
     )
     tooltip = (
-        f"{cls.name}{about}; point groups {cls.groups}. The distance is ‖C − C_class‖/‖C‖ in "
-        "Kelvin form, about the axes as entered and about those at which the class fits best; "
-        "the log-Euclidean distance about the latter."
+        f"{cls.name}{about}; point groups {cls.groups}. Free: its independent constants. As "
+        "entered, turned: the distance ‖C − C_class‖/‖C‖ in Kelvin form, about the axes as "
+        "entered and about those at which the class fits best; by, about: how far and about "
+        "which direction those are turned; log: the log-Euclidean distance about them."
     )
     can_exact = entered.percent > _EXACT or cls.key != specimen.crystal_class
     return ClassRow(cls.key, cells, full, tooltip, is_better, can_exact)
@@ -273,12 +268,10 @@ def _strains(specimen: Specimen) -> TableView:
     for value, sigma, words in zip(
         stability.eigenstiffness.tolist(), sigmas.tolist(), stability.descriptions, strict=True
     ):
-        rows.append((words, number_text(value, sigma), "GPa"))
-        full.append((words, full_precision(value), "GPa"))
+        rows.append((number_text(value, sigma), "GPa", words))
+        full.append((full_precision(value), "GPa", words))
     tip = "Eigenvalue of the stiffness in Kelvin form, and the strain it resists."
-    return TableView(
-        "Strain spectrum", ("strain", "stiffness", ""), tuple(rows), tuple(full), (tip,) * 6
-    )
+    return TableView("Strain spectrum", ("", "", ""), tuple(rows), tuple(full), (tip,) * 6)
 
 
 def _criteria(specimen: Specimen) -> TableView:

@@ -18,7 +18,7 @@ from core.directional.medium import Medium
 from core.directional.quantities import quantity
 from core.directional.rays import Arrival, arrivals
 from core.directional.sphere import directions
-from core.numbers import UNDEFINED, full_precision, significant
+from core.numbers import full_precision, significant
 from core.state import BenchState, Specimen, Vector3
 from core.task import Ticker
 from gui.presenting.axes import Axes
@@ -28,6 +28,7 @@ from gui.viewdata import LinkedRow, LinkedView, WaveRow, WavesView, WaveTable
 
 _DUST = 1e-9
 _ANGLE_DUST = 5e-3  # degrees off a lattice direction that are not worth a word
+_AIM = 1e-4  # degrees to which the search for a wave normal is to be trusted on a fold
 FINDING = "being found …"
 Text = Callable[[float | None], str]
 
@@ -43,11 +44,11 @@ def waves_view(state: BenchState) -> WavesView:
 def _wave_table(state: BenchState, side: str) -> WaveTable:
     specimen, choice = state.specimen_of(side), state.orientation_of(side)
     found = waves_along(live.part_medium(specimen, choice), state.pin)
-    rows = _scalar_rows(found) + _vector_rows(found)
+    rows, notes = _scalar_rows(found) + _vector_rows(found), _notes(found)
     if specimen.frame.has_basis:
-        turn = live.rotation(choice, specimen)
-        rows += _near_rows(found, turn, specimen.frame)
-    return WaveTable(side, f"{side}, {specimen.name}", rows, _notes(found))
+        near = _near_words(found, live.rotation(choice, specimen), specimen.frame)
+        notes = (near, *notes) if near else notes
+    return WaveTable(side, f"{side}, {specimen.name}", rows, notes)
 
 
 @dataclass(frozen=True, eq=False)
@@ -126,7 +127,7 @@ def _scalar_rows(found: WavesAlong) -> tuple[WaveRow, ...]:
 def _vector_rows(found: WavesAlong) -> tuple[WaveRow, ...]:
     length = np.sqrt((found.ray**2).sum(axis=1, keepdims=True))
     return tuple(
-        _row(f"{words} {letter}", vectors[:, axis], "", f"{tip}, along part {letter}.")
+        _row(f"{words}, {letter}", vectors[:, axis], "", f"{tip}, along part {letter}.")
         for words, vectors, tip in (
             ("polarisation", found.polarisation, "Unit vector of the particle motion"),
             ("ray", found.ray / length, "Unit vector along which the energy travels"),
@@ -147,34 +148,19 @@ def _three(numbers: list[float], text: Text) -> tuple[str, str, str]:
     return fast, middle, slow
 
 
-def _near_rows(
-    found: WavesAlong, turn: FloatArray, frame: CrystalFrame
-) -> tuple[WaveRow, WaveRow]:
-    """Return the low-index direction that each ray is near, and how far off it is."""
+def _near_words(found: WavesAlong, turn: FloatArray, frame: CrystalFrame) -> str:
+    """Return the low-index directions that the rays are near."""
     named = [
-        nearest_indices(turn.T @ ray, frame) if np.isfinite(ray).all() else None
-        for ray in found.ray
+        (name, nearest_indices(turn.T @ ray, frame))
+        for name, ray in zip(SHEET_NAMES, found.ray, strict=True)
+        if np.isfinite(ray).all()
     ]
-    texts = [UNDEFINED if near is None else near.text.replace("-", "−") for near in named]
-    angles = [np.nan if near is None else near.angle_deg for near in named]
-    shown = [0.0 if angle < _ANGLE_DUST else angle for angle in angles]
-    fast, middle, slow = texts
-    return (
-        WaveRow(
-            "ray near",
-            (fast, middle, slow),
-            "",
-            (fast, middle, slow),
-            "The lattice direction with low indices nearest to the ray.",
-        ),
-        WaveRow(
-            "off it by",
-            _three(shown, lambda angle: significant(angle, 2)),
-            "°",
-            _three(angles, full_precision),
-            "Angle between the ray and that lattice direction.",
-        ),
-    )
+    words = [
+        f"{name} {near.text}"
+        + (f" {significant(near.angle_deg, 2)}° off" if near.angle_deg > _ANGLE_DUST else "")
+        for name, near in named
+    ]
+    return f"Rays near: {', '.join(words)}.".replace("-", "−") if words else ""
 
 
 def _notes(found: WavesAlong) -> tuple[str, ...]:
@@ -260,6 +246,8 @@ def _arrival_row(arrival: Arrival, ray: FloatArray) -> LinkedRow:
     name = SHEET_NAMES[arrival.sheet]
     normal = arrival.normal
     off = float(np.degrees(np.arctan2(np.linalg.norm(np.cross(normal, ray)), normal @ ray)))
+    if off < _AIM:
+        off = 0.0
     numbers = (arrival.ray_speed, arrival.phase_speed, off, arrival.focusing)
     x, y, z = (significant(round(component, 6), 3) for component in normal.tolist())
     tooltip = f"Wave normal n: {x}  {y}  {z} in part axes, {significant(off, 3)}° off the ray."

@@ -38,6 +38,11 @@ class _BlankLine:
         for widget in (self.number, self.where, self.gain, self.add):
             widget.setVisible(is_used)
 
+    def set_enabled(self, is_ready: bool) -> None:
+        """Grey all four while they are out of date."""
+        for widget in (self.number, self.where, self.gain, self.add):
+            widget.setEnabled(is_ready)
+
 
 class BlanksPanel(QWidget):
     """The lower part of the right column.
@@ -166,8 +171,7 @@ class BlanksPanel(QWidget):
             line.add.setToolTip("Add three rows, one a wave, along this direction")
             for widget in (line.where, line.gain):
                 widget.setToolTip(row.tooltip)
-            for widget in (line.number, line.where, line.gain, line.add):
-                widget.setEnabled(not view.pending)
+            line.set_enabled(not view.pending)
         set_or_hide(self._notice, view.notice)
 
     def show_plan(self, view: PlanView) -> None:

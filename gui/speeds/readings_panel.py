@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import Signal
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QFontMetrics
 from PySide6.QtWidgets import (
     QButtonGroup,
-    QCheckBox,
     QGridLayout,
     QHBoxLayout,
     QPushButton,
@@ -76,9 +75,11 @@ class ReadingsPanel(QWidget):
             "How well the blanks are cut: standard uncertainty about each of two axes,"
             " degrees. It is added to σ by what it does to each speed.",
         )
-        self.robust = QCheckBox("robust")
-        self._heading = ElidedLabel("Readings", "heading")
+        self.robust = QPushButton("robust")
+        self.robust.setCheckable(True)
+        self._heading = label("Readings", "heading")
         self._summary = ElidedLabel(role="secondary")
+        self._summary.setAlignment(Qt.AlignmentFlag.AlignRight)
         self._frame = ElidedLabel(role="secondary")
         self._note = label(role="secondary", wrap=True)
         self._fault = label(role="error", wrap=True)
@@ -93,7 +94,7 @@ class ReadingsPanel(QWidget):
         column.setContentsMargins(11, 8, 11, 8)
         column.setSpacing(5)
         heading = QHBoxLayout()
-        self._heading.setMinimumWidth(70)
+        heading.setSpacing(8)
         heading.addWidget(self._heading)
         heading.addWidget(self._summary, 1)
         column.addLayout(heading)

@@ -286,7 +286,12 @@ class ReadingsTable(QTableView):
         self.setVerticalHeader(RowNumbers(self, model))
         self.setAccessibleName("Readings")
         self.setFrameShape(QFrame.Shape.NoFrame)
-        self.setStyleSheet("QTableView { border: none; background: transparent; }")
+        self.setStyleSheet(
+            "QTableView { border: none; background: transparent; }"
+            "QTableCornerButton::section { border: none; background: transparent; }"
+            "QHeaderView { background: transparent; border: none; }"
+        )
+        self.setCornerWidget(QWidget())
         self.setWordWrap(False)
         self.setCornerButtonEnabled(False)
         self.setTabKeyNavigation(False)
@@ -314,8 +319,8 @@ class ReadingsTable(QTableView):
         self.horizontalHeader().setFont(font)
         metrics = QFontMetrics(font)
         widths = [
-            max(metrics.horizontalAdvance(column.sample) + 2 * PADDING,
-                metrics.horizontalAdvance(column.title) + 10)
+            max(metrics.horizontalAdvance(column.sample) + 2 * PADDING + 3,
+                metrics.horizontalAdvance(column.title) + 14)
             for column in view.columns
         ]  # fmt: skip
         header = self.verticalHeader()

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 from PySide6.QtCore import QPointF, QRectF, Qt, Signal
-from PySide6.QtGui import QColor, QFontMetricsF, QPainter, QPen, QPolygonF
+from PySide6.QtGui import QFontMetricsF, QPainter, QPen
 
 from gui.plots.frame import PlotFrame
-from gui.plots.grid import nice_ticks, tick_texts
+from gui.plots.grid import nice_ticks
 from gui.plots.lettering import (
     Placement,
     draw_chip,
@@ -21,12 +20,12 @@ from gui.plots.lettering import (
     line_height,
     text_rect,
 )
+from gui.speeds.marks import DIMMED, apart, arrow, card_lines, diamond
 from gui.speeds.viewdata import ResidualPoint, ResidualsView
 from gui.theme import Theme
 
 SHEETS = ("fastest", "middle", "slowest")
-TITLE = "Residuals, (predicted − measured)/σ"
-DIMMED = 0.45
+TITLE = "(predicted − measured)/σ"
 _LEAST, _MOST = 3.0, 8.0  # σ that a strip reaches at least and at most
 _NEAR = 12.0  # pixels within which the mouse means a point
 
@@ -132,8 +131,9 @@ def _draw_strip(
             y = strips.y(sheet, sigmas)
             painter.drawLine(QPointF(area.left(), y), QPointF(area.right(), y))
     painter.setPen(theme.colour("secondary"))
-    ticks = nice_ticks(-strips.reach, strips.reach, max(2, int(area.height() / (22 * scale))))
-    for tick, text in zip(ticks, tick_texts(ticks), strict=True):
+    step = 2 if strips.reach < 5 else 5
+    for tick in (-step, 0, step):
+        text = f"{tick}".replace("-", "−")
         draw_text(painter, QPointF(area.left() - 6 * scale, strips.y(sheet, tick)), text, 1.0)
 
 
@@ -168,9 +168,9 @@ def _draw_points(
         painter.setPen(QPen(theme.colour("panel"), 0.8 * scale))
         painter.setBrush(colour)
         if abs(point.residual) > strips.reach:
-            painter.drawPolygon(_arrow(at, 5.5 * scale, point.residual > 0))
+            painter.drawPolygon(arrow(at, 5.5 * scale, point.residual > 0))
         elif point.is_outlier:
-            painter.drawPolygon(_diamond(at, 5.0 * scale))
+            painter.drawPolygon(diamond(at, 5.0 * scale))
         else:
             painter.drawEllipse(at, size, size)
         if point.row == chosen:
@@ -196,18 +196,6 @@ def _draw_name(
         if area.left() <= box.left() and box.right() <= area.right() and placement.claim(box):
             painter.drawText(box.bottomLeft(), text)
             return
-
-
-def _diamond(at: QPointF, size: float) -> QPolygonF:
-    corners = [QPointF(0, -size), QPointF(size, 0), QPointF(0, size), QPointF(-size, 0)]
-    return QPolygonF([at + corner for corner in corners])
-
-
-def _arrow(at: QPointF, size: float, upwards: bool) -> QPolygonF:
-    """Return a triangle that points out of the strip."""
-    tip = -size if upwards else size
-    corners = [QPointF(0, 0), QPointF(0.8 * size, -1.4 * tip), QPointF(-0.8 * size, -1.4 * tip)]
-    return QPolygonF([at + corner for corner in corners])
 
 
 class ResidualPlot(PlotFrame):
@@ -238,8 +226,8 @@ class ResidualPlot(PlotFrame):
         if not view.points:
             return None
         strips = strips_in(QRectF(self.canvas.rect()), view, self.theme)
-        best = min(view.points, key=lambda each: _apart(strips.place(each), point))
-        return best if _apart(strips.place(best), point) < _NEAR else None
+        best = min(view.points, key=lambda each: apart(strips.place(each), point))
+        return best if apart(strips.place(best), point) < _NEAR else None
 
     def draw(self, painter: QPainter, rect: QRectF, theme: Theme, scale: float) -> None:
         """Draw as on the screen."""
@@ -257,7 +245,8 @@ class ResidualPlot(PlotFrame):
 
     def copy_text(self) -> str:
         """Return rows, sheets and residuals as tab-separated columns."""
-        lines = [f"{each.row}\t{each.sheet + 1}\t{each.residual!r}" for each in self._view.points]
+        lines = [f"{each.row}\t{each.sheet + 1}\t{each.residual!r}"
+                 for each in self._view.points]  # fmt: skip
         return "\n".join(["row\tsheet\tresidual, σ", *lines]) if lines else ""
 
     def press(self, point: QPointF) -> None:
@@ -274,14 +263,3 @@ class ResidualPlot(PlotFrame):
                                              row < self._chosen)]  # fmt: skip
             if after:
                 self.row_picked.emit(after[0] if right > 0 else after[-1])
-
-
-def _apart(first: QPointF, second: QPointF) -> float:
-    gap = first - second
-    return math.hypot(gap.x(), gap.y())
-
-
-def card_lines(card: tuple[str, ...], theme: Theme) -> list[tuple[str, QColor]]:
-    """Return the lines of a card: the first in ink, the others grey."""
-    return [(text, theme.colour("secondary" if number else "ink"))
-            for number, text in enumerate(card)]  # fmt: skip

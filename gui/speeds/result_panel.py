@@ -104,7 +104,7 @@ class ResultPanel(QWidget):
         )
         self.use.clicked.connect(self.use_wanted)
         self._notice = label(role="secondary", wrap=True)
-        self._unseen_part = Section("Not seen", self.unseen, "unknown to these readings")
+        self._unseen_part = Section("Not seen", self.unseen, "kept as at the start of the fit")
         self._notes_part = Section("Remarks", self.notes)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
@@ -133,8 +133,15 @@ class ResultPanel(QWidget):
         if view.constants is not None:
             self.grid.show_view(view.constants, view.pending)
         self.facts.show_facts(view.facts, view.pending)
-        self.unseen.show_sentences(view.unseen)
+        self.unseen.show_sentences(_gathered(view.unseen))
         self.notes.show_sentences(view.notes)
         self._unseen_part.setVisible(bool(view.unseen))
         self._notes_part.setVisible(bool(view.notes))
         self.use.setEnabled(view.can_use and not view.pending)
+
+
+def _gathered(combinations: tuple[str, ...]) -> tuple[str, ...]:
+    """Return combinations one a line, those of a single constant together in the first."""
+    single = [text for text in combinations if " " not in text]
+    others = tuple(text for text in combinations if " " in text)
+    return ((", ".join(single),) if single else ()) + others

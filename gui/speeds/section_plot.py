@@ -7,10 +7,10 @@ from PySide6.QtCore import QPointF, QRectF, Signal
 from PySide6.QtGui import QPainter, QPen
 
 from gui.plots.frame import PlotFrame
+from gui.plots.lettering import draw_chip, draw_title
 from gui.plots.plane_combo import PlaneCombo
 from gui.plots.section import curves_as_text, draw_section, section_ground
-from gui.plots.lettering import draw_chip
-from gui.speeds.residual_plot import DIMMED, _apart, card_lines
+from gui.speeds.marks import DIMMED, apart, card_lines, diamond
 from gui.speeds.viewdata import SectionPoint, SpeedsSectionView
 from gui.theme import Theme
 
@@ -29,8 +29,10 @@ def draw_speeds_section(
     """Draw curves and readings; `chosen` is the row, from 1, that is ringed."""
     painter.save()
     painter.setOpacity(DIMMED if view.pending else 1.0)
-    draw_section(painter, rect, view.section, theme, scale, titled)
-    if view.section.curves and not titled:
+    if titled:
+        rect = draw_title(painter, rect, view.section.title, theme, scale)
+    draw_section(painter, rect, view.section, theme, scale)
+    if view.section.curves:
         _draw_points(painter, rect, view, theme, scale, chosen)
     painter.restore()
 
@@ -39,7 +41,7 @@ def _draw_points(
     painter: QPainter, rect: QRectF, view: SpeedsSectionView, theme: Theme, scale: float,
     chosen: int,
 ) -> None:
-    """Draw a disc at each reading, a diamond-like square at an outlier."""
+    """Draw a disc at each reading, a diamond at an outlier."""
     ground = section_ground(rect, view.section, theme, scale)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
     for point in view.points:
@@ -47,8 +49,7 @@ def _draw_points(
         painter.setPen(QPen(theme.colour("panel"), 1.2 * scale))
         painter.setBrush(theme.colour("alert" if point.is_outlier else "b"))
         if point.is_outlier:
-            half = 4.2 * scale
-            painter.drawRect(QRectF(at.x() - half, at.y() - half, 2 * half, 2 * half))
+            painter.drawPolygon(diamond(at, 6.0 * scale))
         else:
             painter.drawEllipse(at, 4.2 * scale, 4.2 * scale)
         if point.row == chosen:
@@ -82,6 +83,9 @@ class SpeedsSection(PlotFrame):
         self._view = view
         self.title.set_whole(view.section.title)
         self.plane.show_plane(view.section.plane, view.section.planes)
+        line = self.plane.lineEdit()
+        if not line.hasFocus():
+            line.setCursorPosition(0)
         if not self.plane.is_wrong():
             self.set_message("")
         self.canvas.update()
@@ -108,7 +112,7 @@ class SpeedsSection(PlotFrame):
         if view is None or not view.points or not view.section.curves:
             return None
         ground = section_ground(QRectF(self.canvas.rect()), view.section, self.theme)
-        near = [(_apart(QPointF(*ground.place(np.array([each.x, each.y]))), point), number)
+        near = [(apart(QPointF(*ground.place(np.array([each.x, each.y]))), point), number)
                 for number, each in enumerate(view.points)]  # fmt: skip
         distance, number = min(near)
         return view.points[number] if distance < _NEAR else None

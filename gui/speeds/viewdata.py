@@ -140,7 +140,7 @@ class SingularView:
 
     deviations: tuple[float, ...]  # 1/singular value, GPa; infinite where nothing is seen
     rank: int
-    limit: float  # GPa: less certain combinations do not count as seen
+    typical: float  # GPa: the mean eigenstiffness, to compare with
     unseen: tuple[str, ...]
     pending: bool = False
     notice: str = ""

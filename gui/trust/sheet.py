@@ -8,16 +8,16 @@ from PySide6.QtWidgets import (
     QFrame,
     QHBoxLayout,
     QLabel,
+    QPushButton,
     QScrollArea,
-    QToolButton,
     QVBoxLayout,
     QWidget,
 )
 
 from gui.forms import ElidedLabel, label, set_or_hide
 from gui.panel import Section
-from gui.reading.small_table import SmallTable
 from gui.trust.class_table import ClassPanel
+from gui.trust.kind_table import KindTable
 from gui.viewdata import TrustView
 
 TITLE = "Can this table be trusted?"
@@ -82,12 +82,12 @@ class TrustSheet(QFrame):
         self.classes = ClassPanel()
         self.facts = Lines()
         self.chance = label(role="secondary", wrap=True)
-        self.strains = SmallTable("Strain spectrum in numbers")
-        self.criteria = SmallTable("Stability criteria")
+        self.strains = KindTable("Strain spectrum in numbers", "number", "unit", "words")
+        self.criteria = KindTable("Stability criteria", "words", "words", "number", "unit")
         self.notes = Lines()
-        self.pin = SmallTable("Uncertainty at the pin")
+        self.pin = KindTable("Uncertainty at the pin", "label", "number", "number", "words")
         self.draws = label(role="secondary", wrap=True)
-        self.shares = SmallTable("What the anisotropy is made of")
+        self.shares = KindTable("What the anisotropy is made of", "label", "number", "number")
         self._titles = {
             name: Section(title, part, ruled=is_ruled)
             for name, title, part, is_ruled in (
@@ -103,10 +103,10 @@ class TrustSheet(QFrame):
         self.classes.asked.connect(self.asked)
 
     def _lay_out(self) -> None:
-        self.close_button = QToolButton()
-        self.close_button.setText("×")
-        self.close_button.setAccessibleName("Put the sheet away")
-        self.close_button.setToolTip("Put the sheet away (F7)")
+        self.close_button = QPushButton("Put away")
+        self.close_button.setProperty("role", "link")
+        self.close_button.setCursor(Qt.CursorShape.PointingHandCursor)
+        self.close_button.setToolTip("Put the sheet away (F7, or Escape)")
         self.close_button.clicked.connect(self.closed)
         top = QHBoxLayout()
         top.setSpacing(14)

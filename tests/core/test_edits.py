@@ -362,7 +362,7 @@ def test_density_and_temperature():
     assert set_field(dataclasses.replace(LOW, density=1.0), "density", " ").density is None
     for bad in ("0", "-3"):
         assert "above zero" in refusal(set_field, LOW, "density", bad)
-    assert "kg/m³" in refusal(set_field, LOW, "density", "1e9")
+    assert "kg/m³" in refusal(set_field, LOW, "density", "1e15")
     assert set_field(LOW, "temperature", "−40").temperature_c == -40.0
     assert set_field(LOW, "temperature", "").temperature_c is None
     assert "−273.15" in refusal(set_field, LOW, "temperature", "-300")

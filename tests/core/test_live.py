@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from core import live
+from core.directional.acoustic_axes import acoustic_axes
 from core.directional.projection import to_disc
 from core.directional.quantities import QUANTITIES
 from core.state import OrientationChoice, Specimen, as_matrix
@@ -152,6 +153,30 @@ def test_rays_stay_in_a_mirror_plane_and_leave_others():
     assert not mirror.out_of_plane[0].any()
     tilted = live.part_medium(CUBE, OrientationChoice("bunge 20 30 40"))
     assert live.section(tilted, "wave", Y).out_of_plane[0].any()
+
+
+def test_a_section_is_broken_where_sheets_cross_along_a_line_and_nowhere_else():
+    """With C66 < C44 SH and SV cross on a cone about c (as in `test_acoustic_axes`)."""
+    c11, c66 = 161.0, 36.0
+    crossing = Stiffness.from_voigt(hexagonal(c11, c11 - 2 * c66, 50.1, 61.0, 38.3))
+    medium = live.crystal_medium(as_matrix(crossing.voigt), 7000.0)
+    (line,) = (axis for axis in acoustic_axes(medium) if axis.kind == "line")
+    tilt = np.degrees(np.arccos(abs(line.direction[2])))
+    found = live.section(medium, "wave", Y)
+    assert not found.broken[0].any()
+    for sheet in (1, 2):
+        # The circle starts along X and goes towards Z, half a degree a step.
+        places = 0.5 * (np.flatnonzero(found.broken[sheet]) + 0.5)
+        expected = np.sort([90 - tilt, 90 + tilt, 270 - tilt, 270 + tilt])
+        assert places == pytest.approx(expected, abs=0.3)
+    assert not live.section(medium, "slowness", Y).broken.any()
+
+
+def test_the_lid_of_a_cone_stays_in_the_section():
+    """In the plane of [111] and [001] the shear sheets cross at [111] alone."""
+    medium = live.part_medium(CUBE, AS_IT_IS)
+    plane = (1 / np.sqrt(2), -1 / np.sqrt(2), 0.0)
+    assert not live.section(medium, "wave", plane).broken.any()
 
 
 @pytest.mark.parametrize("key", QUANTITIES)

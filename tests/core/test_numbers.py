@@ -8,6 +8,7 @@ from hypothesis import strategies as st
 
 from core.errors import InputError
 from core.numbers import (
+    bracketed,
     full_precision,
     parse_number,
     shortened,
@@ -157,3 +158,19 @@ def test_what_is_shown_has_the_digits_asked_for(value):
     mantissa = text.split("×")[0].replace("−", "").replace(".", "").lstrip("0")
     assert value == 0 or len(mantissa) in (5, 6)  # six whole digits where 5 are rounded off
     assert "-" not in text
+
+
+@pytest.mark.parametrize(
+    ("value", "deviation", "text"),
+    [
+        (51.372, 0.321, "51.37(32)"),
+        (-0.0312, 0.0021, "−0.0312(21)"),
+        (168.4, 12.3, "168(12)"),
+        (1234.0, 120.0, "1230(120)"),
+        (3.21, 1.25, "3.2(12)"),
+        (5.0, 0.0, "5.000"),
+    ],
+)
+def test_brackets_hold_the_uncertainty_of_the_last_digits(value, deviation, text):
+    # The notation of the Guide to the Expression of Uncertainty, 7.2.2.
+    assert bracketed(value, deviation) == text

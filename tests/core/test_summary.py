@@ -6,13 +6,17 @@ import math
 
 import numpy as np
 import pytest
+from scipy.spatial.transform import Rotation
 
+from core import pages
 from core.crystal.cell import UnitCell
 from core.errors import InputError
 from core.state import OrientationChoice, Specimen, as_matrix
 from core.summary import along, compare, rotate, summarise
 from core.task import Cancelled, Ticker
-from core.tensor.notation import parse_rows
+from core.tensor.notation import parse_rows, tensor_to_voigt
+from core.tensor.stiffness import Stiffness
+from core.tensor.symmetry import CLASS_KEYS
 from tests.materials import cubic, isotropic, trigonal
 
 AS_IT_IS = OrientationChoice()
@@ -80,6 +84,12 @@ def test_a_summary_has_the_keys_that_are_promised(specimen, density):
         "universal", "log_euclidean", "percent_bulk", "percent_shear", "zener"
     }  # fmt: skip
     assert set(found["symmetry"]) == {"declared", "as_entered_percent", "nearest"}
+    assert [row["class"] for row in found["symmetry"]["nearest"]] == list(CLASS_KEYS)
+    for row in found["symmetry"]["nearest"]:
+        assert set(row) == {"class", "distance_percent", "axes"}
+        axes = np.array(row["axes"])
+        assert np.abs(axes @ axes.T - np.eye(3)).max() < 1e-9
+        assert np.linalg.det(axes) > 0
     assert set(found["extremes"]) == EXTREMES
     for pair in found["extremes"].values():
         assert set(pair) == {"min", "max"}
@@ -88,6 +98,25 @@ def test_a_summary_has_the_keys_that_are_promised(specimen, density):
             assert extreme["set"] in ("point", "ring", "all")
             assert math.hypot(*extreme["direction"]) == pytest.approx(1)
     assert (found["density_kg_m3"], found["name"]) == (density, specimen.name)
+
+
+def test_a_turned_orthorhombic_table_is_found_again():
+    # Invented constants, turned by scipy; by construction the distance is zero.
+    table = np.diag([214.0, 158.0, 186.0, 58.0, 77.0, 69.0])
+    for (i, j), value in {(0, 1): 64.0, (0, 2): 71.0, (1, 2): 83.0}.items():
+        table[i, j] = table[j, i] = value
+    turn = Rotation.from_euler("ZXZ", [20.0, 35.0, -50.0], degrees=True).as_matrix()
+    full = Stiffness.from_voigt(table).tensor
+    turned = tensor_to_voigt(np.einsum("ia,jb,kc,ld,abcd->ijkl", turn, turn, turn, turn, full))
+    specimen = Specimen("turned", as_matrix(turned), crystal_class="triclinic")
+    rows = {row["class"]: row for row in summarise(specimen)["symmetry"]["nearest"]}
+    assert rows["orthorhombic"]["distance_percent"] < 1e-6
+    assert rows["tetragonal_6"]["distance_percent"] > 1.0
+    axes = np.abs(np.array(rows["orthorhombic"]["axes"]) @ turn)  # a permutation, up to signs
+    assert np.abs(np.sort(axes, axis=1) - [0.0, 0.0, 1.0]).max() < 1e-6
+    page = pages.summary(summarise(specimen))
+    line = next(row for row in page.splitlines() if row.split()[:1] == ["orthorhombic"])
+    assert line.split()[1] == "exact"
 
 
 def test_along_has_the_keys_that_are_promised():

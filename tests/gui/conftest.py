@@ -2,6 +2,7 @@
 
 import gc
 import threading
+from contextlib import contextmanager
 
 import pytest
 import shiboken6
@@ -10,18 +11,21 @@ from PySide6.QtWidgets import QApplication
 
 from gui.app import build
 from gui.documents import FIRST_DEMO, first_state, open_demo
+from gui.panel import Disclosure
 from tests.gui import driving
 
 SIZE = (1280, 800)
-SPLIT = ([360, 560, 338], [390, 310], [280, 280], [280, 280])  # columns, centre, stage, plots
+SPLIT = {"columns": [360, 560, 338], "centre": [390, 310], "stage": [280, 280],
+         "plots": [280, 280]}  # fmt: skip
 
 
-@pytest.fixture(scope="module")
-def program(qapp, tmp_path_factory):
-    """The program as `tricline` builds it, with long work done at once and short pauses."""
-    settings = QSettings(
-        str(tmp_path_factory.mktemp("settings") / "tricline.ini"), QSettings.Format.IniFormat
-    )
+@contextmanager
+def running(qapp, folder):
+    """Build the program as `tricline` does, and see that it goes without a trace.
+
+    Long work is done at once, and the pauses after which the fine picture is drawn are short.
+    """
+    settings = QSettings(str(folder / "tricline.ini"), QSettings.Format.IniFormat)
     dress, style = qapp.palette(), qapp.style().objectName()
     threads = set(threading.enumerate())
     with pytest.MonkeyPatch.context() as patch:
@@ -30,6 +34,9 @@ def program(qapp, tmp_path_factory):
         qapp.setStyle("Fusion")
         built = build(qapp, first_state(open_demo(FIRST_DEMO)), settings, force_sync=True)
         built.test_settings = settings
+        built.test_sections = {
+            heading: heading.isChecked() for heading in built.window.findChildren(Disclosure)
+        }
         built.window.show()
         yield built
         built.close()
@@ -42,28 +49,57 @@ def program(qapp, tmp_path_factory):
     qapp.setStyle(style)
 
 
+@pytest.fixture(scope="module")
+def program(qapp, tmp_path_factory):
+    """One program for all tests of a module, which saves a second each."""
+    with running(qapp, tmp_path_factory.mktemp("settings")) as built:
+        yield built
+
+
+@pytest.fixture
+def own_app(qapp, qtbot, tmp_path):
+    """A program of the test's own, to do with as it likes."""
+    with running(qapp, tmp_path) as built:
+        built.window.activateWindow()
+        qtbot.waitUntil(built.window.isActiveWindow)
+        driving.settle(built)
+        yield built
+        built.bench.history.clear()
+
+
 @pytest.fixture
 def app(program, qtbot):
     """The program on the first demo, as if it had just been opened."""
     begin_anew(program)
     program.window.activateWindow()
     qtbot.waitUntil(program.window.isActiveWindow)
-    driving.settle(program)
     yield program
     program.bench.history.clear()
 
 
 def begin_anew(app):
     """Take back everything that an earlier test may have left."""
+    for other in QApplication.topLevelWidgets():
+        if other is not app.window and other.isVisible():
+            other.close()
     app.test_settings.clear()
     app.documents.path = None
-    app.bench.load(driving.BLANK)
-    app.bench.load(first_state(open_demo(FIRST_DEMO)))
+    start = first_state(open_demo(FIRST_DEMO))
+    if app.bench.state != start or driving.sentences(app.window):
+        app.bench.load(driving.BLANK)
+        app.bench.load(start)
     app.window.resize(*SIZE)
-    for (_, splitter), sizes in zip(app.window._splitters(), SPLIT, strict=True):
-        splitter.setSizes(sizes)
+    for heading, is_open in app.test_sections.items():
+        if heading.isChecked() != is_open:
+            heading.click()
+    for name, splitter in app.window._splitters():
+        if name in SPLIT:
+            splitter.setSizes(SPLIT[name])
     app.window.ledger_panel.show()
     app.window.reading_panel.show()
+    for dialog in (app.intake.dialog, app.intake.cell_dialog):
+        dialog.reject()
+    app.window.show_sheet(False)
     app.window.show_message("")
     app.cameras.set_linked(True)
     app.presenter.set_linked(True)

@@ -85,6 +85,7 @@ def pixels_of(image):
 
 def pictures(app):
     """Return what every view that paints itself shows, by name."""
+    settle(app)
     views = app.window.views
     seen = {
         "verdict": views.verdict,
@@ -106,12 +107,13 @@ def changed(before, after):
 
 
 def control(app, kind, name):
-    """Return the one control of a kind with an accessible name."""
-    found = [
+    """Return the one control of a kind with an accessible name, of all that are shown."""
+    named = [
         w
         for w in app.window.findChildren(kind)
         if (w.accessibleName() or spoken(w)) == name
     ]
+    found = [w for w in named if w.isVisibleTo(app.window)] if len(named) > 1 else named
     assert len(found) == 1, f"{len(found)} controls are called {name!r}"
     return found[0]
 

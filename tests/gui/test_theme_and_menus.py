@@ -25,9 +25,9 @@ from gui.panel import Disclosure
 from gui.plots.frame import Canvas
 from gui.stage.pane import StagePane
 from gui.theme import LIGHT, NIGHT
+from gui.window import _LAYOUT_VERSION
 from tests.gui.driving import (
     changed,
-    differs,
     menu,
     pictures,
     settle,
@@ -76,47 +76,41 @@ def test_a_layout_is_remembered_and_one_of_another_version_is_not(app, tmp_path)
     settle(app)
     wanted = columns.sizes()
     app.window.save_layout(settings)
+    settings.remove("layout/window")  # a test's screen may be smaller than the window
     columns.setSizes([400, 500, 360])
     settle(app)
     other = columns.sizes()
     assert other != wanted
     settings.setValue("layout/version", "from another time")
     app.window.restore_layout(settings)
-    settle(app)
     assert columns.sizes() == other
-    app.window.save_layout(settings)
-    settings.remove("layout/columns")
+    settings.setValue("layout/version", _LAYOUT_VERSION)
     app.window.restore_layout(settings)
-    settle(app)
-    assert columns.sizes() == other
+    assert columns.sizes() == wanted
+    settings.setValue("layout/columns", "scribbled over by hand")
+    app.window.restore_layout(settings)
+    assert columns.sizes() == wanted
 
 
 # ------------------------------------------------------------------ menus
-NEED_A_FILE = {"Open…", "Save as…", "Save", "Save stage picture…", "Another crystal in B…"}
-
-
-def all_actions(app):
-    return dict(app.menu_bar.actions)
-
-
-def test_every_action_of_the_menus_runs(app, monkeypatch, tmp_path):
+def test_every_action_of_the_menus_runs(own_app, monkeypatch):
     monkeypatch.setattr(QFileDialog, "getOpenFileName", lambda *_: ("", ""))
     monkeypatch.setattr(QFileDialog, "getSaveFileName", lambda *_: ("", ""))
     monkeypatch.setattr(QMessageBox, "exec", lambda *_: QMessageBox.StandardButton.Cancel)
     monkeypatch.setattr("PySide6.QtWidgets.QDialog.exec", lambda *_: 0)
     QApplication.clipboard().setText("1\t2")
     ran = 0
-    for words, action in all_actions(app).items():
+    for words, action in own_app.menu_bar.actions.items():
         if words == "Quit":
             continue
         if action.isEnabled():
             action.trigger()
             QTest.qWait(0)
             ran += 1
-    settle(app)
+    settle(own_app)
     assert ran >= 25
-    app.help.close()
-    assert app.window.isVisible()
+    own_app.help.close()
+    assert own_app.window.isVisible()
 
 
 def test_every_submenu_opens_filled(app):
@@ -166,7 +160,7 @@ def test_every_menu_has_its_own_letters(app):
 
 
 def test_menu_lines_tell_what_they_do(app):
-    for words, action in all_actions(app).items():
+    for words, action in app.menu_bar.actions.items():
         assert action.toolTip(), words
 
 
@@ -269,8 +263,8 @@ def test_tab_reaches_the_grid_the_panes_the_plots_and_the_tables(app):
             break
     assert wanted <= reached, [w.accessibleName() for w in wanted - reached]
     # Ledger, then stage, then reading: as one reads.
-    places = [order.index(w) for w in (
-        views.constants.table, views.panes["A"], views.section.canvas, views.pin.table)]  # fmt: skip
+    as_read = (views.constants.table, views.panes["A"], views.section.canvas, views.pin.table)
+    places = [order.index(widget) for widget in as_read]
     assert places == sorted(places)
 
 
@@ -293,21 +287,8 @@ def test_the_window_can_be_small_and_large(app, size):
     assert (app.window.width(), app.window.height()) == size
     for name, image in pictures(app).items():
         assert image.shape[0] >= 30, name
-        assert image.shape[1] >= 150, name
+        assert image.shape[1] >= 120, name
     for panel in (app.window.ledger_panel, app.window.reading_panel):
         right = panel.mapTo(app.window, panel.rect().bottomRight())
         assert right.x() <= size[0]
         assert right.y() <= size[1]
-
-
-def test_the_verdict_opens_its_detail_by_key_and_by_mouse(app):
-    band = app.window.views.verdict
-    before = set(QApplication.topLevelWidgets())
-    QTest.mouseClick(band, Qt.MouseButton.LeftButton)
-    popup = [w for w in QApplication.topLevelWidgets() if w.isVisible() and w not in before]
-    popup += [w for w in before if w.isVisible() and w.windowFlags() & Qt.WindowType.Popup
-              == Qt.WindowType.Popup]  # fmt: skip
-    assert popup
-    for w in popup:
-        w.close()
-    assert differs(pictures(app)["verdict"], np.zeros((1, 1, 3), np.uint8))

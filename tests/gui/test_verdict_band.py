@@ -76,18 +76,25 @@ def test_nothing_is_drawn_over_the_hint_at_the_end(band):
     assert margin == {ground}
 
 
-def test_a_click_opens_the_detail(band, qtbot):
-    assert not band.detail.isVisible()
+def test_a_click_or_a_key_asks_for_the_sheet(band, qtbot):
+    asked = []
+    band.opened.connect(lambda: asked.append(True))
     qtbot.mouseClick(band, Qt.MouseButton.LeftButton)
-    assert band.detail.isVisible()
-    assert "Every eigenstiffness" in band.detail.text.text()
-    assert FACTS[2] in band.detail.text.text()
-    text = band.detail.text
-    assert text.heightForWidth(text.width()) <= text.height()
-    band.detail.close()
-    qtbot.keyClick(band, Qt.Key.Key_Return)
-    assert band.detail.isVisible()
-    band.detail.close()
+    for key in (Qt.Key.Key_Return, Qt.Key.Key_Space):
+        qtbot.keyClick(band, key)
+    assert len(asked) == 3
+    qtbot.mouseClick(band, Qt.MouseButton.RightButton)
+    assert len(asked) == 3
+
+
+def test_the_hint_turns_over_while_the_sheet_is_open(band):
+    hint = (1180 - 34, 8, 30, 24)
+    away = band.grab().toImage().copy(*hint)
+    band.show_open(True)
+    turned = band.grab().toImage().copy(*hint)
+    assert turned != away
+    band.show_open(False)
+    assert band.grab().toImage().copy(*hint) == away
 
 
 def test_it_can_be_read_aloud_and_copied(band, qtbot):

@@ -1,4 +1,4 @@
-"""Waves in the whole window: sheets, colours, marks, what a missing density leaves."""
+"""Waves in the whole window: what is found when, what is shown where, and where links lead."""
 
 from dataclasses import replace
 
@@ -6,262 +6,170 @@ import numpy as np
 import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QComboBox, QLineEdit, QToolButton
 
-from core import live
-from core.directional.acoustic_axes import acoustic_axes
-from core.directional.quantities import QUANTITIES
-from gui.presenting.stage import LEFT_OUT, NO_DENSITY
+from core.directional import acoustic_axes as finder
+from gui.panel import Section
+from gui.presenting import waves
 from tests.gui.driving import (
     changed,
-    control,
     differs,
-    drag,
-    fill_in,
     lines,
     load,
-    menu,
-    pick,
     picture,
     pictures,
-    pixels_of,
     settle,
     show,
+    type_cell,
 )
 
 CUBIC = "casting_lm40_cubic.json"
-UNSTABLE = "ledger_slip_lm21_unstable.json"
+
+
+def unfold(app, *titles):
+    """Open some sections of the side panels and close the others."""
+    for section in app.window.reading_panel.findChildren(Section):
+        if section.is_open() != (section.button.text() in titles):
+            section.button.click()
+    settle(app)
+
+
+def axes_marks(app, side="A"):
+    view = app.window.views.panes[side]._view
+    return [mark.direction for mark in view.marks if mark.kind == "axis"]
 
 
 @pytest.fixture
-def waves(app):
-    """The slowness of the cubic casting in one pane."""
+def cubic(app):
     load(app, CUBIC)
-    pick(app, "Quantity", "slowness")
+    unfold(app, "Waves", "Degenerate directions")
+    yield app
+    unfold(app, "Reading", "Extremes", "Cutting error", "Aggregate")
+
+
+def test_links_of_degenerate_directions_move_the_pin(cubic):
+    table = cubic.window.views.degenerate
+    rows = lines(table.table)
+    cone = next(k for k, row in enumerate(rows) if row[0] == "cone")
+    table.link(cone).click()
+    settle(cubic)
+    assert np.allclose(np.abs(cubic.bench.state.pin), 1 / np.sqrt(3), atol=1e-8)
+    notes = cubic.window.views.waves._notes.text()
+    assert "middle and slowest waves meet here" in notes
+    assert cubic.bench.history.canUndo()
+
+
+def test_the_waves_follow_the_pin(cubic):
+    before = lines(cubic.window.views.waves.table)
+    show(cubic, pin=(0.6, 0.0, 0.8))
+    after = lines(cubic.window.views.waves.table)
+    assert [row[0] for row in before] == [row[0] for row in after]
+    assert before != after
+
+
+def test_arrivals_are_found_when_they_are_looked_at_and_not_before(cubic, monkeypatch):
+    asked = []
+    find = waves.find_arrivals
+    monkeypatch.setattr(
+        waves, "find_arrivals", lambda *request: asked.append(request) or find(*request)
+    )
+    panel = cubic.window.views.waves
+    show(cubic, pin=(0.0, 0.6, 0.8))
+    assert asked == []
+    panel.expander.button.click()
+    settle(cubic)
+    assert len(asked) == 1
+    rows = lines(panel.arrivals.table)
+    assert len(rows) >= 3
+    # What does not change the rays asks for nothing.
+    show(cubic, pin=(0.0, 0.6, 0.8), quantity="phase", crystal_axes=True)
+    assert len(asked) == 1
+    show(cubic, pin=(0.0, 0.8, 0.6))
+    assert len(asked) == 2
+    panel.arrivals.link(len(rows) - 1).click()
+    settle(cubic)
+    assert len(asked) == 3
+    panel.expander.button.click()
+    show(cubic, pin=(0.0, 0.0, 1.0))
+    assert len(asked) == 3
+
+
+def test_hidden_waves_are_not_computed(app, monkeypatch):
+    load(app, CUBIC)
+    unfold(app, "Reading")
+    asked = []
+    monkeypatch.setattr(waves, "waves_view", lambda state: asked.append(state))
+    show(app, pin=(0.6, 0.0, 0.8))
+    assert asked == []
+    unfold(app, "Reading", "Extremes", "Cutting error", "Aggregate")
+
+
+def test_marks_come_with_the_axes_and_turn_with_the_part(cubic):
+    show(cubic, quantity="slowness", marks=True)
+    assert len(axes_marks(cubic)) == 7
+    before = pictures(cubic)
+    turned = cubic.window.views.orientations["A"].turn_edited
+    turned.emit(2, 30.0)
+    assert np.allclose(np.sort(np.abs(np.array(axes_marks(cubic))[:, 2])),
+                       np.sort([1, 0, 0] + [3**-0.5] * 4), atol=1e-9)  # fmt: skip
+    settle(cubic)
+    assert {"pane A", "deck"} <= changed(before, pictures(cubic))
+
+
+def test_an_edit_does_not_wait_for_the_axes(cubic, monkeypatch):
+    """While the constants change the axes are not known; once they rest they are found."""
+    show(cubic, quantity="slowness", marks=True)
+    calls = []
+    find = finder.degeneracies
+    monkeypatch.setattr(
+        finder, "degeneracies", lambda table: calls.append(cubic.pace.is_moving) or find(table)
+    )
+    cubic.window.views.constants.constant_edited.emit(0, 0, "150")
+    assert calls == []
+    assert axes_marks(cubic) == []
+    settle(cubic)
+    assert calls
+    assert not any(calls)
+    assert len(axes_marks(cubic)) == 7
+
+
+def test_hiding_a_sheet_removes_it_from_the_pane(app):
+    load(app, CUBIC)
+    show(app, quantity="wave")
+    before = picture(app.window.views.panes["A"])
+    app.window.views.toolbar.sheet_toggled.emit(0, False)
     settle(app)
-    return app
+    assert differs(before, picture(app.window.views.panes["A"]), 0.05)
 
 
-def pane(app, side="A"):
-    return app.window.views.panes[side]
+def test_the_time_of_the_source_picture_is_undone_and_saved(app, tmp_path):
+    from core.files.bench import read_bench, write_bench
 
-
-def press(app, tooltip):
-    QTest.mouseClick(control(app, QToolButton, tooltip), Qt.MouseButton.LeftButton)
+    load(app, CUBIC)
+    show(app, deck="source")
+    time = app.window.views.deck.source.time
+    time.setFocus()
+    time.selectAll()
+    QTest.keyClicks(time, "2.5")
+    QTest.keyClick(time, Qt.Key.Key_Return)
     settle(app)
-
-
-def option(app, name):
-    action = app.window.views.toolbar._actions[name]
-    assert action.isEnabled()
-    action.trigger()
+    assert app.bench.state.display.source_time_us == 2.5
+    write_bench(tmp_path / "b.tricline", app.bench.state)
+    assert read_bench(tmp_path / "b.tricline").display.source_time_us == 2.5
+    app.bench.history.undo()
     settle(app)
+    assert time.value() == 1.0
 
 
-def scene(app, view, size=(300, 300)):
-    """Return a view as the stage's renderer draws it, without the text over it."""
-    image = app.renderer.render(view, pane(app).camera, size, app.dressing.theme, "theme", 0)
-    return pixels_of(image)
-
-
-def test_a_hidden_sheet_is_gone_from_the_pane(waves):
-    whole = picture(pane(waves))
-    press(waves, "Show the slowest sheet")
-    view = pane(waves)._view
-    assert waves.bench.state.display.sheets == (True, True, False)
-    assert differs(whole, picture(pane(waves)), 0.05)
-    without = replace(view, sheets=view.sheets[:2])
-    assert np.array_equal(scene(waves, view), scene(waves, without))
-    shown = replace(view, sheets=(*view.sheets[:2], replace(view.sheets[2], visible=True)))
-    assert differs(scene(waves, view), scene(waves, shown), 0.05)
-    assert [curve.sheet for curve in waves.window.views.section._view.curves] == [0, 1]
-    press(waves, "Show the slowest sheet")
-    waves.window.setFocus()
-    settle(waves)
-    assert np.array_equal(picture(pane(waves)), whole)
-
-
-def test_cutting_open_shows_the_inner_sheets(waves):
-    """Looking along the normal of the section, the middle is the inside of the fastest."""
-    menu(waves, "Look along part Y")
-    settle(waves)
-    closed = scene(waves, pane(waves)._view)
-    option(waves, "cut_away")
-    opened = scene(waves, pane(waves)._view)
-    view = pane(waves)._view
-    alone = scene(waves, replace(view, sheets=view.sheets[:1]))
-    middle = (slice(140, 160), slice(140, 160))
-    assert differs(closed[middle], opened[middle], 0.9)
-    assert np.abs(opened[middle].astype(int) - alone[middle]).max() < 40
-    # Low slowness is dark, high slowness bright: outside the fast sheet it is brighter.
-    assert opened[middle].mean() < closed[middle].mean()
-
-
-def test_colours_follow_what_is_chosen(waves):
-    seen = {"value": picture(pane(waves))}
-    titles = {pane(waves)._view.scale.title}
-    for key in ("longitudinality", "power_flow", "focusing"):
-        pick(waves, "Colour", key)
-        settle(waves)
-        seen[key] = picture(pane(waves))
-        titles.add(pane(waves)._view.scale.title)
-    assert len(titles) == 4
-    for key in ("longitudinality", "power_flow", "focusing"):
-        assert differs(seen["value"], seen[key], 0.05)
-    pick(waves, "Quantity", "young")
-    settle(waves)
-    assert not control_is_seen(waves, QComboBox, "Colour")
-
-
-def control_is_seen(app, kind, name):
-    return any(w.isVisible() for w in app.window.findChildren(kind)
-               if w.accessibleName() == name)  # fmt: skip
-
-
-def test_axes_of_degeneracy_are_marked_on_the_stage_and_the_hemisphere(waves):
-    before = pictures(waves)
-    option(waves, "marks")
-    state = waves.bench.state
-    found = acoustic_axes(live.part_medium(state.specimen, state.orientation_a))
-    points = [axis for axis in found if axis.kind != "line"]
-    # A cubic crystal has them along its three four-fold and four three-fold axes at least.
-    assert len(points) >= 7
-    assert sum(m.kind == "axis" for m in pane(waves)._view.marks) == len(points)
-    marks = waves.window.views.deck.hemisphere._view.marks
-    assert sum(kind == "axis" for *_, kind in marks) == len(points)
-    assert changed(before, pictures(waves)) == {"pane A", "deck"}
-
-
-def test_polarisation_ticks_are_drawn_on_demand(waves):
-    before = pictures(waves)
-    option(waves, "ticks")
-    assert changed(before, pictures(waves)) == {"pane A", "section"}
-    option(waves, "ticks")
-    waves.window.setFocus()
-    settle(waves)
-    assert changed(before, pictures(waves)) == set()
-
-
-def test_the_options_of_waves_are_off_for_stiffness(app):
-    actions = app.window.views.toolbar._actions
-    assert not actions["ticks"].isEnabled()
-    assert not actions["marks"].isEnabled()
-    assert not control_is_seen(app, QToolButton, "Show the slowest sheet")
-    pick(app, "Quantity", "wave")
-    settle(app)
-    assert actions["ticks"].isEnabled()
-    assert control_is_seen(app, QToolButton, "Show the slowest sheet")
-
-
-def test_without_a_density_waves_are_off_and_the_rest_works(app):
-    pick(app, "Quantity", "slowness")
-    settle(app)
-    fill_in(app, "Density in kg/m³", "")
-    settle(app)
+def test_without_a_density_the_stiffness_side_goes_on(app):
+    load(app, CUBIC)
+    unfold(app, "Reading", "Waves", "Degenerate directions")
+    show(app, specimen=replace(app.bench.state.specimen, density=None), quantity="young")
     views = app.window.views
-    for side in "AB":
-        assert pane(app, side)._view.notice == NO_DENSITY
-    assert views.section._view.notice == NO_DENSITY
-    assert views.deck.hemisphere._view.notice == NO_DENSITY
-    assert any("waves are off" in fact for fact in views.verdict._view.facts)
-    assert "density" in views.pin._notice.text()
-    combo = control(app, QComboBox, "Quantity")
-    off = {combo.itemData(k) for k in range(combo.count())
-           if not combo.model().item(k).isEnabled()}  # fmt: skip
-    assert off == {key for key, entry in QUANTITIES.items() if entry.wave}
-    pick(app, "Quantity", "young")
+    assert "density" in views.waves._notes.text()
+    assert "density" in views.degenerate._notice.text()
+    assert lines(views.degenerate.table) == []
+    before = picture(views.panes["A"])
+    type_cell(app, 0, 0, "140")
     settle(app)
-    assert pane(app)._view.notice == ""
-    assert views.section._view.curves
-    assert not any("wave" in row[0] for row in lines(views.pin.table))
-    assert len(lines(views.extremes.table)) == 8
-    fill_in(app, "Density in kg/m³", "2684")
-    settle(app)
-    assert len(lines(views.extremes.table)) == 14
-
-
-@pytest.mark.parametrize("face", ["hemisphere", "sweep", "source"])
-def test_every_quantity_of_an_unstable_table_is_shown_as_far_as_it_is_defined(app, face):
-    load(app, UNSTABLE)
-    show(app, deck=face)
-    notices = {}
-    for key in QUANTITIES:
-        pick(app, "Quantity", key)
-        settle(app)
-        view = pane(app)._view
-        notices[key] = view.notice
-        values = np.concatenate([sheet.rows[6] for sheet in view.sheets])
-        assert np.isfinite(values).any()
-        assert np.isfinite([view.radius, view.scale.low, view.scale.high]).all()
-        assert (view.notice == LEFT_OUT) == bool(np.isnan(view.sheets[0].rows[0]).any()
-            or any(np.isnan(s.rows[0]).any() for s in view.sheets))  # fmt: skip
-    assert notices["slowness"] == LEFT_OUT
-    assert notices["young"] == LEFT_OUT
-    assert app.window.views.verdict._view.mark == "unstable"
-
-
-def test_the_source_picture_follows_its_time(app):
-    before = app.bench.state
-    app.window.views.deck.choices[0].setCurrentIndex(2)
-    app.window.views.deck.choices[0].activated.emit(2)
-    settle(app)
-    assert app.bench.state == replace(before, display=replace(before.display, deck="source"))
-    source = app.window.views.deck.source
-    first, seen = source._view, picture(source.canvas)
-    source.time.setFocus()
-    source.time.selectAll()
-    QTest.keyClicks(source.time, "4")
-    QTest.keyClick(source.time, Qt.Key.Key_Return)
-    assert source._view.time_us == 4.0
-    assert np.allclose(source._view.curves[0][2], 4 * first.curves[0][2])
-    assert differs(seen, picture(source.canvas))
-
-
-def test_a_row_of_the_reading_puts_its_quantity_on_the_stage(app):
-    table = app.window.views.pin.table
-    rows = [row[0] for row in lines(table)]
-    table.setFocus()
-    table.setCurrentIndex(table.lines.index(rows.index("power flow off"), 0))
-    QTest.keyClick(table, Qt.Key.Key_Return)
-    assert app.bench.state.quantity == "power_flow"
-    settle(app)
-    assert control(app, QComboBox, "Quantity").currentData() == "power_flow"
-
-
-def test_the_cutting_error_is_typed_and_refused_in_place(app):
-    name = "Cutting error δ, degrees"
-    fill_in(app, name, "2")
-    settle(app)
-    assert app.bench.state.cutting_error_deg == 2.0
-    table = app.window.views.cutting_error.table.table
-    least, greatest = (float(table.lines.copied(0, k)) for k in (2, 3))
-    for bad in ("0", "-1", "31", "much", "1e400"):
-        fill_in(app, name, bad)
-        assert app.bench.state.cutting_error_deg == 2.0
-        assert app.window.views.cutting_error.field.message
-    fill_in(app, name, "4°")
-    settle(app)
-    assert app.window.views.cutting_error.field.message == ""
-    assert float(table.lines.copied(0, 2)) <= least
-    assert float(table.lines.copied(0, 3)) >= greatest
-    assert control(app, QLineEdit, name).text() == "4"
-
-
-@pytest.mark.gl
-def test_a_moved_pin_uploads_nothing_and_a_turned_camera_touches_no_model(app):
-    pick(app, "Quantity", "slowness")
-    settle(app)
-    uploads, views = app.renderer.uploads, [p._view for p in app.window.views.panes.values()]
-    for pin in ((1.0, 0.0, 0.0), (0.0, 0.6, 0.8)):
-        app.stage.move_pin(pin)
-        settle(app)
-    assert app.renderer.uploads == uploads
-    moved = [p._view for p in app.window.views.panes.values()]
-    assert all(a is not b for a, b in zip(views, moved, strict=True))
-    drag(pane(app), (120, 120), (180, 150))
-    settle(app)
-    assert app.renderer.uploads == uploads
-    assert [p._view for p in app.window.views.panes.values()] == moved
-    fill_in(app, "Density in kg/m³", "2700")
-    settle(app)
-    assert app.renderer.uploads > uploads
+    assert differs(before, picture(views.panes["A"]), 0.01)
+    unfold(app, "Reading", "Extremes", "Cutting error", "Aggregate")

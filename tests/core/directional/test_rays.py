@@ -152,6 +152,32 @@ def test_arrivals_turn_with_the_crystal(seed):
     )
 
 
+def test_the_lid_over_a_cone_carries_no_arrival():
+    """Along 111 the axis of the cone is no ray of it: only L arrives with its normal there.
+
+    Along 100 the sheets touch, and both shear waves do, at √(C44/ρ).
+    """
+    medium = medium_of(GERMANIUM, 5323.0)
+    ray = np.ones(3) / np.sqrt(3)
+    along = [one for one in arrivals(medium, ray) if angle(one.normal, ray) < 0.01]
+    assert [one.sheet for one in along] == [0]
+    ray = np.array([0.0, 0.0, 1.0])
+    along = [one for one in arrivals(medium, ray) if angle(one.normal, ray) < 0.01]
+    assert [one.sheet for one in along] == [0, 1, 2]
+    expected = np.sqrt(66.66e3 / 5323.0)
+    assert [one.ray_speed for one in along[1:]] == pytest.approx([expected] * 2, rel=1e-9)
+
+
+@pytest.mark.parametrize("ray", [(0.3, 0.5, 0.7), (1.0, 1.0, 0.0), (0.0, 0.0, 1.0)])
+def test_sheets_that_end_somewhere_are_searched_up_to_there(ray):
+    """C11 < C12: along ⟨110⟩ one shear wave has ρv² < 0, and its sheet ends about there."""
+    medium = medium_of(cubic(56.9, 61.3, 24.1))
+    found = arrivals(medium, np.array(ray))
+    check_aim(medium, np.array(ray), found)
+    assert 0 in [one.sheet for one in found]
+    assert all(np.isfinite(one.ray_speed) for one in found)
+
+
 def test_unstable_sheets_have_no_arrivals_and_density_is_needed():
     found = arrivals(medium_of(isotropic(100.0, 0.0)), np.array([1.0, 0.0, 0.0]))
     assert [arrival.sheet for arrival in found] == [0]

@@ -163,6 +163,20 @@ def test_undefined_directions_are_nan_in_every_row():
         assert np.isfinite(block[:, :, ~undefined.any(axis=0)]).all()
 
 
+def test_a_colour_that_is_not_defined_leaves_no_hole():
+    """Along cube axes two shear waves are one: the slowness is defined, the focusing is not."""
+    medium = Medium(Stiffness.from_voigt(cubic(165.7, 63.9, 79.6)), 2330.0)
+    mesh = sphere_mesh(3)
+    block = QUANTITIES["focusing"].surface(medium, mesh)
+    on_axis = np.flatnonzero(np.abs(mesh.vertices).max(axis=0) > 1 - 1e-12)
+    assert len(on_axis) == 6
+    assert np.isfinite(block[:, :6]).all()
+    slowness = np.linalg.norm(block[1:, :3, on_axis].astype(float), axis=1)
+    assert np.allclose(slowness, np.sqrt(2.330 / 79.6), rtol=1e-6)
+    assert np.isnan(block[1:, 6, on_axis]).all()
+    assert np.isfinite(np.delete(block[:, 6], on_axis, axis=1)).all()
+
+
 def test_singular_stiffness_draws_its_waves_only():
     medium = Medium(Stiffness.from_voigt(cubic(100.0, 100.0, 50.0)), 3000.0)
     surfaces = all_surfaces(medium, sphere_mesh(3))

@@ -42,7 +42,8 @@ def test_a_bench_comes_back_from_its_file(tmp_path):
         quantity="phase",
         cutting_error_deg=1.5,
         display=Display(layout="B", sheets=(True, False, True), colour_by="focusing",
-                        sweep_about=(1.0, 0.0, 0.0), hemisphere="cost", hemisphere_sheet=2),
+                        sweep_about=(1.0, 0.0, 0.0), hemisphere="cost", hemisphere_sheet=2,
+                        source_time_us=2.5),
         unknown='{"later": {"key": 1}}',
     )  # fmt: skip
     path = tmp_path / "b.tricline"
@@ -107,6 +108,8 @@ def test_display_choices_of_a_later_version_are_left_alone():
         ({"display": {"colour_by": "young"}}, "it has not three sheets"),
         ({"display": {"colour_by": "hue"}}, "'hue' is not a quantity"),
         ({"display": {"sweep_about": [0, 0, 0]}}, "length zero"),
+        ({"display": {"source_time_us": 0}}, "A time from 0.01 to 10,000 µs was expected"),
+        ({"display": {"source_time_us": "1"}}, "A number was expected"),
     ],
 )  # fmt: skip
 def test_a_value_that_cannot_be_used_is_named(changes, words):
@@ -145,6 +148,7 @@ DISPLAY = st.builds(
     sweep_about=st.none() | UNIT,
     face=st.sampled_from(["stiffness", "compliance", "uncertainty"]),
     hemisphere_sheet=st.integers(0, 2),
+    source_time_us=st.floats(0.01, 1e4),
 )
 STATES = st.builds(
     BenchState,

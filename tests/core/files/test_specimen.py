@@ -148,7 +148,7 @@ def test_another_format_or_a_later_version(data, words):
         ({"density_kg_m3": -2684}, "“density_kg_m3”: A density is above zero, not -2684"),
         ({"density_kg_m3": "2684"}, "“density_kg_m3”: A number was expected, not '2684'"),
         ({"density_kg_m3": True}, "“density_kg_m3”: A number was expected, not True"),
-        ({"density_kg_m3": 1e9}, "No solid has 1e+09 kg/m³"),
+        ({"density_kg_m3": 1e15}, "No solid has 1e+15 kg/m³"),
         ({"density_kg_m3": 1e-15}, "No solid has 1e-15 kg/m³"),
         ({"temperature_c": -300}, "“temperature_c”: A temperature of -300 °C"),
         ({"temperature_c": False}, "“temperature_c”: A number was expected"),

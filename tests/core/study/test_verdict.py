@@ -151,3 +151,34 @@ def test_a_rotation_carries_the_covariance_like_its_samples():
     after = np.cov(np.array([upper_triangle(rotated(one, R)) for one in samples]).T)
     np.testing.assert_allclose(carried(before, lambda t: rotated(t, R)), after, atol=1e-10)
     np.testing.assert_allclose(linear_map(lambda t: 2 * t), 2 * np.eye(21))
+
+
+def test_a_sentence_about_symmetry_takes_the_place_of_the_bare_class():
+    table = cubic(131.0, 97.4, 86.2)
+    stiffness, claimed = Stiffness.from_voigt(table), crystal_class("cubic")
+    plain = judge(stiffness, claimed).facts
+    said = judge(stiffness, claimed, symmetry="cubic as entered").facts
+    assert said == plain
+    notes = judge(stiffness, claimed, symmetry="cubic as entered", notes=2).facts
+    assert notes == ("2 notes", *plain)
+
+
+def test_hidden_axes_come_before_everything_but_the_notes():
+    table = cubic(131.0, 97.4, 86.2)
+    table[0, 5] = table[5, 0] = 4.0
+    sentence = "triclinic as entered; cubic within 0.6 % once turned 12.0° about [0 0 1]"
+    facts = judge(
+        Stiffness.from_voigt(table), crystal_class("cubic"), symmetry=sentence, notes=1
+    ).facts
+    assert facts[0] == "1 note"
+    assert "% away from cubic in these axes" in facts[1]
+    assert facts[2] == sentence
+    assert facts[3].startswith("softest strain")
+
+
+def test_an_unstable_table_says_first_what_gives_way():
+    facts = judge(
+        Stiffness.from_voigt(cubic(90.0, 95.0, 40.0)), crystal_class("cubic"),
+        symmetry="isotropic; nothing", notes=0,
+    ).facts  # fmt: skip
+    assert facts[0].startswith("softest strain")

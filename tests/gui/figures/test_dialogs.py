@@ -62,8 +62,8 @@ def figure(qtbot, studio):
 
 
 def test_the_preview_has_the_figures_proportions(figure):
-    figure.width.setValue(100.0)
-    figure.height.setValue(50.0)
+    figure.width_mm.setValue(100.0)
+    figure.height_mm.setValue(50.0)
     figure.draw_preview()
     picture = figure.preview.pixmap()
     assert picture.width() == pytest.approx(2 * picture.height(), abs=2)
@@ -73,10 +73,10 @@ def test_the_preview_has_the_figures_proportions(figure):
 
 def test_column_widths_and_the_width_follow_each_other(figure):
     choose(figure.columns, "85")
-    assert figure.width.value() == 85.0
-    figure.width.setValue(114.0)
+    assert figure.width_mm.value() == 85.0
+    figure.width_mm.setValue(114.0)
     assert key_of(figure.columns) == "114"
-    figure.width.setValue(99.0)
+    figure.width_mm.setValue(99.0)
     assert key_of(figure.columns) == "own"
 
 
@@ -101,7 +101,7 @@ def test_a_change_draws_the_preview_anew_after_a_pause(qtbot, figure):
 
 def test_saving_writes_and_remembers_the_form(qtbot, figure, target, tmp_path, studio):
     choose(figure.format, "svg")
-    figure.width.setValue(77.0)
+    figure.width_mm.setValue(77.0)
     with qtbot.waitSignal(figure.saved) as told:
         figure.save_button.click()
     assert told.args == [str(tmp_path / "answer.svg")]
@@ -111,7 +111,7 @@ def test_saving_writes_and_remembers_the_form(qtbot, figure, target, tmp_path, s
     assert figure.result() == QDialog.DialogCode.Accepted
     again = FigureDialog(studio)
     qtbot.addWidget(again)
-    assert again.width.value() == 77.0
+    assert again.width_mm.value() == 77.0
     assert key_of(again.format) == "svg"
     assert studio.settings.value("folder") == str(tmp_path)
 
@@ -132,7 +132,7 @@ def test_giving_up_the_file_writes_nothing(figure, target, tmp_path):
 
 
 def test_copying_puts_the_picture_on_the_clipboard(figure):
-    figure.width.setValue(60.0)
+    figure.width_mm.setValue(60.0)
     figure.dpi.setValue(100.0)
     figure.copy_button.click()
     image = QGuiApplication.clipboard().image()
@@ -140,7 +140,7 @@ def test_copying_puts_the_picture_on_the_clipboard(figure):
 
 
 def test_what_is_too_large_is_said_and_cannot_be_saved(figure):
-    figure.width.setValue(1000.0)
+    figure.width_mm.setValue(1000.0)
     figure.dpi.setValue(1200.0)
     figure.draw_preview()
     assert "20,000 pixels" in figure.message.text()

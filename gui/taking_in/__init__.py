@@ -1,0 +1,1 @@
+"""The dialogs that take things in: foreign tables of constants, cells of CIF files."""

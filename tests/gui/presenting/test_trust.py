@@ -1,0 +1,148 @@
+"""What the trust sheet is given: words and numbers of tables whose answer is known."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from core.state import BenchState, Specimen, as_matrix
+from core.study.draws import MonteCarlo, Spread, StabilityChance
+from core.study.propagation import Contribution
+from core.task import Ticker
+from core.tensor.symmetry import CLASS_KEYS
+from gui.presenting import ledger, spread, trust
+from tests.gui.presenting.benches import CUBIC, UNSTABLE
+from tests.materials import cubic, random_rotation, rotated
+
+
+def found_for(state):
+    specimen = state.specimen
+    return trust.find((trust.trust_request(specimen), specimen), Ticker())
+
+
+TURN = random_rotation(np.random.default_rng(4))
+HIDDEN = BenchState(
+    Specimen("holder axes", as_matrix(rotated(cubic(230.0, 140.0, 120.0), TURN)), 8000.0)
+)
+
+
+def row_of(view, key):
+    return next(row for row in view.classes if row.key == key)
+
+
+def test_hidden_axes_are_the_sentence_and_the_suggestion():
+    view = trust.trust_view(HIDDEN, found_for(HIDDEN))
+    assert view.sentence.startswith("Triclinic as entered; cubic once turned ")
+    assert view.suggested == "cubic"
+    assert [row.key for row in view.classes] == list(CLASS_KEYS)
+    row = row_of(view, "cubic")
+    assert row.cells[2] != "exact"
+    assert row.cells[3] == "exact"
+    assert row.can_turn
+    assert row.can_exact
+    assert not row_of(view, "triclinic").can_turn
+    assert "fits" in row.cells[-1]
+    assert "claimed" in row_of(view, "triclinic").cells[-1]
+
+
+def test_a_class_as_entered_has_nothing_to_turn_or_to_mend():
+    view = trust.trust_view(CUBIC, found_for(CUBIC))
+    assert view.sentence == "Cubic as entered."
+    row = row_of(view, "cubic")
+    assert row.cells[2:5] == ("exact", "exact", "–")
+    assert not row.can_turn
+    assert not row.can_exact
+    assert row_of(view, "isotropic").can_exact
+
+
+def test_the_band_says_the_sentence_and_counts_the_notes():
+    findings = found_for(HIDDEN)
+    facts = ledger.verdict_view(HIDDEN.specimen, findings).facts
+    assert findings.symmetry.sentence in facts
+    no_density = replace(HIDDEN, specimen=replace(HIDDEN.specimen, density=None))
+    facts = ledger.verdict_view(no_density.specimen, found_for(no_density)).facts
+    assert facts[0] == "1 note"
+
+
+def test_while_it_is_searched_the_old_rows_stay_and_nothing_is_claimed():
+    view = trust.trust_view(HIDDEN, found_for(CUBIC), pending=True)
+    assert view.pending
+    assert view.sentence == trust.FINDING
+    assert len(view.classes) == len(CLASS_KEYS)
+    assert (view.notes, view.support, view.chance) == ((), "", "")
+    first = trust.trust_view(HIDDEN, None)
+    assert first.pending
+    assert first.classes == ()
+
+
+def test_criteria_hold_or_fail_with_their_numbers():
+    # C11 − C12 = 60, C11 + 2 C12 = 180, C44 = −5 (Born's criteria for cubic crystals).
+    view = trust.trust_view(UNSTABLE, found_for(UNSTABLE))
+    assert [(row[0], row[2]) for row in view.criteria.rows] == [
+        ("● holds", "60.0"), ("● holds", "180"), ("■ fails", "−5.00"),
+    ]  # fmt: skip
+
+
+def test_shares_add_up_to_all_of_the_anisotropy():
+    view = trust.trust_view(HIDDEN, found_for(HIDDEN))
+    shares = [float(row[1]) for row in view.shares.full]
+    assert sum(shares) == pytest.approx(100.0, abs=1e-6)
+    whole = trust.trust_view(CUBIC, found_for(CUBIC)).shares
+    assert [row[:2] for row in whole.rows] == [("cubic part", "100 %")]
+
+
+# ------------------------------------------------------------------ uncertainties
+def uncertain(state, sigma):
+    table = as_matrix(sigma * (np.array(state.specimen.stiffness) != 0))
+    return replace(state, specimen=replace(state.specimen, stiffness_std=table))
+
+
+def test_the_data_support_the_constants_of_the_class():
+    view = trust.trust_view(uncertain(CUBIC, 0.5), found_for(uncertain(CUBIC, 0.5)))
+    assert "support 3 constants: cubic" in view.support
+    assert "supported" in row_of(view, "cubic").cells[-1]
+    assert view.chance == "Stable in all of 4,000 draws from the uncertainties."
+
+
+def test_the_pin_says_what_to_measure_better():
+    state = replace(uncertain(CUBIC, 0.5), pin=(0.0, 0.0, 1.0))
+    found = spread.spread_at_pin(spread.pin_request(state), Ticker())
+    view = trust.trust_view(state, found_for(state), found)
+    rows = {row[0]: row for row in view.pin.rows}
+    # Along [001]: ρv² is C11 for the longitudinal wave and C44 for both shear waves.
+    assert rows["fastest v, km/s"][3] == "C11 100 %"
+    assert rows["slowest v, km/s"][3] == "C44 100 %"
+    # δv = δC11 / (2 ρ v) with v = √(230e9/8000) m/s.
+    v = np.sqrt(230e9 / 8000)
+    assert rows["fastest v, km/s"][1] == f"{0.5e9 / (2 * 8000 * v) / 1e3:.2g}"
+
+
+def test_without_uncertainties_the_pin_says_where_to_enter_them():
+    assert "± face" in trust.trust_view(CUBIC, found_for(CUBIC)).pin.notice
+
+
+def test_draws_over_all_directions_are_compared():
+    state = uncertain(CUBIC, 0.5)
+    asked = trust.trust_request(state.specimen)
+    drawn = trust.draw_everywhere((asked, state.specimen), Ticker())
+    assert trust.draws_text(drawn).startswith("1,000 draws agree")
+    soft = replace(CUBIC.specimen, stiffness=as_matrix(cubic(100.0, 96.0, 50.0)))
+    large = uncertain(replace(CUBIC, specimen=soft), 4.0)
+    asked = trust.trust_request(large.specimen)
+    drawn = trust.draw_everywhere((asked, large.specimen), Ticker())
+    assert "more than 20 %" in trust.draws_text(drawn)
+    assert "unstable and left out" in trust.draws_text(drawn)
+    assert trust.draw_everywhere((asked, CUBIC.specimen), Ticker()) is None
+
+
+def test_words_for_chances_and_shares():
+    some = StabilityChance(0.973, 0.0026, 4000, 0.981)
+    text = trust.chance_text(some)
+    assert "97.30 ± 0.26 %" in text
+    assert "98.1 % by the normal law" in text
+    assert "none of" in trust.chance_text(StabilityChance(0.0, 0.001, 4000, 0.0))
+    shares = (Contribution("C44", 0.612), Contribution("C11", 0.2), Contribution("C12", 0.01))
+    assert trust.shares_text(shares) == "C44 61 %, C11 20 %"
+    mean = np.ones((1, 2))
+    drawn = MonteCarlo({"young": Spread(mean, 0.2 * mean, linear=0.1 * mean)}, 1000, 990)
+    assert "in 100 % of all directions for E" in trust.draws_text(drawn)
