@@ -164,7 +164,7 @@ class Commands:
         )
 
     def _view_menu(self) -> tuple[Entry, ...]:
-        look, theme = self.cameras.look_from, self.dressing
+        look = self.cameras.look_from
         layouts = tuple(
             Entry(
                 words,
@@ -191,19 +191,26 @@ class Commands:
             *looks,
             Entry("&First view", partial(look, "home"), "Home"),
             LINE,
-            Entry(
-                "&Light theme",
-                partial(theme.choose, "light"),
-                group="theme",
-                is_on=partial(theme.is_chosen, "light"),
-            ),
-            Entry(
-                "&Night theme",
-                partial(theme.choose, "night"),
-                group="theme",
-                is_on=partial(theme.is_chosen, "night"),
-            ),
+            *self._theme_entries(),
             LINE,
+            *self._panel_entries(),
+        )
+
+    def _theme_entries(self) -> tuple[Entry, ...]:
+        """Return one line a theme."""
+        return tuple(
+            Entry(
+                words,
+                partial(self.dressing.choose, name),
+                group="theme",
+                is_on=partial(self.dressing.is_chosen, name),
+            )
+            for words, name in (("&Light theme", "light"), ("&Night theme", "night"))
+        )
+
+    def _panel_entries(self) -> tuple[Entry, ...]:
+        """Return the lines that show and hide parts of the window."""
+        return (
             Entry(
                 "Can this table be &trusted?",
                 self.window.toggle_sheet,

@@ -156,7 +156,8 @@ class LedgerIntents(Intents):
 
         def build(state: BenchState) -> BenchState:
             specimen = edits.set_block(self.specimen, face, row, column, text)
-            self.said.emit(" ".join(edits.paste_guesses(face, text)))
+            guesses = edits.paste_guesses(face, text)
+            self.said.emit("; ".join(guess.partition(":")[0] for guess in guesses))
             return with_specimen(state, specimen)
 
         self.attempt(

@@ -9,7 +9,8 @@ import numpy as np
 
 from core import live
 from core.arrays import BoolArray, FloatArray, IntArray
-from core.crystal.directions import parse_direction
+from core.crystal.cell import CrystalFrame
+from core.crystal.directions import nearest_indices, parse_direction
 from core.directional.projection import to_disc
 from core.directional.sphere import plane_axes, sphere_mesh
 from core.measured import understand
@@ -165,24 +166,42 @@ def _axis_label(vector: FloatArray) -> str:
     for name, axis in zip("xyz", np.eye(3), strict=True):
         if abs(vector @ axis) > 1 - 1e-9:
             return name if vector @ axis > 0 else f"−{name}"
-    return " ".join(significant(round(float(x), 2), 2) for x in vector)
+    return _short(vector)
+
+
+def _short(vector: FloatArray) -> str:
+    """Return components to a tenth, so that a rim keeps its room."""
+    tenths = (f"{x:.1f}".removesuffix(".0") for x in (np.round(vector, 1) + 0.0).tolist())
+    return " ".join(tenths).replace("-", "−")
 
 
 def plane_choices(speeds: MeasuredSpeeds, normal: Vector3) -> tuple[tuple[str, str], ...]:
     """Return the planes to choose from, the present one among them."""
     choices = [(key, words) for key, words, _ in planes_of(speeds)]
     if all(vector != normal for *_, vector in planes_of(speeds)):
-        choices.append(("other", "  ".join(significant(round(x, 3), 3) for x in normal)))
+        choices.append(("other", f"across {_normal_words(normal, speeds.frame)}"))
     return tuple(choices)
 
 
 def planes_of(speeds: MeasuredSpeeds) -> tuple[tuple[str, str, Vector3], ...]:
     """Return key, words and normal of the planes of the axes and those with most readings."""
-    return _planes(understand(speeds).readings)
+    return _planes(understand(speeds).readings, speeds.frame)
+
+
+def _normal_words(normal: Vector3, frame: CrystalFrame) -> str:
+    """Return the normal of a plane by the indices it is within a degree of, or components."""
+    if frame.has_basis:
+        near = [nearest_indices(normal, frame, largest=3, plane=kind) for kind in (False, True)]
+        best = min(near, key=lambda each: each.angle_deg)
+        if best.angle_deg < _IN_PLANE_DEG:
+            return best.text.replace("-", "−")
+    return "  ".join(significant(round(x, 2), 2) for x in normal)
 
 
 @lru_cache(maxsize=4)
-def _planes(readings: tuple[Reading, ...]) -> tuple[tuple[str, str, Vector3], ...]:
+def _planes(
+    readings: tuple[Reading, ...], frame: CrystalFrame
+) -> tuple[tuple[str, str, Vector3], ...]:
     vectors = list(dict.fromkeys(reading.direction for reading in readings))
     every = np.array([reading.direction for reading in readings]).reshape(-1, 3)
     limit = np.sin(np.radians(_IN_PLANE_DEG))
@@ -199,9 +218,10 @@ def _planes(readings: tuple[Reading, ...]) -> tuple[tuple[str, str, Vector3], ..
             break
         if np.abs(known @ normals[place]).max() < np.cos(np.radians(_IN_PLANE_DEG)):
             known = np.vstack([known, normals[place]])
-            normal = unit_vector(normals[place])
-            words = " ".join(significant(round(x, 2), 2) for x in normal)
-            planes.append((f"P{len(planes)}", f"normal {words}", normal))
+            largest = normals[place][np.abs(normals[place]).argmax()]
+            normal = unit_vector(normals[place] * np.sign(largest) + 0.0)
+            words = f"across {_normal_words(normal, frame)}"
+            planes.append((f"P{len(planes)}", words, normal))
     return tuple(
         (key, f"{words}, {_lying(every, normal, limit)} readings", normal)
         for key, words, normal in planes

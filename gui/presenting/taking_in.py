@@ -11,7 +11,7 @@ from core.files.cif import CifCell
 from core.files.matrices import FIELDS, Understood, understand
 from core.files.table_guess import Guess
 from core.files.table_readings import AS_LISTED
-from core.numbers import bracketed, significant
+from core.numbers import significant
 from core.state import Specimen
 from core.study.symmetry_verdict import SymmetryVerdict
 from core.table_edits import Claim, simplest_claim, with_table
@@ -271,4 +271,12 @@ def cell_file_view(specimen: Specimen, found: CifCell, name: str, axes: str) -> 
 
 
 def _measured(value: float, spread: float) -> str:
-    return bracketed(value, spread) if spread > 0 else f"{value:.10g}"
+    """Return a number with its uncertainty as the file writes it: 4.9134(2)."""
+    if not spread > 0:
+        return f"{value:.10g}"
+    places = next((d for d in range(10) if _is_whole(spread * 10**d)), 10)
+    return f"{value:.{places}f}({round(spread * 10**places)})"
+
+
+def _is_whole(number: float) -> bool:
+    return abs(number - round(number)) < 1e-6

@@ -171,8 +171,8 @@ def _class_row(
         if holds
     ]
     turn = f"{axes.turn_deg:.2f}°" if is_better else "–"
-    if is_better and axes.axis_uncertainty_deg is not None:
-        turn = f"{axes.turn_deg:.1f} ± {significant(axes.axis_uncertainty_deg, 1)}°"
+    if is_better and (axes.axis_uncertainty_deg or 0.0) > _SEEN_TURN:
+        turn = f"{axes.turn_deg:.1f} ± {significant(axes.axis_uncertainty_deg or 0.0, 1)}°"
     cells = (
         cls.name.split(",")[0] + about,
         str(len(cls.independent)),
@@ -211,14 +211,20 @@ def percent_text(percent: float) -> str:
 def _support_text(supports: tuple[Support, ...]) -> str:
     if not supports:
         return ""
-    best, others = supports[0], supports[1:]
-    near = [s for s in others if s.criterion - best.criterion < _TENABLE]
+    best = supports[0]
+    chi2 = significant(best.chi2 if best.chi2 > _EXACT else 0.0, 3)
     words = (
         f"Within the uncertainties the data support {best.constants} constants: "
-        f"{_name(best.class_key)}, χ² {significant(best.chi2, 3)} (Schwarz's criterion)."
+        f"{_name(best.class_key)}, χ² {chi2} (Schwarz's criterion)."
     )
-    if near:
-        words += f" Hardly worse: {', '.join(_name(s.class_key) for s in near)}."
+    simpler = [
+        _name(support.class_key)
+        for support in supports[1:]
+        if support.constants < best.constants
+        and support.criterion - best.criterion < _TENABLE
+    ]
+    if simpler:
+        words += f" Fewer are not ruled out: {', '.join(simpler)}."
     return words
 
 

@@ -44,7 +44,7 @@ from gui.theme import Theme
 
 Index = QModelIndex | QPersistentModelIndex
 ROW_HEIGHT = 23
-PADDING = 5  # left and right of a text, pixels
+PADDING = 4  # left and right of a text, pixels
 _DIMMED = 0.45
 _NOWHERE = QModelIndex()
 
@@ -320,7 +320,7 @@ class ReadingsTable(QTableView):
         metrics = QFontMetrics(font)
         widths = [
             max(metrics.horizontalAdvance(column.sample) + 2 * PADDING + 3,
-                metrics.horizontalAdvance(column.title) + 14)
+                metrics.horizontalAdvance(column.title) + 12)
             for column in view.columns
         ]  # fmt: skip
         header = self.verticalHeader()

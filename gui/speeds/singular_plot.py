@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QFontMetricsF, QPainter, QPen
+from PySide6.QtGui import QBrush, QFontMetricsF, QPainter, QPen
 
 from gui.plots.frame import PlotFrame
 from gui.plots.grid import number_text
@@ -121,7 +121,7 @@ def _draw_bars(
         painter.fillRect(box, theme.colour("a") if is_seen else theme.colour("doubt", 0.16))
         if not is_seen:
             painter.setPen(QPen(colour, 1.2 * scale))
-            painter.setBrush(Qt.BrushStyle.BDiagPattern)
+            painter.setBrush(QBrush(colour, Qt.BrushStyle.BDiagPattern))
             painter.drawRect(box)
         painter.setPen(theme.colour("secondary"))
         if wide or number % 5 == 0:

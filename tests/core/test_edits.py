@@ -10,6 +10,7 @@ from core.crystal.cell import UnitCell
 from core.edits import (
     cell_name,
     fits_class,
+    is_open_table,
     make_exact,
     paste_guesses,
     rule_text,
@@ -459,3 +460,17 @@ def test_axes_that_cannot_be_laid_are_refused():
     assert set_axes(LOW, "x||a, z||c*", False).crystal_axes == "x||a, z||c*"
     assert "two statements" in refusal(set_axes, FELDSPAR, "sideways", False)
     assert "parallel" in refusal(set_axes, FELDSPAR, "x||a, z||[2 0 0]", False)
+
+
+@pytest.mark.parametrize(
+    ("text", "is_open"),
+    [
+        ("GPa\n" + "\n".join(" ".join(["1.0"] * 6) for _ in range(6)), False),
+        ("100 20\n20 90", False),  # a block, not a table
+        ("C11 = 131 GPa, C12 = 97.4, C12 = 98.0, C44 = 86.2", False),  # refused, not asked
+        ("\n".join(" ".join(map(str, row)) for row in np.arange(36).reshape(6, 6)), True),
+    ],
+)
+def test_only_a_whole_table_with_a_question_is_asked_about(text, is_open):
+    assert is_open_table("stiffness", text) is is_open
+    assert not is_open_table("compliance", text)

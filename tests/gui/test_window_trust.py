@@ -140,9 +140,10 @@ def test_the_part_stays_when_the_axes_are_turned(app):
     form.edited.emit("text", choice)
     settle(app)
     app.window.show_sheet(True)
-    before = full(app.window.views.pin.table, "Young's modulus")
+    pin = app.window.views.pin.table
+    before = full(pin, "Young's modulus")
     press(app, "turn")
-    assert full(app.window.views.pin.table, "Young's modulus") == pytest.approx(before, rel=1e-9)
+    assert full(pin, "Young's modulus") == pytest.approx(before, rel=1e-9)
 
 
 def test_an_edit_is_followed_by_new_findings(app):

@@ -332,20 +332,25 @@ def plan(
     typical = mean_stiffness(basis, constants)
     loose = _prior(basis, typical)
     chosen: list[int] = []
+    fewest = _fewest(basis.size, len(sheets))
     for size in range(1, min(_MOST_BLANKS, vectors.shape[1]) + 1):
         chosen = _grown(rows, chosen, loose)
-        if size < _fewest(basis.size, len(sheets)):
+        if size < fewest:
             continue
         chosen = _exchanged(rows, chosen, loose)
         seen = _spectrum(rows[chosen], speed[chosen], basis, typical)
         if not _sees_all(seen, basis.size):
             continue
-        information = np.einsum("ksp,ksq->pq", rows[chosen], rows[chosen])
-        std = np.sqrt(np.diag(np.linalg.inv(information)))
+        std = _expected_std(rows[chosen])
         if largest_std is None or std.max() <= largest_std:
-            directions_found = read_only(vectors[:, chosen])
-            return Plan(directions_found, std, basis.names, seen.rank, relative_sigma)
+            return Plan(read_only(vectors[:, chosen]), std, basis.names, seen.rank, relative_sigma)
     return None
+
+
+def _expected_std(rows: FloatArray) -> FloatArray:
+    """Return the standard uncertainties, GPa, that weighted rows (blank, sheet, constant) give."""
+    information = np.einsum("ksp,ksq->pq", rows, rows)
+    return np.asarray(np.sqrt(np.diag(np.linalg.inv(information))))
 
 
 def _fewest(constants: int, sheets: int) -> int:

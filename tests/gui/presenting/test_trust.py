@@ -146,3 +146,13 @@ def test_words_for_chances_and_shares():
     mean = np.ones((1, 2))
     drawn = MonteCarlo({"young": Spread(mean, 0.2 * mean, linear=0.1 * mean)}, 1000, 990)
     assert "in 100 % of all directions for E" in trust.draws_text(drawn)
+
+
+def test_fewer_constants_that_noise_does_not_rule_out_are_said():
+    # C44 = 46 ± 1 and (C11 − C12)/2 = 45 ± 0.7: cubic by the numbers, isotropic as far as known.
+    near = replace(CUBIC.specimen, stiffness=as_matrix(cubic(230.0, 140.0, 46.0)))
+    state = uncertain(replace(CUBIC, specimen=near), 1.0)
+    view = trust.trust_view(state, found_for(state))
+    assert "support 2 constants: isotropic" in view.support
+    apart = uncertain(CUBIC, 0.5)
+    assert "not ruled out" not in trust.trust_view(apart, found_for(apart)).support

@@ -84,7 +84,7 @@ def test_the_suggested_class_is_chosen_and_its_actions_ask(sheet, qtbot):
     assert offered(sheet) == {"turn", "both", "exact"}
     for action in ("turn", "both", "exact"):
         qtbot.mouseClick(sheet.classes.buttons[action], Qt.MouseButton.LeftButton)
-    assert asked == [("turn", "orthorhombic"), ("both", "orthorhombic"), ("exact", "orthorhombic")]
+    assert asked == [(action, "orthorhombic") for action in ("turn", "both", "exact")]
 
 
 def test_another_class_is_chosen_with_the_arrows(sheet, qtbot):
