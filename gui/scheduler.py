@@ -145,7 +145,7 @@ class Scheduler(QObject):
         self._patience.stop()
         superseded = stop.is_set() or job.kind in self._waiting
         if self._waiting:
-            self._gap.start()
+            self._start_next()
         else:
             self.idle.emit()
         if superseded or isinstance(error, Cancelled):

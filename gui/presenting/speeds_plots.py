@@ -103,7 +103,7 @@ def section_view(state: BenchState, speeds: MeasuredSpeeds, found: Found) -> Spe
     """Return the fitted phase speeds round a plane with the readings that lie in it."""
     normal = state.display.speeds_plane
     across, up = plane_axes(np.array(normal))
-    choices = plane_choices(speeds, normal)
+    labels, axes = _axes_words(across, up)
     fit = found.fit
     curves: tuple[Curve, ...] = ()
     points: tuple[SectionPoint, ...] = ()
@@ -125,19 +125,19 @@ def section_view(state: BenchState, speeds: MeasuredSpeeds, found: Found) -> Spe
         curves=curves,
         radius=radius,
         rings=tuple(zip(ticks, tick_texts(ticks), strict=True)),
-        axis_labels=(_axis_label(across), _axis_label(up)),
+        axis_labels=labels,
         unit="km/s",
         pin_angle=None,
-        notice=_section_note(count, fit) if curves else _why_empty(found),
+        notice=f"{_section_note(count, fit)}{axes}" if curves else _why_empty(found),
         plane=next((key for key, _, vector in planes_of(speeds) if vector == normal), "other"),
-        planes=choices,
+        planes=plane_choices(speeds, normal),
     )
     return SpeedsSectionView(section, points, "", found.pending)
 
 
 def _section_note(count: int, fit: Fit | None) -> str:
     total = 0 if fit is None else len(fit.readings)
-    return f"{count} of {total} readings lie in this plane, within {_IN_PLANE_DEG:g}°"
+    return f"{count} of {total} readings within {_IN_PLANE_DEG:g}° of it"
 
 
 def _points_in_plane(
@@ -161,16 +161,22 @@ def _points_in_plane(
     return tuple(points)
 
 
-def _axis_label(vector: FloatArray) -> str:
-    """Return "x" for a crystal axis, or the components of another direction."""
-    for name, axis in zip("xyz", np.eye(3), strict=True):
-        if abs(vector @ axis) > 1 - 1e-9:
-            return name if vector @ axis > 0 else f"−{name}"
-    return _short(vector)
+def _axes_words(across: FloatArray, up: FloatArray) -> tuple[tuple[str, str], str]:
+    """Return labels of the two axes of a plane, and what they stand for where that is wanted.
+
+    Crystal axes are called by their letters; any others p and q.
+    """
+    labels, said = [], ""
+    for letter, vector in (("p", across), ("q", up)):
+        named = [name for name, axis in zip("xyz", np.eye(3), strict=True)
+                 if vector @ axis > 1 - 1e-9]  # fmt: skip
+        labels.append(named[0] if named else letter)
+        said += "" if named else f" · {letter} = {_short(vector)}"
+    return (labels[0], labels[1]), said
 
 
 def _short(vector: FloatArray) -> str:
-    """Return components to a tenth, so that a rim keeps its room."""
+    """Return components to a tenth, for a line with little room."""
     tenths = (f"{x:.1f}".removesuffix(".0") for x in (np.round(vector, 1) + 0.0).tolist())
     return " ".join(tenths).replace("-", "−")
 
@@ -223,7 +229,7 @@ def _planes(
             words = f"across {_normal_words(normal, frame)}"
             planes.append((f"P{len(planes)}", words, normal))
     return tuple(
-        (key, f"{words}, {_lying(every, normal, limit)} readings", normal)
+        (key, f"{words} ({_lying(every, normal, limit)})", normal)
         for key, words, normal in planes
     )
 

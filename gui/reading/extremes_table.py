@@ -7,7 +7,7 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from gui.forms import label, set_or_hide
 from gui.reading.link_table import GO, GoLink, Link, LinkTable
-from gui.reading.text_table import Column, Line
+from gui.text_table import Column, Line
 from gui.viewdata import ExtremeRow, ExtremesView
 
 COLUMNS = (

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QPushButton
 
-from gui.reading.text_table import Column, Line, TextTable
+from gui.text_table import Column, Line, TextTable
 from gui.viewdata import Vector3
 
 GO = "go"

@@ -6,7 +6,7 @@ from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
 
 from gui.forms import ElidedLabel, TextField, label, set_or_hide
-from gui.reading.text_table import Column, Line, TextTable
+from gui.text_table import Column, Line, TextTable
 from gui.viewdata import ReadingRow, ReadingView
 
 BOTH = (

@@ -7,7 +7,7 @@ import re
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from gui.forms import label, plain_number, set_or_hide
-from gui.reading.text_table import Column, ColumnKind, Line, TextTable
+from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import TableView
 
 SIDES = {"A": "a", "B": "b"}

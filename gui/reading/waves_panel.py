@@ -9,7 +9,7 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 from gui.forms import label, set_or_hide
 from gui.panel import Expander
 from gui.reading.link_table import GO, GoLink, Link, LinkTable
-from gui.reading.text_table import Column, ColumnKind, Line, TextTable
+from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import LinkedView, WaveRow, WavesView
 
 COLUMNS = (

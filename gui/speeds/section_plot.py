@@ -71,8 +71,8 @@ class SpeedsSection(PlotFrame):
         self.plane = PlaneCombo(self)
         self.plane.setAccessibleName("Plane of the fitted speeds")
         self.plane.setToolTip(
-            "Plane of the section, crystal axes: choose one, or type its normal, for example"
-            " [1 1 0] or (1 0 2)"
+            "Plane of the section, crystal axes, with the number of readings in it: choose one,"
+            " or type its normal, for example [1 1 0] or (1 0 2)"
         )
         self.header.addWidget(self.plane)
         self.plane.chosen.connect(self.plane_chosen)
@@ -84,7 +84,7 @@ class SpeedsSection(PlotFrame):
         self.title.set_whole(view.section.title)
         self.plane.show_plane(view.section.plane, view.section.planes)
         line = self.plane.lineEdit()
-        if not line.hasFocus():
+        if line is not None and not line.hasFocus():
             line.setCursorPosition(0)
         if not self.plane.is_wrong():
             self.set_message("")

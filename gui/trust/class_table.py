@@ -6,7 +6,7 @@ from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QAbstractItemView, QHBoxLayout, QPushButton, QVBoxLayout, QWidget
 
 from gui.forms import label, set_or_hide
-from gui.reading.text_table import Column, ColumnKind, Index, Line, TextTable
+from gui.text_table import Column, ColumnKind, Index, Line, TextTable
 from gui.viewdata import ClassRow, TrustView
 
 KINDS: tuple[ColumnKind, ...] = (

@@ -5,7 +5,7 @@ from __future__ import annotations
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from gui.forms import label, set_or_hide
-from gui.reading.text_table import Column, ColumnKind, Line, TextTable
+from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import TableView
 
 

@@ -343,12 +343,13 @@ def plan(
             continue
         std = _expected_std(rows[chosen])
         if largest_std is None or std.max() <= largest_std:
-            return Plan(read_only(vectors[:, chosen]), std, basis.names, seen.rank, relative_sigma)
+            found = read_only(vectors[:, chosen])
+            return Plan(found, std, basis.names, seen.rank, relative_sigma)
     return None
 
 
 def _expected_std(rows: FloatArray) -> FloatArray:
-    """Return the standard uncertainties, GPa, that weighted rows (blank, sheet, constant) give."""
+    """Return the uncertainties, GPa, that weighted rows (blank, sheet, constant) give."""
     information = np.einsum("ksp,ksq->pq", rows, rows)
     return np.asarray(np.sqrt(np.diag(np.linalg.inv(information))))
 

@@ -186,19 +186,29 @@ def test_the_section_has_the_exact_speeds_and_the_readings_that_lie_in_it(found)
                                                             14, 15]  # fmt: skip
     first = next(point for point in view.points if point.row == 1)
     assert (first.x, first.y) == pytest.approx((SPEEDS[0, 0] / 1e3, 0.0), abs=1e-6)
-    assert view.section.notice.startswith("12 of 33 readings lie in this plane")
+    assert view.section.notice.startswith("12 of 33 readings within 1°")
 
 
 def test_planes_with_most_readings_are_offered():
     choices = dict(plots.plane_choices(readings(), (0.0, 0.0, 1.0)))
-    assert choices["XY"] == "xy, 12 readings"
+    assert choices["XY"] == "xy (12)"
     normals = {key: normal for key, _, normal in plots.planes_of(readings())}
     # (1 1 1), (1 1 0), [0 0 1] and more lie in the plane across (1 -1 0).
     assert any(abs(np.dot(n, (0.5**0.5, -(0.5**0.5), 0.0))) > 0.9999 for n in normals.values())
     assert plots.plane_normal(readings(), "XZ") == (0.0, 1.0, 0.0)
     assert plots.plane_normal(readings(), "0 3 4") == pytest.approx((0.0, 0.6, 0.8))
     other = plots.plane_choices(readings(), (0.6, 0.0, 0.8))
-    assert other[-1][0] == "other"
+    assert other[-1] == ("other", "across 0.60  0  0.80")
+
+
+def test_axes_off_those_of_the_crystal_are_explained(found):
+    plain = plots.section_view(STATE, readings(), found).section
+    assert plain.axis_labels == ("x", "y")
+    assert " = " not in plain.notice
+    tilted = replace(STATE, display=Display(speeds_plane=(0.6, 0.0, 0.8)))
+    section = plots.section_view(tilted, readings(), found).section
+    assert "p" in section.axis_labels
+    assert "p = 0.8 0 −0.6" in section.notice
 
 
 def test_the_spectrum_is_the_uncertainty_of_combinations(found):

@@ -8,7 +8,7 @@ from PySide6.QtGui import QColor, QFontMetrics, QGuiApplication
 from PySide6.QtWidgets import QApplication
 
 from gui.reading.pin_table import PinTable
-from gui.reading.text_table import PADDING, shorten
+from gui.text_table import PADDING, shorten
 from gui.theme import LIGHT, NIGHT, palette
 from gui.viewdata import ReadingRow, ReadingView
 
