@@ -16,7 +16,7 @@ from core import limits
 from core.arrays import FloatArray
 from core.crystal.cell import CrystalFrame
 from core.errors import InputError
-from core.files.speed_cells import Fault, direction_vector, read_row, uses_indices
+from core.files.speed_cells import Fault, read_row, uses_indices
 from core.files.speeds import SpeedTable, speeds_text
 from core.numbers import full_precision, parse_number
 from core.state import SPEED_COLUMNS, MeasuredSpeeds, Specimen, Vector3, as_matrix
@@ -449,17 +449,3 @@ def to_table(speeds: MeasuredSpeeds) -> SpeedTable:
         crystal_axes=None if speeds.cell is None else speeds.crystal_axes,
         comments=(*speeds.comments, *plans),
     )
-
-
-def direction_text(vector: Vector3) -> str:
-    """Return a direction as components that read back to it."""
-    return " ".join(full_precision(round(component, 6)) for component in vector)
-
-
-def reads_as_direction(text: str, frame: CrystalFrame) -> bool:
-    """Tell whether a text is a direction in a frame."""
-    try:
-        direction_vector(text, frame)
-    except InputError:
-        return False
-    return True

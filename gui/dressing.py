@@ -37,6 +37,5 @@ class Dressing:
 def dress(application: QApplication, theme: Theme) -> None:
     """Give the application the palette and the style sheet of a theme."""
     application.setPalette(palette(theme))
-    arrow = resources.files("assets") / f"arrow_{theme.name}.svg"
-    with resources.as_file(arrow) as path:
-        application.setStyleSheet(style_sheet(theme, path.as_posix()))
+    with resources.as_file(resources.files("assets")) as folder:
+        application.setStyleSheet(style_sheet(theme, folder.as_posix()))

@@ -207,6 +207,11 @@ QPushButton[role="face"]:focus {{ border-bottom: 2px dotted {a}; }}
 QAbstractSpinBox::up-button, QAbstractSpinBox::down-button {{ width: 0; border: none; }}
 QCheckBox {{ background: transparent; spacing: 5px; }}
 QCheckBox:focus {{ color: {a}; }}
+QCheckBox::indicator {{ width: 13px; height: 13px; border: 1px solid {faint};
+    border-radius: 3px; background: {field}; }}
+QCheckBox::indicator:hover {{ border: 1px solid {a}; }}
+QCheckBox::indicator:checked {{ background: {a}; border: 1px solid {a}; image: url({tick}); }}
+QCheckBox::indicator:disabled {{ border: 1px solid {hairline}; background: {background}; }}
 QTableView {{ background: {panel}; gridline-color: {hairline}; border: 1px solid {hairline};
     selection-background-color: {hover}; selection-color: {ink}; }}
 QHeaderView::section {{ background: {panel}; color: {secondary}; border: none;
@@ -229,7 +234,8 @@ QProgressBar::chunk {{ background: {a}; }}
 """
 
 
-def style_sheet(theme: Theme, arrow: str) -> str:
-    """Return the application's style sheet; `arrow` is the file of the combo box arrow."""
+def style_sheet(theme: Theme, folder: str) -> str:
+    """Return the application's style sheet; `folder` holds the arrows and ticks of controls."""
     roles = {name: getattr(theme, name) for name in Theme.__dataclass_fields__}
-    return _STYLE_SHEET.format(arrow=arrow, **roles)
+    pictures = {part: f"{folder}/{part}_{theme.name}.svg" for part in ("arrow", "tick")}
+    return _STYLE_SHEET.format(**pictures, **roles)

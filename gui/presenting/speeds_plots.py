@@ -132,7 +132,7 @@ def section_view(state: BenchState, speeds: MeasuredSpeeds, found: Found) -> Spe
         plane=next((key for key, _, vector in planes_of(speeds) if vector == normal), "other"),
         planes=plane_choices(speeds, normal),
     )
-    return SpeedsSectionView(section, points, "", found.pending)
+    return SpeedsSectionView(section, points, found.pending)
 
 
 def _section_note(count: int, fit: Fit | None) -> str:

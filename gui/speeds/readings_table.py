@@ -39,13 +39,13 @@ from PySide6.QtWidgets import (
 
 from gui.forms import claims, current_theme, plain_number, put_on_clipboard, tab_separated
 from gui.ledger.constants_cells import CellDelegate
+from gui.speeds.marks import DIMMED
 from gui.speeds.viewdata import SpeedsTableView
 from gui.theme import Theme
 
 Index = QModelIndex | QPersistentModelIndex
 ROW_HEIGHT = 23
 PADDING = 4  # left and right of a text, pixels
-_DIMMED = 0.45
 _NOWHERE = QModelIndex()
 
 
@@ -210,7 +210,7 @@ def _cell_pen(model: ReadingsModel, row: int, column: int, theme: Theme) -> QPen
         return QPen(theme.colour("faint"))
     if not is_typed:
         pending = model.view is not None and model.view.pending
-        return QPen(theme.colour("secondary", _DIMMED if pending else 1.0))
+        return QPen(theme.colour("secondary", DIMMED if pending else 1.0))
     return QPen(theme.colour("secondary" if mark == "planned" else "ink"))
 
 

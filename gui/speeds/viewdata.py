@@ -130,7 +130,6 @@ class SpeedsSectionView:
 
     section: SectionView
     points: tuple[SectionPoint, ...]
-    note: str
     pending: bool = False
 
 
@@ -187,12 +186,3 @@ class PlanView:
     found: tuple[str, ...] = ()  # sentences
     can_place: bool = False
     notice: str = ""
-
-
-@dataclass(frozen=True)
-class SpeedsPlotsView:
-    """Which plot of a fit is seen, and its choice of planes."""
-
-    shown: str
-    plane: str = "XY"
-    planes: tuple[tuple[str, str], ...] = ()

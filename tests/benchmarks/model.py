@@ -129,6 +129,11 @@ def search_lines(mesh: SphereMesh) -> Iterator[Line]:
     )
 
 
+def no_axes(state, side):
+    """As while B turns: axes of degeneracy are found at rest, on the worker."""
+    return ()
+
+
 def turning_line() -> Line:
     """What one step of dragging B computes: two panes, section, hemisphere, tables."""
     from gui.presenting import deck, ledger, reading, stage
@@ -141,9 +146,9 @@ def turning_line() -> Line:
             state, orientation_b=OrientationChoice(turn=(float(next(angles)), 0.0, 0.0))
         )
         ledger.orientation_view(turned, "B")
-        stage.pane_views(turned, fine=False)
+        stage.pane_views(turned, False, no_axes)
         deck.section_view(turned)
-        deck.hemisphere_view(turned, fine=False)
+        deck.hemisphere_view(turned, False, no_axes)
         reading.reading_view(turned)
 
     return at_most(

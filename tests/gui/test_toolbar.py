@@ -2,10 +2,10 @@
 
 from dataclasses import replace
 from itertools import combinations
+from pathlib import Path
 
 import pytest
 from PySide6.QtCore import QPoint, QRect, QSize, Qt
-from PySide6.QtGui import QPixmap
 from PySide6.QtWidgets import QToolButton
 
 from gui.forms import Choice
@@ -13,6 +13,7 @@ from gui.theme import LIGHT, style_sheet
 from gui.toolbar import MARGIN, OPTIONS, Group, StageToolbar, flow
 from gui.viewdata import ToolbarView
 
+ASSETS = (Path(__file__).parents[2] / "assets").as_posix()
 VIEW = ToolbarView(
     quantity="young",
     quantities=(
@@ -30,10 +31,7 @@ WAVES = replace(VIEW, quantity="slowness", sheets=(True, True, False))
 
 
 @pytest.fixture
-def bar(qtbot, tmp_path):
-    arrow = QPixmap(9, 9)
-    arrow.fill(LIGHT.ink)
-    arrow.save(str(tmp_path / "arrow.png"))
+def bar(qtbot):
     made = StageToolbar()
     qtbot.addWidget(made)
     made.told = []
@@ -41,7 +39,7 @@ def bar(qtbot, tmp_path):
                  "option_toggled", "colour_chosen", "linked_toggled", "look_from"):
         signal = getattr(made, name)
         signal.connect(lambda *what, name=name: made.told.append((name, *what)))
-    made.setStyleSheet(style_sheet(LIGHT, (tmp_path / "arrow.png").as_posix()))
+    made.setStyleSheet(style_sheet(LIGHT, ASSETS))
     made.resize(1300, 40)
     made.show_view(VIEW)
     made.show()

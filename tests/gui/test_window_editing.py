@@ -344,6 +344,7 @@ def test_a_cell_can_be_typed_in_from_nothing(app):
                        ("Cell angle β in degrees", "100")):  # fmt: skip
         fill_in(app, name, text)
         assert app.bench.state.specimen.cell is None
+        assert "γ still wanted" in sentences(app.window.views.cell)[-1]
     fill_in(app, "Cell angle γ in degrees", "90")
     cell = app.bench.state.specimen.cell
     assert (cell.a, cell.b, cell.c, cell.alpha, cell.beta, cell.gamma) == (5, 6, 7, 90, 100, 90)

@@ -248,8 +248,9 @@ def test_the_cutting_error_is_typed_and_refused_in_place(app):
 
 
 @pytest.mark.gl
-def test_a_moved_pin_uploads_nothing_and_a_turned_camera_touches_no_model(app):
-    pick(app, "Quantity", "slowness")
+@pytest.mark.parametrize("key", ["young", "slowness"])
+def test_a_moved_pin_uploads_nothing_and_a_turned_camera_touches_no_model(app, key):
+    pick(app, "Quantity", key)
     settle(app)
     uploads, views = app.renderer.uploads, [p._view for p in app.window.views.panes.values()]
     for pin in ((1.0, 0.0, 0.0), (0.0, 0.6, 0.8)):
@@ -262,6 +263,6 @@ def test_a_moved_pin_uploads_nothing_and_a_turned_camera_touches_no_model(app):
     settle(app)
     assert app.renderer.uploads == uploads
     assert [p._view for p in app.window.views.panes.values()] == moved
-    fill_in(app, "Density in kg/m³", "2700")
+    fill_in(app, "Orientation A", "bunge 1 2 3")
     settle(app)
     assert app.renderer.uploads > uploads

@@ -1,6 +1,7 @@
 """The source picture: wavefronts in their place, faint where they leave the plane."""
 
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -13,6 +14,7 @@ from gui.viewdata import SourceView
 from tests.gui.plots.demo_views import ANGLES, TABLE_A, polar, wave_source
 from tests.gui.plots.drawing import draw_image, draw_pdf, draw_svg, near, svg_words
 
+ASSETS = (Path(__file__).parents[3] / "assets").as_posix()
 RECT = QRectF(0, 0, 520, 400)
 
 
@@ -98,7 +100,7 @@ def test_copy_gives_rows(plot, qtbot):
 def test_the_time_can_be_read_in_the_window_s_dress(qtbot):
     widget = SourcePicture()
     qtbot.addWidget(widget)
-    widget.setStyleSheet(style_sheet(LIGHT, ":/none"))
+    widget.setStyleSheet(style_sheet(LIGHT, ASSETS))
     widget.resize(380, 300)
     widget.show_view(wave_source(1234.56))
     widget.show()

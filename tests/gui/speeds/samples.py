@@ -93,7 +93,6 @@ SECTION = SpeedsSectionView(
         planes=(("XY", "xy, 2 readings"), ("XZ", "xz, 0 readings")),
     ),
     (SectionPoint(6.0, 0.0, 1, False, ("row 1",)), SectionPoint(0.0, 3.3, 4, True, ("row 4",))),
-    "",
 )  # fmt: skip
 SINGULAR = SingularView((0.1, 0.2, 1.0, float("inf")), 3, 60.0, ("C12",))
 CORRELATION = CorrelationView(
