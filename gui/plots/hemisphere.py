@@ -388,9 +388,9 @@ class HemispherePlot(PlotFrame):
             before: QWidget = self.sheet
             for index, (_, words) in enumerate(view.choices):
                 self._add_face(index, words)
-                button = self._faces.button(index)
-                QWidget.setTabOrder(before, button)
-                before = button
+                added = self._faces.button(index)
+                QWidget.setTabOrder(before, added)
+                before = added
         button = self.face(view.shown)
         if button is not None:
             button.setChecked(True)

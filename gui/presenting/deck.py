@@ -205,7 +205,7 @@ def _section_ticks(
     found = live.section(medium, state.quantity, state.section)
     circle = live.section_circle(state.section)
     polarisation = modes(medium, circle).polarisation
-    size = 0.03 * float(np.nanmax(np.abs(found.points), initial=0.0))
+    size = 0.045 * float(np.nanmax(np.abs(found.points), initial=0.0))
     lines = []
     for sheet, visible in enumerate(state.display.sheets):
         if visible:
@@ -512,7 +512,7 @@ def sweep_view(state: BenchState) -> SweepView:
         title=f"{shown.name} away from the pin",
         angles=_SWEEP,
         curves=tuple(curves),
-        axis=f"turned about {axis_label(np.array(axis))}",
+        axis=f"part {axis_label(np.array(axis))}",
         choices=(
             ("normal", "about the normal"),
             *((key, f"about part {key}") for key in _SWEEP_AXES),

@@ -3,6 +3,7 @@
 import gc
 import threading
 from contextlib import contextmanager
+from functools import lru_cache
 
 import pytest
 import shiboken6
@@ -15,6 +16,7 @@ from gui.panel import Disclosure
 from tests.gui import driving
 
 SIZE = (1280, 800)
+SPREADS = {"trust", "draws", "spread at pin", "spread of tables"}
 SPLIT = {"columns": [360, 560, 338], "centre": [390, 310], "stage": [280, 280],
          "plots": [280, 280]}  # fmt: skip
 
@@ -57,6 +59,21 @@ def program(qapp, tmp_path_factory):
 
 
 @pytest.fixture
+def without_spreads(program, monkeypatch):
+    """Leave out what takes most of the time of an edit and has tests of its own.
+
+    The search for symmetry and the uncertainties of everything that is read.
+    """
+    submit = program.scheduler.submit
+
+    def choose(job):
+        if job.kind not in SPREADS:
+            submit(job)
+
+    monkeypatch.setattr(program.scheduler, "submit", choose)
+
+
+@pytest.fixture
 def own_app(qapp, qtbot, tmp_path):
     """A program of the test's own, to do with as it likes."""
     with running(qapp, tmp_path) as built:
@@ -77,6 +94,12 @@ def app(program, qtbot):
     program.bench.history.clear()
 
 
+@lru_cache(maxsize=1)
+def start():
+    """Return the bench that the program opens on."""
+    return first_state(open_demo(FIRST_DEMO))
+
+
 def begin_anew(app):
     """Take back everything that an earlier test may have left."""
     for other in QApplication.topLevelWidgets():
@@ -84,10 +107,9 @@ def begin_anew(app):
             other.close()
     app.test_settings.clear()
     app.documents.path = None
-    start = first_state(open_demo(FIRST_DEMO))
-    if app.bench.state != start or driving.sentences(app.window):
+    if driving.sentences(app.window):
         app.bench.load(driving.BLANK)
-        app.bench.load(start)
+    app.bench.load(start())
     app.window.resize(*SIZE)
     for heading, is_open in app.test_sections.items():
         if heading.isChecked() != is_open:

@@ -23,6 +23,7 @@ from tests.gui.driving import (
     type_cell,
 )
 
+pytestmark = pytest.mark.usefixtures("without_spreads")
 BUTTONS = QMessageBox.StandardButton
 
 

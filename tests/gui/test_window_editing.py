@@ -28,6 +28,7 @@ from tests.gui.driving import (
 )
 from tests.materials import random_physical
 
+pytestmark = pytest.mark.usefixtures("without_spreads")
 TRICLINIC = "blank_lm7_triclinic.json"
 CUBIC = "casting_lm40_cubic.json"
 

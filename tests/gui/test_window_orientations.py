@@ -38,6 +38,7 @@ from tests.gui.driving import (
 )
 from tests.materials import rotated
 
+pytestmark = pytest.mark.usefixtures("without_spreads")
 TRIGONAL = "rod_lm12_trigonal.json"
 CUBIC = "casting_lm40_cubic.json"
 

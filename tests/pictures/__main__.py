@@ -9,13 +9,12 @@ from pathlib import Path
 os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 
 FOLDER = Path(__file__).parents[2] / "assets" / "pictures"
-SETTLE_MS = 900
+SETTLE_MS = 1800
 
 
 def main() -> int:
     """Draw every picture; needs a screen, a virtual one will do."""
     from PySide6.QtCore import QSettings, Qt
-    from PySide6.QtTest import QTest
     from PySide6.QtWidgets import QApplication
 
     from gui.app import build
@@ -33,11 +32,20 @@ def main() -> int:
         built.bench.load(prepare(first_state(open_demo(demo))))
         built.dressing.theme = THEMES[theme]
         built.dressing.put_on()
-        QTest.qWait(SETTLE_MS)
+        settle()
         built.window.grab().save(str(FOLDER / f"{name}.png"))
         print(f"{name}.png")
     built.close()
     return 0
+
+
+def settle() -> None:
+    """Let the program run for a moment, its workers too."""
+    from PySide6.QtCore import QEventLoop, QTimer
+
+    loop = QEventLoop()
+    QTimer.singleShot(SETTLE_MS, loop.quit)
+    loop.exec()
 
 
 def shown(**changes):
