@@ -1,6 +1,6 @@
 """The headless verbs: everything the bench computes, for a terminal and for other programs.
 
-Only the words are read here, so that help comes at once; `core.verbs` computes.
+Only the words are read here, so that help comes at once; `core.command.verbs` computes.
 """
 
 from __future__ import annotations
@@ -15,7 +15,7 @@ import sys
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any, NoReturn
 
-from core import figure_words, recovery_words
+from core.command import figure_words, recovery_words
 from core.errors import InputError
 from core.version import VERSION
 
@@ -120,12 +120,15 @@ def main(
     ----------
     argv : sequence of str, optional
     drawing : mapping of verb to callable, optional
-        Runs the verbs that draw, as those of `core.verbs.RUN` are run; nothing in `core` can.
+        Runs the verbs that draw, as those of `core.command.verbs` do;
+        nothing in `core` can.
     """
     words = list(sys.argv[1:] if argv is None else argv)
     try:
         arguments = read_words(words)
-        from core import verbs  # numpy and the kernels: only once there is something to compute
+        from core.command import (
+            verbs,  # numpy and the kernels: only once there is something to compute
+        )
 
         run = {**verbs.RUN, **(drawing or {})}.get(arguments.verb)
         if run is None:

@@ -30,17 +30,19 @@ from gui.dressing import Dressing
 from gui.figures.exports import Exports
 from gui.help import HelpDialog
 from gui.intake import Intake
-from gui.intents import DeckIntents, LedgerIntents, StageIntents
+from gui.intents.deck import DeckIntents
+from gui.intents.ledger import LedgerIntents
+from gui.intents.speeds import SpeedsIntents
+from gui.intents.stage import StageIntents
+from gui.intents.trust import TrustIntents
 from gui.pace import Pace
-from gui.presenter import Presenter
+from gui.presenters.speeds import SpeedsPresenter
+from gui.presenters.window import Presenter
 from gui.scheduler import Scheduler
 from gui.speeds_files import SpeedFiles
-from gui.speeds_intents import SpeedsIntents
-from gui.speeds_presenter import SpeedsPresenter
 from gui.stage.composition import Renderer
 from gui.stage.gl_probe import GlReport, probe
 from gui.stage.renderer import make_renderer
-from gui.trust_intents import TrustIntents
 from gui.window import Window, build_views
 
 NO_SCREEN = (

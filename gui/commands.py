@@ -16,7 +16,8 @@ from gui.documents import Documents, demo_files, open_demo
 from gui.dressing import Dressing
 from gui.figures.exports import Exports
 from gui.intake import Intake
-from gui.intents import LedgerIntents, StageIntents
+from gui.intents.ledger import LedgerIntents
+from gui.intents.stage import StageIntents
 from gui.pictures import stage_picture
 from gui.speeds_files import DEMOS, SpeedFiles
 from gui.window import Window

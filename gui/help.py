@@ -11,11 +11,11 @@ import PySide6
 import scipy
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QTabWidget, QTextBrowser, QVBoxLayout
 
-from core.cautions import CAUTIONS
 from core.crystal.cell import AXES_CONVENTIONS
 from core.crystal.orientation import WAYS
 from core.directional.quantities import QUANTITIES
-from core.report_methods import METHODS
+from core.report.cautions import CAUTIONS
+from core.report.methods import METHODS
 from gui.actions import Menus
 
 _KEYS = (
@@ -53,7 +53,8 @@ _CONVENTIONS = (
     (
         "Directions",
         "[u v w] follows the vectors of the cell, (h k l) is the normal of the plane; four "
-        "indices for hexagonal and trigonal crystals, the third minus the sum of the first two. "
+        "indices for hexagonal and trigonal crystals, the third minus the sum of the first two."
+        " "
         "0.3,0.4,0.87 are components along the crystal axes.",
         (),
     ),

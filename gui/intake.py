@@ -11,19 +11,19 @@ import numpy as np
 from PySide6.QtCore import QObject, Slot
 from PySide6.QtWidgets import QFileDialog
 
+from core.editing.table import with_cell
 from core.errors import InputError
 from core.files.cif import CifCell, read_cell
 from core.files.opening import Opened
 from core.files.text import read_text
 from core.state import Matrix, Specimen, as_matrix
-from core.study.symmetry_verdict import SymmetryVerdict, symmetry_verdict
-from core.table_edits import with_cell
+from core.study.trust.symmetry_verdict import SymmetryVerdict, symmetry_verdict
 from core.task import Ticker
 from core.tensor.hidden_axes import nearest_classes
 from core.tensor.stiffness import Stiffness
 from gui.bench import Bench
 from gui.documents import Documents
-from gui.intents import Intents, with_specimen
+from gui.intents.base import Intents, with_specimen
 from gui.presenting import taking_in
 from gui.presenting.ledger import ledger_specimen
 from gui.scheduler import Job, Scheduler

@@ -15,7 +15,7 @@ for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
     os.environ.setdefault(_variable, "1")
 
 from core import cli  # noqa: E402 - after the threads are set
-from core.figure_words import PICTURES  # noqa: E402 - likewise
+from core.command.figure_words import PICTURES  # noqa: E402 - likewise
 
 
 def main(argv: Sequence[str] | None = None) -> int:
@@ -46,7 +46,7 @@ def _section(arguments: Namespace) -> Any:
     is_picture = bool(arguments.out) and Path(arguments.out).suffix.lower() in PICTURES
     if is_picture and not arguments.csv:
         return _draw(arguments)
-    from core import verbs
+    from core.command import verbs
 
     return verbs.RUN["section"](arguments)
 

@@ -176,6 +176,6 @@ class _Worker(QRunnable):
         result, error = None, None
         try:
             result = self._job.run(self._job.request, ticker)
-        except Exception as caught:
+        except Exception as caught:  # noqa: BLE001 - the boundary of the worker: sent on
             error = caught
         self._ended.emit(self._serial, result, error)

@@ -8,16 +8,16 @@ from pathlib import Path
 
 from PySide6.QtWidgets import QFileDialog
 
-from core import measured
+from core.editing import readings as measured
 from core.errors import InputError
 from core.files.speeds import SpeedTable, read_speeds, write_speeds
 from gui.actions import Entry
 from gui.bench import Bench
 from gui.documents import Documents
+from gui.intents.speeds import SpeedsIntents
 from gui.pages import PAGES
+from gui.presenters.speeds import speeds_of
 from gui.presenting.ledger import ledger_specimen
-from gui.speeds_intents import SpeedsIntents
-from gui.speeds_presenter import speeds_of
 from gui.window import Window
 
 DEMOS = (

@@ -15,8 +15,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, label
 from gui.viewdata import ToolbarView
+from gui.widgets.forms import Choice, label
 
 MARGIN = 8
 SPACING = 10

@@ -17,9 +17,9 @@ from PySide6.QtGui import (
 )
 from PySide6.QtWidgets import QMenu, QSizePolicy, QWidget
 
-from gui.forms import claims, put_on_clipboard
 from gui.theme import LIGHT, Theme
 from gui.viewdata import Mark, VerdictView
+from gui.widgets.forms import claims, put_on_clipboard
 
 HEIGHT = 40
 MARGIN = 16.0

@@ -29,7 +29,6 @@ from gui.ledger.orientation_form import OrientationButtons, OrientationForm
 from gui.ledger.specimen_form import SpecimenForm
 from gui.ledger.strain_spectrum import StrainSpectrum
 from gui.pages import PageSwitch
-from gui.panel import Section
 from gui.plots.section import SectionPlot
 from gui.reading.cutting_error import CuttingErrorPanel
 from gui.reading.extremes_table import ExtremesTable
@@ -44,6 +43,7 @@ from gui.theme import Theme
 from gui.toolbar import StageToolbar
 from gui.trust.sheet import TrustSheet
 from gui.verdict_band import VerdictBand
+from gui.widgets.panel import Section
 
 LEDGER_WIDTH = 360
 READING_WIDTH = 338

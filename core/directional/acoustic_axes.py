@@ -1,7 +1,7 @@
 """Acoustic axes: the directions along which two waves have the same speed.
 
-Where they are is found in `core.directional.degeneracies`; here they become records in the
-units of the window, with the cone into which a beam along each of them spreads.
+Where they are is found in `search.degeneracies`; here they become records in the units of the
+window, with the cone into which a beam along each of them spreads.
 """
 
 from dataclasses import dataclass
@@ -10,10 +10,10 @@ from typing import Literal
 import numpy as np
 
 from core.arrays import FloatArray, read_only
-from core.directional.circles import preference
-from core.directional.degeneracies import CURVE_POINTS, Degeneracies, degeneracies
-from core.directional.local_waves import contraction, polarised, sheet_frames
 from core.directional.medium import Medium
+from core.directional.search.circles import preference
+from core.directional.search.degeneracies import CURVE_POINTS, Degeneracies, degeneracies
+from core.directional.search.local_waves import contraction, polarised, sheet_frames
 
 Kind = Literal["conical", "tangential", "line", "all"]
 

@@ -10,12 +10,12 @@ from dataclasses import dataclass
 import numpy as np
 
 from core.arrays import FloatArray, IntArray, read_only
-from core.directional.circles import Circle, ValueOf, canonical, tangents
-from core.directional.local_moduli import Modulus, modulus_objective
 from core.directional.medium import Medium
 from core.directional.moduli import PER_TPA, ElasticFields
-from core.directional.newton import descend
-from core.directional.settling import (
+from core.directional.search.circles import Circle, ValueOf, canonical, tangents
+from core.directional.search.local_moduli import Modulus, modulus_objective
+from core.directional.search.newton import descend
+from core.directional.search.settling import (
     PLATEAU,
     POLE,
     Candidates,
@@ -24,7 +24,7 @@ from core.directional.settling import (
     loosely_curved,
     settle,
 )
-from core.directional.sheet_extremes import SHEETS, grid_starts, sheet_extremes
+from core.directional.search.sheet_extremes import SHEETS, grid_starts, sheet_extremes
 from core.directional.sphere import SphereMesh, directions, sphere_mesh
 from core.task import Ticker
 from core.tensor.notation import compliance_to_kelvin
@@ -88,7 +88,7 @@ def extremes(medium: Medium, ticker: Ticker | None = None) -> dict[str, Pair]:
     either), a least speed when ρv² is not positive everywhere, and anything that is positive
     nowhere. What remains is the extreme over the directions in which it is defined.
 
-    Newton's method on the turns of a frame n, m, l; see `core.directional.newton`.
+    Newton's method on the turns of a frame n, m, l; see `core.directional.search.newton`.
     """
     ticker = ticker or Ticker()
     mesh = sphere_mesh(SEARCH_LEVEL)

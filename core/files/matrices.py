@@ -13,9 +13,9 @@ import numpy as np
 
 from core.arrays import BoolArray, FloatArray, read_only
 from core.errors import InputError
-from core.files.table_cells import read_cells, read_number_rows
-from core.files.table_guess import Guess, RawTable
-from core.files.table_readings import (
+from core.files.foreign.cells import read_cells, read_number_rows
+from core.files.foreign.guess import Guess, RawTable
+from core.files.foreign.readings import (
     AS_LISTED,
     read_class,
     read_kind,
@@ -24,8 +24,8 @@ from core.files.table_readings import (
     read_unit,
     tensor_components,
 )
-from core.files.table_shapes import read_shape, read_symmetry
-from core.files.table_units import parse_unit
+from core.files.foreign.shapes import read_shape, read_symmetry
+from core.files.foreign.units import parse_unit
 from core.numbers import shortened, significant
 from core.tensor.notation import (
     KELVIN_WEIGHTS,

@@ -8,8 +8,8 @@ from pathlib import Path
 
 from core import limits
 from core.files import bench, specimen
+from core.files.foreign.readings import AS_LISTED
 from core.files.matrices import read_table, understand
-from core.files.table_readings import AS_LISTED
 from core.files.text import read_text
 from core.state import BenchState, Specimen, as_matrix
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.numbers import significant, with_deviation
-from core.study.uncertainty import independent_covariance
+from core.study.uncertainty.changes import independent_covariance
 from core.tensor.averages import anisotropy, averages
 from core.tensor.notation import KELVIN_WEIGHTS, upper_triangle
 from core.tensor.stability import Stability, assess, criteria
@@ -72,9 +72,9 @@ def judge(
     covariance : ndarray, shape (21, 21), optional
         GPa², along the upper triangle by rows; read in place of `deviations`.
     symmetry : str
-        The sentence of `core.study.symmetry_verdict`, where the search has been made.
+        The sentence of `core.study.trust.symmetry_verdict`, where the search has been made.
     notes : int
-        How many things `core.study.plausibility` finds odd.
+        How many things `core.study.trust.plausibility` finds odd.
     """
     stability = assess(stiffness)
     fits = distance(stiffness.voigt, claimed) <= NOTABLE_DISTANCE

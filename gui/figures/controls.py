@@ -18,9 +18,9 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from core.captions import SHOWN, SIDES
 from core.directional.quantities import QUANTITIES
-from core.report_content import compared_sides
+from core.report.captions import SHOWN, SIDES
+from core.report.content import compared_sides
 from core.state import BenchState
 
 

@@ -10,9 +10,8 @@ from typing import Literal
 from PySide6.QtCore import QRect, QRectF, Qt
 from PySide6.QtGui import QFontMetricsF, QImage, QPainter
 
-from core.captions import FigureChoice, caption, needed_sides, state_for
+from core.report.captions import FigureChoice, caption, needed_sides, state_for
 from core.state import BenchState
-from gui.colour_bar import bar_height, draw_colour_bar
 from gui.figures.vector_scene import draw_vector_scene
 from gui.plots.hemisphere import draw_hemisphere
 from gui.plots.lettering import draw_title, lettering
@@ -26,6 +25,7 @@ from gui.stage.labels import draw_decorations, scene_rect
 from gui.stage.offscreen import paint_scene
 from gui.theme import LIGHT, Theme
 from gui.viewdata import HemisphereView, PaneView, SectionView, SourceView, SweepView
+from gui.widgets.colour_bar import bar_height, draw_colour_bar
 
 Surface = Literal["pixels", "picture", "vectors"]
 """How a shaded surface is drawn: into the pixels of the painter, as a picture inside a vector

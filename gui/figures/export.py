@@ -20,10 +20,10 @@ from PySide6.QtGui import (
 from PySide6.QtSvg import QSvgGenerator
 from PySide6.QtWidgets import QApplication
 
-from core.captions import one_of
 from core.errors import InputError
 from core.files.origin import PROGRAM
 from core.files.text import write_bytes
+from core.report.captions import one_of
 from gui.figures.drawing import Drawable, Look, Surface, draw_figure
 from gui.stage.camera import Camera
 from gui.stage.composition import Ground, Renderer

@@ -9,14 +9,14 @@ from PySide6.QtCore import QSettings
 from PySide6.QtWidgets import QDialog
 
 from core.errors import InputError
-from core.report_content import FileNote, file_note
+from core.report.content import FileNote, file_note
 from gui.actions import Entry
 from gui.bench import Bench
 from gui.figures.figure_dialog import FigureDialog, Studio
 from gui.figures.report_dialog import ReportDialog
 from gui.figures.table_dialog import MeshDialog, TableDialog
-from gui.forms import current_theme
 from gui.stage.composition import Renderer
+from gui.widgets.forms import current_theme
 from gui.window import Window
 
 

@@ -16,9 +16,9 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from core.captions import FIGURE_KINDS, FigureChoice
 from core.errors import InputError
 from core.files.text import write_bytes
+from core.report.captions import FIGURE_KINDS, FigureChoice
 from core.state import BenchState
 from gui.figures.controls import (
     ask_target,
@@ -48,9 +48,9 @@ from gui.figures.export import (
     figure_bytes,
     text_scale,
 )
-from gui.forms import label, set_or_hide
 from gui.stage.camera import Camera
 from gui.stage.composition import Renderer
+from gui.widgets.forms import label, set_or_hide
 
 _PREVIEW = 500  # pixels of the preview's longer side
 _PAUSE_MS = 120  # after the last change, before the preview is drawn

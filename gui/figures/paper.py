@@ -13,7 +13,7 @@ from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QFont, QFontInfo, QFontMetricsF, QPainter, QPen
 from PySide6.QtWidgets import QApplication
 
-from core.report_blocks import Paragraph, SignOff
+from core.report.blocks import Paragraph, SignOff
 from gui.figures.export import MM, VECTOR_DPI
 from gui.plots.lettering import lettering
 from gui.theme import LIGHT

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from PySide6.QtCore import QRectF, Qt
 from PySide6.QtGui import QFont, QFontMetricsF
 
-from core.report_blocks import Table
+from core.report.blocks import Table
 from gui.figures.paper import (
     Paper,
     lay_text,

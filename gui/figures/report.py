@@ -14,8 +14,8 @@ from dataclasses import dataclass, field, replace
 from PySide6.QtCore import QRectF, QSizeF
 from PySide6.QtGui import QPageSize, QPainter
 
-from core.captions import one_of
-from core.report_blocks import Figure, Paragraph, Report, Section, SignOff, Table
+from core.report.blocks import Figure, Paragraph, Report, Section, SignOff, Table
+from core.report.captions import one_of
 from core.state import BenchState
 from gui.figures.drawing import Drawable, Look, draw_figure, drawable
 from gui.figures.export import (

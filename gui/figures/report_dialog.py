@@ -20,11 +20,11 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from core.captions import FIGURE_KINDS, FigureChoice
 from core.errors import InputError
 from core.files.origin import today
 from core.files.text import write_bytes
-from core.report_content import (
+from core.report.captions import FIGURE_KINDS, FigureChoice
+from core.report.content import (
     SECTIONS,
     FileNote,
     ReportPlan,
@@ -48,7 +48,7 @@ from gui.figures.controls import (
 )
 from gui.figures.figure_dialog import Studio
 from gui.figures.report import PAPERS, REPORT_FORMATS, Press, Steps, report_steps
-from gui.forms import label, set_or_hide
+from gui.widgets.forms import label, set_or_hide
 
 _CHOICE = Qt.ItemDataRole.UserRole
 _ON, _OFF = Qt.CheckState.Checked, Qt.CheckState.Unchecked

@@ -38,7 +38,7 @@ from gui.figures.controls import (
     side_names,
 )
 from gui.figures.figure_dialog import Studio
-from gui.forms import label, put_on_clipboard, set_mark, set_or_hide
+from gui.widgets.forms import label, put_on_clipboard, set_mark, set_or_hide
 
 _LONGEST_PREVIEW = 6000  # characters
 

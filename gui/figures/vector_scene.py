@@ -13,12 +13,12 @@ from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPainterPath, QPen, QPolygonF
 
 from core.arrays import BoolArray, FloatArray, IntArray
-from gui.colour_bar import table_position
 from gui.stage import composition, lighting, picking
 from gui.stage.camera import Camera, Size
 from gui.stage.composition import Layer, LineSet
 from gui.theme import GREY_FOR_UNDEFINED, Theme, colour_table
 from gui.viewdata import PaneView
+from gui.widgets.colour_bar import table_position
 
 _SEAM = 0.45  # pixels at scale 1: strokes that close the seams between opaque triangles
 _PIECE = 0.03  # radii: lines are tested for being hidden in pieces of this length

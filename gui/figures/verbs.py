@@ -20,26 +20,27 @@ for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
 from PySide6.QtCore import QCoreApplication  # noqa: E402 - after the threads are set
 from PySide6.QtWidgets import QApplication  # noqa: E402
 
-from core.captions import (  # noqa: E402
+from core.command.figure_words import (  # noqa: E402
+    REPORTS,
+    SURFACE_FILES,
+    expand,
+    outputs,
+)
+from core.command.verbs import Outcome, bench_as_asked  # noqa: E402
+from core.directional.quantities import quantity  # noqa: E402
+from core.errors import InputError  # noqa: E402
+from core.files.meshes import MESHES  # noqa: E402
+from core.files.origin import Origin, today  # noqa: E402
+from core.files.tables import directions_csv  # noqa: E402
+from core.files.text import write_bytes  # noqa: E402
+from core.report.captions import (  # noqa: E402
     FIGURE_KINDS,
     SHOWN,
     SIDES,
     FigureChoice,
     one_of,
 )
-from core.directional.quantities import quantity  # noqa: E402
-from core.errors import InputError  # noqa: E402
-from core.figure_words import (  # noqa: E402
-    REPORTS,
-    SURFACE_FILES,
-    expand,
-    outputs,
-)
-from core.files.meshes import MESHES  # noqa: E402
-from core.files.origin import Origin, today  # noqa: E402
-from core.files.tables import directions_csv  # noqa: E402
-from core.files.text import write_bytes  # noqa: E402
-from core.report_content import (  # noqa: E402
+from core.report.content import (  # noqa: E402
     SECTIONS,
     ReportPlan,
     default_figures,
@@ -47,7 +48,6 @@ from core.report_content import (  # noqa: E402
     report_content,
 )
 from core.state import BenchState  # noqa: E402
-from core.verbs import Outcome, bench_as_asked  # noqa: E402
 from gui.figures.drawing import drawable  # noqa: E402
 from gui.figures.export import (  # noqa: E402
     GROUNDS,

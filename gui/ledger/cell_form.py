@@ -13,8 +13,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, TextField, label, set_or_hide
 from gui.viewdata import CellFormView
+from gui.widgets.forms import Choice, TextField, label, set_or_hide
 
 LENGTHS = (("a", "a"), ("b", "b"), ("c", "c"))
 ANGLES = (

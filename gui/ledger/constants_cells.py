@@ -28,9 +28,9 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import current_theme, plain_number
 from gui.theme import Theme
 from gui.viewdata import CellView, ConstantsView
+from gui.widgets.forms import current_theme, plain_number
 
 Index = QModelIndex | QPersistentModelIndex
 Kind = Literal["independent", "dependent", "zero"]

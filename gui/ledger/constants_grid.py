@@ -27,7 +27,6 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import claims, label, put_on_clipboard, set_or_hide, tab_separated, text_width
 from gui.ledger.constants_cells import (
     PADDING,
     SIZE,
@@ -38,6 +37,14 @@ from gui.ledger.constants_cells import (
 )
 from gui.theme import Theme
 from gui.viewdata import ConstantsView
+from gui.widgets.forms import (
+    claims,
+    label,
+    put_on_clipboard,
+    set_or_hide,
+    tab_separated,
+    text_width,
+)
 
 ROW_HEIGHT = 26
 LEAST_CELL = 52

@@ -13,9 +13,9 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, DragField, ElidedLabel, TextField, label, set_or_hide
-from gui.panel import Expander
 from gui.viewdata import OrientationView
+from gui.widgets.forms import Choice, DragField, ElidedLabel, TextField, label, set_or_hide
+from gui.widgets.panel import Expander
 
 AXES = ("X", "Y", "Z")
 WORDS_WIDTH = 132  # of the ways in the list of the same, pixels

@@ -5,9 +5,9 @@ from __future__ import annotations
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QGridLayout, QHBoxLayout, QLabel, QSizePolicy, QWidget
 
-from gui.forms import Choice, NotesField, TextField, label, set_or_hide
-from gui.panel import Expander
 from gui.viewdata import SpecimenView
+from gui.widgets.forms import Choice, NotesField, TextField, label, set_or_hide
+from gui.widgets.panel import Expander
 
 UNIQUE_AXES = (("x", "along x"), ("y", "along y"), ("z", "along z"))
 

@@ -19,9 +19,9 @@ from PySide6.QtGui import (
 )
 from PySide6.QtWidgets import QMenu, QSizePolicy, QToolTip, QWidget
 
-from gui.forms import claims, put_on_clipboard, tab_separated, text_width
 from gui.theme import LIGHT, Theme
 from gui.viewdata import SpectrumBar, SpectrumView
+from gui.widgets.forms import claims, put_on_clipboard, tab_separated, text_width
 
 ROW = 21.0  # height of one bar with its gap, unscaled pixels
 GAP = 8.0

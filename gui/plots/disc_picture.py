@@ -10,9 +10,9 @@ from PySide6.QtCore import QRectF, QSize, Qt
 from PySide6.QtGui import QBrush, QImage, QPainter
 
 from core.arrays import BoolArray, FloatArray, IntArray
-from gui.colour_bar import table_position
 from gui.theme import colours_of
 from gui.viewdata import HemisphereView
+from gui.widgets.colour_bar import table_position
 
 _INWARDS = 3.0  # half pixels: where a pixel beyond the rim takes its colour from
 

@@ -19,7 +19,6 @@ from PySide6.QtWidgets import (
 
 from core.arrays import FloatArray
 from core.directional.projection import from_disc
-from gui.colour_bar import bar_height, draw_colour_bar, table_position
 from gui.plots.disc_marks import draw_marks
 from gui.plots.disc_picture import disc_picture, undefined, value_in
 from gui.plots.frame import PlotFrame
@@ -39,6 +38,7 @@ from gui.plots.polar import PolarGround, Rim, draw_axis_ends, polar_ground
 from gui.plots.strokes import draw_curve
 from gui.theme import GREY_FOR_UNDEFINED, LIGHT, Theme, colour_table
 from gui.viewdata import HemisphereView
+from gui.widgets.colour_bar import bar_height, draw_colour_bar, table_position
 
 PROJECTIONS = {"equal_area": "equal area", "stereographic": "stereographic"}
 _HATCH = 6.0  # pixels between the lines where nothing is defined

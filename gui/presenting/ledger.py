@@ -24,14 +24,14 @@ from core.crystal.orientation import (
     parse_orientation,
     turned,
 )
-from core.edits import FITS
+from core.editing.specimen import FITS
 from core.errors import InputError
 from core.numbers import full_precision, significant, with_deviation
 from core.state import BenchState, OrientationChoice, Specimen, claimed_class
-from core.study.deviations import eigenstiffness_deviation
-from core.study.plausibility import DENSITY
-from core.study.trust import Findings
-from core.study.uncertainty import deviations_of
+from core.study.trust.findings import Findings
+from core.study.trust.plausibility import DENSITY
+from core.study.uncertainty.changes import deviations_of
+from core.study.uncertainty.deviations import eigenstiffness_deviation
 from core.study.verdict import Verdict, judge
 from core.tensor.notation import constant_name
 from core.tensor.stability import assess

@@ -20,9 +20,9 @@ from core.directional.quantities import QUANTITIES, quantity
 from core.directional.sphere import Directions, directions
 from core.numbers import full_precision, signed, significant
 from core.state import BenchState, Specimen, Vector3, claimed_class
-from core.study.deviations import extreme_deviations
 from core.study.part import PartRow, part_table
 from core.study.tolerance import cone_extremes
+from core.study.uncertainty.deviations import extreme_deviations
 from core.tensor.averages import anisotropy, averages, hashin_shtrikman
 from core.tensor.stiffness import Stiffness
 from gui.presenting.sigmas import (

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from core.directional.quantities import quantity
 from core.numbers import bracketed, signed, significant, with_deviation
-from core.study.draws import COUNT
+from core.study.uncertainty.draws import COUNT
 from gui.presenting.spread import Deviations, PinSpread, Place
 from gui.presenting.stage import SHEET_NAMES
 

@@ -10,7 +10,7 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.crystal.cell import CrystalFrame, axes_text
-from core.measured import Understood, understand
+from core.editing.readings import Understood, understand
 from core.numbers import full_precision, significant, with_deviation
 from core.state import SPEED_COLUMNS, BenchState, MeasuredSpeeds
 from core.study.recovery.conflicts import UNLIKELY, chi2_probability

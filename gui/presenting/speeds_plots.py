@@ -13,7 +13,7 @@ from core.crystal.cell import CrystalFrame
 from core.crystal.directions import nearest_indices, parse_direction
 from core.directional.projection import to_disc
 from core.directional.sphere import plane_axes, sphere_mesh
-from core.measured import understand
+from core.editing.readings import understand
 from core.numbers import significant
 from core.state import BenchState, MeasuredSpeeds, Vector3, as_matrix
 from core.study.recovery.conflicts import outlier_limit

@@ -17,13 +17,22 @@ from core.directional import waves
 from core.directional.medium import Medium
 from core.directional.quantities import QUANTITIES, quantity
 from core.directional.sphere import Directions, directions
-from core.edits import covariance_of
+from core.editing.specimen import covariance_of
 from core.state import BenchState, OrientationChoice, Specimen, Vector3, claimed_class
-from core.study import sensitivity
-from core.study.covariance import factor_of, rotate_covariance, rotate_factor, rotation_map
-from core.study.deviations import aggregate_deviations, debye_deviation, part_deviations
-from core.study.draws import MonteCarlo, monte_carlo
-from core.study.propagation import Contribution, contributions, propagate
+from core.study.uncertainty import sensitivity
+from core.study.uncertainty.covariance import (
+    factor_of,
+    rotate_covariance,
+    rotate_factor,
+    rotation_map,
+)
+from core.study.uncertainty.deviations import (
+    aggregate_deviations,
+    debye_deviation,
+    part_deviations,
+)
+from core.study.uncertainty.draws import MonteCarlo, monte_carlo
+from core.study.uncertainty.propagation import Contribution, contributions, propagate
 from core.task import Ticker
 from gui.presenting.stage import SHEET_NAMES, sides
 

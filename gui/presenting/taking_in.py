@@ -6,15 +6,15 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from core.crystal.cell import AXES_CONVENTIONS, axes_text, axes_words, cell_mismatch
+from core.editing.table import Claim, simplest_claim, with_table
 from core.errors import InputError
 from core.files.cif import CifCell
+from core.files.foreign.guess import Guess
+from core.files.foreign.readings import AS_LISTED
 from core.files.matrices import FIELDS, Understood, understand
-from core.files.table_guess import Guess
-from core.files.table_readings import AS_LISTED
 from core.numbers import significant
 from core.state import Specimen
-from core.study.symmetry_verdict import SymmetryVerdict
-from core.table_edits import Claim, simplest_claim, with_table
+from core.study.trust.symmetry_verdict import SymmetryVerdict
 from core.tensor.symmetry import crystal_class
 from gui.presenting.ledger import class_choices, constants_view, verdict_view
 from gui.presenting.sigmas import sentence

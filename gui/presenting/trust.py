@@ -15,12 +15,12 @@ from core.directional.quantities import quantity
 from core.directional.sphere import sphere_mesh
 from core.numbers import full_precision, significant
 from core.state import BenchState, Specimen, claimed_class, stiffness_of
-from core.study.deviations import eigenstiffness_deviation
-from core.study.draws import MonteCarlo, StabilityChance, monte_carlo
-from core.study.propagation import Contribution
-from core.study.support import Support
-from core.study.symmetry_verdict import vector_text
-from core.study.trust import Entered, Findings, examine
+from core.study.trust.findings import Entered, Findings, examine
+from core.study.trust.support import Support
+from core.study.trust.symmetry_verdict import vector_text
+from core.study.uncertainty.deviations import eigenstiffness_deviation
+from core.study.uncertainty.draws import MonteCarlo, StabilityChance, monte_carlo
+from core.study.uncertainty.propagation import Contribution
 from core.task import Ticker
 from core.tensor.closest import Share
 from core.tensor.hidden_axes import HiddenAxes

@@ -5,9 +5,9 @@ from __future__ import annotations
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
 
-from gui.forms import TextField, label
 from gui.reading.small_table import SmallTable
 from gui.viewdata import TableView
+from gui.widgets.forms import TextField, label
 
 
 class CuttingErrorPanel(QWidget):

@@ -5,10 +5,10 @@ from __future__ import annotations
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
-from gui.forms import label, set_or_hide
 from gui.reading.link_table import GO, GoLink, Link, LinkTable
-from gui.text_table import Column, Line
 from gui.viewdata import ExtremeRow, ExtremesView
+from gui.widgets.forms import label, set_or_hide
+from gui.widgets.text_table import Column, Line
 
 COLUMNS = (
     Column("", "label"),

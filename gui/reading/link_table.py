@@ -8,8 +8,8 @@ from dataclasses import dataclass
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QPushButton
 
-from gui.text_table import Column, Line, TextTable
 from gui.viewdata import Vector3
+from gui.widgets.text_table import Column, Line, TextTable
 
 GO = "go"
 

@@ -5,9 +5,9 @@ from __future__ import annotations
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QHBoxLayout, QVBoxLayout, QWidget
 
-from gui.forms import ElidedLabel, TextField, label, set_or_hide
-from gui.text_table import Column, Line, TextTable
 from gui.viewdata import ReadingRow, ReadingView
+from gui.widgets.forms import ElidedLabel, TextField, label, set_or_hide
+from gui.widgets.text_table import Column, Line, TextTable
 
 BOTH = (
     Column("", "label"),

@@ -6,9 +6,9 @@ import re
 
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
-from gui.forms import label, plain_number, set_or_hide
-from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import TableView
+from gui.widgets.forms import label, plain_number, set_or_hide
+from gui.widgets.text_table import Column, ColumnKind, Line, TextTable
 
 SIDES = {"A": "a", "B": "b"}
 _NUMBER = re.compile(r"[-+]?(\d|\.\d).*|nan|inf|[-–—·]?")

@@ -6,11 +6,11 @@ from PySide6.QtCore import Signal
 from PySide6.QtGui import QShowEvent
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
-from gui.forms import label, set_or_hide
-from gui.panel import Expander
 from gui.reading.link_table import GO, GoLink, Link, LinkTable
-from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import LinkedView, WaveRow, WavesView
+from gui.widgets.forms import label, set_or_hide
+from gui.widgets.panel import Expander
+from gui.widgets.text_table import Column, ColumnKind, Line, TextTable
 
 COLUMNS = (
     Column("", "label"),

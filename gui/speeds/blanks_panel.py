@@ -13,10 +13,10 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, ElidedLabel, TextField, label, set_or_hide
-from gui.panel import Section
 from gui.speeds.result_panel import SentenceList
 from gui.speeds.viewdata import BlanksView, PlanView
+from gui.widgets.forms import Choice, ElidedLabel, TextField, label, set_or_hide
+from gui.widgets.panel import Section
 
 
 class _BlankLine:

@@ -6,13 +6,13 @@ import numpy as np
 from PySide6.QtCore import QPointF, QRectF
 from PySide6.QtGui import QFontMetricsF, QImage, QPainter, QPen
 
-from gui.colour_bar import bar_height, draw_colour_bar
 from gui.plots.frame import PlotFrame
 from gui.plots.lettering import draw_chip, draw_notice, draw_text, draw_title, lettering
 from gui.speeds.marks import DIMMED, card_lines
 from gui.speeds.viewdata import CorrelationView
 from gui.theme import Theme, colours_of
 from gui.viewdata import ScaleView
+from gui.widgets.colour_bar import bar_height, draw_colour_bar
 
 TITLE = "Correlations of the constants"
 _SCALE = ScaleView(-1.0, 1.0, "−1", "+1", "correlation", True, ((0.0, "0"),))

@@ -13,10 +13,10 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, ElidedLabel, TextField, label, set_or_hide
 from gui.speeds.readings_table import ReadingsModel, ReadingsTable
 from gui.speeds.viewdata import SpeedsFormView, SpeedsTableView
 from gui.theme import Theme
+from gui.widgets.forms import Choice, ElidedLabel, TextField, label, set_or_hide
 
 UNIQUE_AXES = (("x", "along x"), ("y", "along y"), ("z", "along z"))
 ENTERED = (

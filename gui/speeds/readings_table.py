@@ -37,11 +37,17 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import claims, current_theme, plain_number, put_on_clipboard, tab_separated
 from gui.ledger.constants_cells import CellDelegate
 from gui.speeds.marks import DIMMED
 from gui.speeds.viewdata import SpeedsTableView
 from gui.theme import Theme
+from gui.widgets.forms import (
+    claims,
+    current_theme,
+    plain_number,
+    put_on_clipboard,
+    tab_separated,
+)
 
 Index = QModelIndex | QPersistentModelIndex
 ROW_HEIGHT = 23

@@ -6,13 +6,13 @@ from PySide6.QtCore import QRect, QSize, Qt
 from PySide6.QtGui import QFont, QPainter
 from PySide6.QtWidgets import QStyle, QStyleOptionViewItem
 
-from gui.forms import current_theme
 from gui.ledger.constants_cells import DOT, PADDING, SIZE, CellDelegate, ConstantsModel, Index
 from gui.ledger.constants_grid import HEADER_HEIGHT, ConstantsTable
 from gui.speeds.marks import DIMMED
 from gui.speeds.viewdata import ResultCell
 from gui.theme import Theme
 from gui.viewdata import ConstantsView
+from gui.widgets.forms import current_theme
 
 ROW_HEIGHT = 36
 

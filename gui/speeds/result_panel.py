@@ -5,10 +5,10 @@ from __future__ import annotations
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QGridLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
-from gui.forms import label, set_or_hide
-from gui.panel import Section
 from gui.speeds.result_grid import ResultGrid
 from gui.speeds.viewdata import Fact, ResultView
+from gui.widgets.forms import label, set_or_hide
+from gui.widgets.panel import Section
 
 _ROLES = {"ink": "", "doubt": "doubt", "alert": "error"}  # of the style sheet
 

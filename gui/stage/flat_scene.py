@@ -15,13 +15,13 @@ from PySide6.QtCore import QLineF, Qt
 from PySide6.QtGui import QColor, QImage, QPainter, QPen
 
 from core.arrays import BoolArray, Float32Array, FloatArray, IntArray
-from gui.colour_bar import table_position
 from gui.stage import composition, lighting
 from gui.stage.camera import Camera, Size, Tile
 from gui.stage.composition import PLAIN, Finish, Ground, Layer, LineSet
 from gui.stage.raster import Fragments, places_in_run, rasterise
 from gui.theme import GREY_FOR_UNDEFINED, Theme, colour_table
 from gui.viewdata import PaneView
+from gui.widgets.colour_bar import table_position
 
 _PIECE = 3.0  # pixels: strokes are tested for visibility in pieces of this length
 

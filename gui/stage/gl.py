@@ -6,6 +6,6 @@ import OpenGL
 OpenGL.ERROR_CHECKING = False
 OpenGL.ERROR_LOGGING = False
 
-from OpenGL import GL
+from OpenGL import GL  # noqa: E402 - after the switches above
 
 __all__ = ["GL"]

@@ -22,11 +22,11 @@ from PySide6.QtGui import (
 )
 
 from core.arrays import BoolArray, FloatArray
-from gui.colour_bar import bar_height, draw_colour_bar
 from gui.stage import composition, picking
 from gui.stage.camera import Camera, Size
 from gui.theme import Theme
 from gui.viewdata import DirectionMark, PaneView, Triad
+from gui.widgets.colour_bar import bar_height, draw_colour_bar
 
 _MARGIN = 10.0  # from the edge of the pane to its words
 

@@ -9,7 +9,6 @@ from PySide6.QtCore import QCoreApplication
 from PySide6.QtGui import QColor, QImage
 
 from core.arrays import FloatArray
-from gui.colour_bar import colour_range, is_logarithmic
 from gui.stage import composition
 from gui.stage.camera import DISTANCE, FAR, NEAR, Camera, Size
 from gui.stage.composition import PLAIN, Finish, Ground, Layer, LineSet
@@ -25,6 +24,7 @@ from gui.stage.shaders import (
 from gui.stage.surface_item import DiscItem, IndexPool, LineItem, SurfaceItem
 from gui.theme import GREY_FOR_UNDEFINED, Theme, colour_table
 from gui.viewdata import PaneView, ScaleView
+from gui.widgets.colour_bar import colour_range, is_logarithmic
 
 _MOST_TARGETS = 4  # two panes, each at rest and moving
 
@@ -60,7 +60,7 @@ class _Slot:
     lines_of: tuple[object, ...] = ()
 
     def sheet(self, index: int) -> SurfaceItem:
-        """Return what draws one sheet. Not by setdefault: an item made in vain keeps buffers."""
+        """Return what draws a sheet. Not by setdefault: items made in vain keep buffers."""
         if index not in self.sheets:
             self.sheets[index] = SurfaceItem()
         return self.sheets[index]

@@ -13,8 +13,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, label, set_or_hide
 from gui.viewdata import CellFileView
+from gui.widgets.forms import Choice, label, set_or_hide
 
 QUESTION = (
     "The constants stay as they are. How do the axes x, y, z in which they are written follow "

@@ -17,11 +17,11 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import label, set_or_hide
 from gui.taking_in.preview import PreviewGrid, VerdictLine
 from gui.taking_in.readings import ReadingsForm
 from gui.theme import Theme
 from gui.viewdata import TakingInView
+from gui.widgets.forms import label, set_or_hide
 
 TITLE = "Take in a table"
 LEFT, RIGHT = 470, 530

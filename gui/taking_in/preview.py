@@ -6,10 +6,10 @@ from PySide6.QtCore import QRectF, QSize, Qt
 from PySide6.QtGui import QFont, QFontMetricsF, QPainter, QPaintEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
-from gui.forms import current_theme, text_width
 from gui.theme import Theme
 from gui.verdict_band import draw_verdict
 from gui.viewdata import CellView, ConstantsView, VerdictView
+from gui.widgets.forms import current_theme, text_width
 
 ROW = 23.0
 HEAD = 20.0

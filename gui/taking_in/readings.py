@@ -16,8 +16,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import Choice, current_theme, label
 from gui.viewdata import ReadingChoice
+from gui.widgets.forms import Choice, current_theme, label
 
 SIDE = 11  # of a mark, pixels
 FEW = 3  # choices that fit as buttons beside one another

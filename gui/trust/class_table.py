@@ -5,9 +5,9 @@ from __future__ import annotations
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QAbstractItemView, QHBoxLayout, QPushButton, QVBoxLayout, QWidget
 
-from gui.forms import label, set_or_hide
-from gui.text_table import Column, ColumnKind, Index, Line, TextTable
 from gui.viewdata import ClassRow, TrustView
+from gui.widgets.forms import label, set_or_hide
+from gui.widgets.text_table import Column, ColumnKind, Index, Line, TextTable
 
 KINDS: tuple[ColumnKind, ...] = (
     "label", "number", "number", "number", "number", "number", "number", "words",

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
-from gui.forms import label, set_or_hide
-from gui.text_table import Column, ColumnKind, Line, TextTable
 from gui.viewdata import TableView
+from gui.widgets.forms import label, set_or_hide
+from gui.widgets.text_table import Column, ColumnKind, Line, TextTable
 
 
 class KindTable(QWidget):

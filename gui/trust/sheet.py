@@ -14,11 +14,11 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.forms import ElidedLabel, label, set_or_hide
-from gui.panel import Section
 from gui.trust.class_table import ClassPanel
 from gui.trust.kind_table import KindTable
 from gui.viewdata import TrustView
+from gui.widgets.forms import ElidedLabel, label, set_or_hide
+from gui.widgets.panel import Section
 
 TITLE = "Can this table be trusted?"
 WIDTHS = (46, 26, 28)  # shares of the three columns

@@ -237,7 +237,7 @@ def test_an_interrupt_ends_quietly(folder, capsys, monkeypatch):
     def interrupted(_arguments):
         raise KeyboardInterrupt
 
-    monkeypatch.setattr("core.verbs.RUN", {"summary": interrupted})
+    monkeypatch.setattr("core.command.verbs.RUN", {"summary": interrupted})
     assert cli.main(["summary", "cube.json"]) == 130
     assert capsys.readouterr() == ("", "")
 

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 from scipy.spatial.transform import Rotation
 
-from core import pages
+from core.command import pages
 from core.crystal.cell import UnitCell
 from core.errors import InputError
 from core.state import OrientationChoice, Specimen, as_matrix

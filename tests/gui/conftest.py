@@ -12,7 +12,7 @@ from PySide6.QtWidgets import QApplication
 
 from gui.app import build
 from gui.documents import FIRST_DEMO, first_state, open_demo
-from gui.panel import Disclosure
+from gui.widgets.panel import Disclosure
 from tests.gui import driving
 
 SIZE = (1280, 800)

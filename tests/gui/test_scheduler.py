@@ -1,4 +1,4 @@
-"""The scheduler: the latest request wins, a running one is overtaken, nothing is left behind."""
+"""The scheduler: the latest request wins, a running one is overtaken, nothing is left."""
 
 import threading
 import time

@@ -21,10 +21,10 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from gui.panel import Disclosure
 from gui.plots.frame import Canvas
 from gui.stage.pane import StagePane
 from gui.theme import LIGHT, NIGHT
+from gui.widgets.panel import Disclosure
 from gui.window import _LAYOUT_VERSION
 from tests.gui.driving import (
     changed,

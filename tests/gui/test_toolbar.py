@@ -8,10 +8,10 @@ import pytest
 from PySide6.QtCore import QPoint, QRect, QSize, Qt
 from PySide6.QtWidgets import QToolButton
 
-from gui.forms import Choice
 from gui.theme import LIGHT, style_sheet
 from gui.toolbar import MARGIN, OPTIONS, Group, StageToolbar, flow
 from gui.viewdata import ToolbarView
+from gui.widgets.forms import Choice
 
 ASSETS = (Path(__file__).parents[2] / "assets").as_posix()
 VIEW = ToolbarView(

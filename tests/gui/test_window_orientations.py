@@ -10,12 +10,12 @@ from PySide6.QtWidgets import QComboBox, QLineEdit, QPushButton
 
 from core import live
 from core.state import OrientationChoice
-from gui.forms import DEGREES_PER_PIXEL
 from gui.plots.hemisphere import disc_ground
 from gui.plots.section import section_ground
 from gui.plots.sweep import sweep_axes
 from gui.stage.labels import scene_rect
 from gui.stage.picking import surface_point
+from gui.widgets.forms import DEGREES_PER_PIXEL
 from tests.gui.driving import (
     KEYS,
     changed,

@@ -9,9 +9,9 @@ from PySide6.QtCore import QRectF, Qt
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QPushButton
 
+from core.editing.readings import understand
 from core.files.bench import read_bench
 from core.files.speeds import read_speeds
-from core.measured import understand
 from core.state import SPEED_COLUMNS
 from gui.speeds.residual_plot import strips_in
 from gui.speeds_files import DEMOS

@@ -8,8 +8,8 @@ from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
 
 from core.directional import acoustic_axes as finder
-from gui.panel import Section
 from gui.presenting import waves
+from gui.widgets.panel import Section
 from tests.gui.driving import (
     changed,
     differs,

@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from core.crystal.cell import cell_mismatch
-from core.edits import fits_class
+from core.editing.specimen import fits_class
 from core.files.bench import bench_from_dict, bench_to_dict
 from core.files.opening import open_file
 from core.files.specimen import json_text, read_specimen, specimen_from_dict, specimen_to_dict

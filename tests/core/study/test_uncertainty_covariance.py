@@ -6,7 +6,8 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from core.errors import InputError
-from core.study.covariance import (
+from core.study.uncertainty.changes import independent_covariance
+from core.study.uncertainty.covariance import (
     CELLS,
     KELVIN_21,
     check_covariance,
@@ -19,7 +20,6 @@ from core.study.covariance import (
     rotate_factor,
     rotation_map,
 )
-from core.study.uncertainty import independent_covariance
 from core.tensor.notation import from_upper_triangle, upper_triangle
 from core.tensor.symmetry import CLASS_KEYS, crystal_class
 from tests.materials import hexagonal, random_physical, random_rotation, rotated, trigonal

@@ -8,9 +8,15 @@ import pytest
 from core.directional.medium import Medium
 from core.directional.quantities import quantity
 from core.directional.sphere import directions, sphere_mesh
-from core.study.covariance import factor_of
-from core.study.draws import are_stable, draws, monte_carlo, sample, stability_chance
-from core.study.uncertainty import independent_covariance
+from core.study.uncertainty.changes import independent_covariance
+from core.study.uncertainty.covariance import factor_of
+from core.study.uncertainty.draws import (
+    are_stable,
+    draws,
+    monte_carlo,
+    sample,
+    stability_chance,
+)
 from core.task import Cancelled, Ticker
 from core.tensor.notation import upper_triangle
 from core.tensor.stiffness import Stiffness

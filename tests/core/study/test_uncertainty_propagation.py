@@ -13,8 +13,10 @@ from core.directional.medium import Medium
 from core.directional.quantities import QUANTITIES, quantity
 from core.directional.sphere import directions, sphere_mesh
 from core.errors import InputError
-from core.study.covariance import factor_of, rotate_covariance, rotate_factor
-from core.study.deviations import (
+from core.study.part import part_table
+from core.study.uncertainty.changes import independent_covariance
+from core.study.uncertainty.covariance import factor_of, rotate_covariance, rotate_factor
+from core.study.uncertainty.deviations import (
     aggregate_deviations,
     bounds_deviation,
     debye_deviation,
@@ -23,16 +25,14 @@ from core.study.deviations import (
     extreme_deviations,
     part_deviations,
 )
-from core.study.part import part_table
-from core.study.propagation import changed, contributions, gradient, propagate
-from core.study.sensitivity import (
+from core.study.uncertainty.propagation import changed, contributions, gradient, propagate
+from core.study.uncertainty.sensitivity import (
     deviation,
     gradients,
     mean_square,
     speed_deviation,
     young_deviation,
 )
-from core.study.uncertainty import independent_covariance
 from core.tensor.notation import upper_triangle
 from core.tensor.stiffness import Stiffness
 from core.tensor.symmetry import crystal_class

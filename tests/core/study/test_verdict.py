@@ -3,7 +3,12 @@
 import numpy as np
 import pytest
 
-from core.study.uncertainty import carried, deviations_of, independent_covariance, linear_map
+from core.study.uncertainty.changes import (
+    carried,
+    deviations_of,
+    independent_covariance,
+    linear_map,
+)
 from core.study.verdict import judge, softest_deviation
 from core.tensor.notation import from_upper_triangle, upper_triangle
 from core.tensor.stability import assess

@@ -8,9 +8,9 @@ from PySide6.QtCore import Qt, QUrl
 from PySide6.QtGui import QDesktopServices, QGuiApplication
 from PySide6.QtWidgets import QDialog, QFileDialog
 
-from core.captions import FigureChoice
 from core.files.matrices import read_table
-from core.report_content import SECTIONS, FileNote
+from core.report.captions import FigureChoice
+from core.report.content import SECTIONS, FileNote
 from gui.figures.controls import file_stem, key_of, show_key
 from gui.figures.figure_dialog import FigureDialog, Studio
 from gui.figures.report_dialog import ReportDialog

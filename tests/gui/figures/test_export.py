@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 from PySide6.QtGui import QImage
 
-from core.captions import FIGURE_KINDS, FigureChoice
 from core.errors import InputError
+from core.report.captions import FIGURE_KINDS, FigureChoice
 from gui.figures.drawing import drawable
 from gui.figures.export import (
     FORMATS,

@@ -7,11 +7,11 @@ from html.parser import HTMLParser
 
 import pytest
 
-from core.captions import FigureChoice
 from core.errors import InputError
 from core.numbers import significant
-from core.report_blocks import Table
-from core.report_content import ReportPlan, default_figures, report_content
+from core.report.blocks import Table
+from core.report.captions import FigureChoice
+from core.report.content import ReportPlan, default_figures, report_content
 from core.summary import summarise
 from gui.figures.report import Press, report_steps, run
 from gui.stage.flat_scene import FlatRenderer

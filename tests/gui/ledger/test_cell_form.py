@@ -6,8 +6,8 @@ import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QPushButton
 
-from gui.forms import TextField
 from gui.ledger.cell_form import AxesChoice, AxesQuestion, CellForm
+from gui.widgets.forms import TextField
 from tests.gui.ledger.sample_views import CELL
 
 NAMES = ("a", "b", "c", "alpha", "beta", "gamma")

@@ -7,9 +7,9 @@ from PySide6.QtCore import QEvent, QPointF, Qt
 from PySide6.QtGui import QMouseEvent
 from PySide6.QtWidgets import QApplication, QLabel, QLineEdit
 
-from gui.forms import Choice, DragField, TextField
 from gui.ledger.orientation_form import OrientationButtons, OrientationForm
-from gui.panel import Disclosure
+from gui.widgets.forms import Choice, DragField, TextField
+from gui.widgets.panel import Disclosure
 from tests.gui.ledger.sample_views import ORIENTATION
 
 

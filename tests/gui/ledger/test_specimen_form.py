@@ -6,9 +6,9 @@ import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QPlainTextEdit
 
-from gui.forms import Choice, TextField
 from gui.ledger.specimen_form import SpecimenForm
-from gui.panel import Disclosure
+from gui.widgets.forms import Choice, TextField
+from gui.widgets.panel import Disclosure
 from tests.gui.ledger.sample_views import SPECIMEN
 
 

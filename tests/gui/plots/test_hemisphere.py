@@ -8,9 +8,9 @@ import pytest
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QColor
 
+from core.directional.projection import from_disc, to_disc
 from gui.plots.disc_picture import undefined, value_in
 from gui.plots.hemisphere import HemispherePlot, disc_ground, draw_hemisphere
-from core.directional.projection import from_disc, to_disc
 from gui.theme import LIGHT, colours_of
 from gui.viewdata import ScaleView
 from tests.gui.plots.demo_views import (

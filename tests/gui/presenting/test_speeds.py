@@ -7,7 +7,7 @@ import pytest
 
 from core.crystal.cell import UnitCell
 from core.directional.medium import Medium
-from core.measured import understand
+from core.editing.readings import understand
 from core.state import SPEED_COLUMNS, BenchState, Display, MeasuredSpeeds, Specimen
 from core.study.recovery.fitting import recover
 from core.study.recovery.planning import candidate_directions, plan, rank_next

@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 
 from core.state import BenchState, Specimen, as_matrix
-from core.study.draws import MonteCarlo, Spread, StabilityChance
-from core.study.propagation import Contribution
+from core.study.uncertainty.draws import MonteCarlo, Spread, StabilityChance
+from core.study.uncertainty.propagation import Contribution
 from core.task import Ticker
 from core.tensor.symmetry import CLASS_KEYS
 from gui.presenting import ledger, spread, trust
@@ -149,7 +149,7 @@ def test_words_for_chances_and_shares():
 
 
 def test_fewer_constants_that_noise_does_not_rule_out_are_said():
-    # C44 = 46 ± 1 and (C11 − C12)/2 = 45 ± 0.7: cubic by the numbers, isotropic as far as known.
+    # C44 = 46 ± 1 and (C11 − C12)/2 = 45 ± 0.7: cubic by the numbers, maybe isotropic.
     near = replace(CUBIC.specimen, stiffness=as_matrix(cubic(230.0, 140.0, 46.0)))
     state = uncertain(replace(CUBIC, specimen=near), 1.0)
     view = trust.trust_view(state, found_for(state))

@@ -8,9 +8,9 @@ from PySide6.QtGui import QColor, QFontMetrics, QGuiApplication
 from PySide6.QtWidgets import QApplication
 
 from gui.reading.pin_table import PinTable
-from gui.text_table import PADDING, shorten
 from gui.theme import LIGHT, NIGHT, palette
 from gui.viewdata import ReadingRow, ReadingView
+from gui.widgets.text_table import PADDING, shorten
 
 ROWS = (
     ReadingRow("Young's modulus", "GPa", "112.4", "98.10", "−14.30",

@@ -1,0 +1,1 @@
+"""Searches over directions: extremes, and where two sheets meet."""

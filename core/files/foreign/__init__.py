@@ -1,0 +1,1 @@
+"""Understanding tables as people write them: cells, shapes, units, guesses."""

@@ -1,0 +1,1 @@
+"""The report as plain data: what it says, and how each number was computed."""

@@ -1,0 +1,1 @@
+"""Whether a table can be trusted: symmetry, plausibility, what the data support."""

@@ -1,0 +1,1 @@
+"""How the uncertainty of the constants reaches every number."""

@@ -1,0 +1,1 @@
+"""What the user does, turned into named steps on the bench."""

@@ -1,0 +1,1 @@
+"""Who keeps which part of the window in step with the bench."""
