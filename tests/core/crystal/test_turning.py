@@ -85,7 +85,7 @@ def test_nearest_rotation_undoes_a_small_stretch():
     assert not is_right_handed
 
 
-@pytest.mark.parametrize(("first", "second"), itertools.permutations(range(3), 2))
+@pytest.mark.parametrize(("first", "second"), list(itertools.permutations(range(3), 2)))
 def test_triad_keeps_the_first_exactly_and_the_second_near(first, second):
     along = np.array([0.6, 0.0, 0.8])
     near = np.array([0.0, 0.28, 0.96])
