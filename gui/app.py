@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import faulthandler
 import logging
-import os
 import signal
 import sys
 import traceback
@@ -39,6 +38,7 @@ from gui.pace import Pace
 from gui.presenters.speeds import SpeedsPresenter
 from gui.presenters.window import Presenter
 from gui.scheduler import Scheduler
+from gui.screen import has_screen
 from gui.speeds_files import SpeedFiles
 from gui.stage.composition import Renderer
 from gui.stage.gl_probe import GlReport, probe
@@ -46,9 +46,8 @@ from gui.stage.renderer import make_renderer
 from gui.window import Window, build_views
 
 NO_SCREEN = (
-    "tricline: there is no screen to open a window on (DISPLAY and WAYLAND_DISPLAY are "
-    "not set). The headless verbs work: try “tricline summary FILE”, or set "
-    "QT_QPA_PLATFORM=offscreen."
+    "there is no screen to open a window on; the headless verbs work without one: "
+    "try “tricline summary FILE”."
 )
 _LEAVES = (  # of Help: words in the menu, leaf, key
     ("&Quantities and formulas", "Quantities", "F1"),
@@ -216,17 +215,10 @@ def _name_step(action: object, word: str, text: str) -> None:
 
 
 # ------------------------------------------------------------------ running
-def has_screen() -> bool:
-    """Return whether Qt will find something to draw on."""
-    if sys.platform != "linux" or os.environ.get("QT_QPA_PLATFORM"):
-        return True
-    return bool(os.environ.get("DISPLAY") or os.environ.get("WAYLAND_DISPLAY"))
-
-
 def run(words: list[str]) -> int:
     """Open the window, on a file or on the first demo specimen, and stay until it is closed."""
     if not has_screen():
-        sys.stderr.write(f"{NO_SCREEN}\n")
+        sys.stderr.write(f"tricline: {NO_SCREEN}\n")
         return 2
     path = Path(words[0]) if words else None
     try:
