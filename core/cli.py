@@ -7,21 +7,19 @@ from __future__ import annotations
 
 import argparse
 import difflib
-import io
 import json
-import os
 import re
 import sys
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any, NoReturn
 
-from core.command import figure_words, recovery_words
+from core.command import figure_words, recovery_words, terminal
+from core.command.several import Outcome, SomeFailedError
 from core.errors import InputError
 from core.version import VERSION
 
 UNUSABLE = 2  # exit status for an input that cannot be used
 INTERRUPTED = 130  # what shells give for Ctrl+C
-_PLAIN_SIGNS = str.maketrans({"−": "-", "–": "-", "×": "x", "⁻": "-", "ν": "nu"})
 
 _PROGRAM = """\
 A bench for anisotropic crystals: check a 6x6 table of elastic constants and see it in every
@@ -30,7 +28,11 @@ direction, and compare orientations. Without a verb the window opens, on FILE if
 _FILES = """\
 FILE is a specimen file (.json), a bench file (.tricline; the crystal of A is read), or a text
 table of constants: a 6x6, a triangle, 21 numbers, or a list such as C11 = 168.4. What is
-guessed about a text table is said on stderr.
+guessed about a text table is said on stderr. What numbers cannot say, the text of a table may
+say for itself, in lines such as
+  # unit: kbar          # kind: compliance     # rows: 11 22 33 12 13 23
+  # symmetry: mean      # notation: Kelvin     # name: blank 7
+  # density_kg_m3: 2684                        # crystal_class: trigonal_6
 """
 _DIRECTIONS = """\
 A DIRECTION is one word for the shell:
@@ -134,10 +136,17 @@ def main(
         if run is None:
             raise InputError(f"{arguments.verb} draws, and there is nothing to draw with here.",
                              f"Run: tricline {arguments.verb}.")
-        results, page = run(arguments)
-        return _write(_json(results) if arguments.json else page(results))
+        _write(run(arguments), arguments.json)
+        return 0
+    except SomeFailedError as some:
+        if some.outcome is not None:
+            _write(some.outcome, arguments.json)
+        for error in some.errors:
+            terminal.say(str(error))
+        terminal.say(f"{len(some.errors)} of {some.count} files cannot be used.")
+        return UNUSABLE
     except InputError as error:
-        print(f"tricline: {error}", file=sys.stderr)
+        terminal.say(str(error))
         return UNUSABLE
     except KeyboardInterrupt:
         return INTERRUPTED
@@ -160,6 +169,8 @@ def read_words(words: Sequence[str]) -> argparse.Namespace:
         near = nearest_verb(words[0])
         hint = f"Did you mean {near}?" if near else f"There are {', '.join(VERBS)}."
         raise InputError(f"“{words[0]}” is not a verb.", hint)
+    if words and words[0].startswith("-") and words[0] not in ("-h", "--help", "--version"):
+        raise InputError(f"“{words[0]}” is no option.", "See tricline --help.")
     # A word such as -1,0,0 is a direction; a blank before it keeps argparse from taking it for
     # an option.
     guarded = [f" {word}" if re.match(r"-[\d.]", word) else word for word in words]
@@ -176,7 +187,13 @@ class _Parser(argparse.ArgumentParser):
 
     def error(self, message: str) -> NoReturn:
         """Raise `InputError` in place of printing the usage."""
-        raise InputError(f"{message[:1].upper()}{message[1:]}.", f"See {self.prog} --help.")
+        hint = f"See {self.prog} --help."
+        _, is_surplus, rest = message.partition("unrecognized arguments: ")
+        if is_surplus:
+            word = rest.split()[0]
+            fault = "is no option" if word.startswith("-") else "is one argument too many"
+            raise InputError(f"“{word}” {fault}.", hint)
+        raise InputError(f"{message[:1].upper()}{message[1:]}.", hint)
 
 
 def _build_parser() -> argparse.ArgumentParser:
@@ -212,12 +229,14 @@ def _build_parser() -> argparse.ArgumentParser:
 
 
 def _add_files(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("files", nargs="+", metavar="FILE", help="specimens")
+    verb.add_argument("files", nargs="+", metavar="FILE", help="specimens; or a pattern")
+    figure_words.add_density(verb)
 
 
 def _add_along(verb: argparse.ArgumentParser) -> None:
     verb.add_argument("file", metavar="FILE", help="the specimen")
     verb.add_argument("directions", nargs="+", metavar="DIRECTION", help="as above")
+    figure_words.add_density(verb)
 
 
 def _add_rotate(verb: argparse.ArgumentParser) -> None:
@@ -281,32 +300,19 @@ VERBS = tuple(_VERBS)
 # --- writing the results --------------------------------------------------------------------
 
 
+def _write(outcome: Outcome, as_json: bool) -> None:
+    """Print results as JSON or as a page."""
+    results, page = outcome
+    if as_json:
+        terminal.write(_json(results), is_page=False)
+    else:
+        terminal.write(page(results))
+
+
 def _json(results: Any) -> str:
     """Return one JSON document, in ASCII where the terminal does not take UTF-8."""
-    plain = not _takes_unicode()
+    plain = not terminal.takes_unicode()
     return json.dumps(results, indent=2, ensure_ascii=plain, allow_nan=False) + "\n"
-
-
-def _takes_unicode() -> bool:
-    encoding = getattr(sys.stdout, "encoding", None) or "ascii"
-    return str(encoding).lower().startswith("utf")
-
-
-def _write(text: str) -> int:
-    """Print a text; return the exit status. A reader that has seen enough is no error."""
-    if isinstance(sys.stdout, io.TextIOWrapper):
-        sys.stdout.reconfigure(errors="replace")
-    if not _takes_unicode():
-        text = text.translate(_PLAIN_SIGNS)  # a lost minus would be a wrong number
-    try:
-        sys.stdout.write(text)
-        sys.stdout.flush()
-    except OSError as error:
-        # Python flushes once more when it ends; let that go nowhere.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        if not isinstance(error, BrokenPipeError):
-            raise InputError(f"The results cannot be written ({error.strerror}).") from None
-    return 0
 
 
 if __name__ == "__main__":

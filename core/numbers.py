@@ -14,6 +14,8 @@ _EXPONENT = r"([eEdD][+-]?\d+)?"
 _NUMBER = re.compile(rf"[+-]?(\d+\.?\d*|\.\d+){_EXPONENT}")
 _GROUPED = re.compile(rf"[+-]?[1-9]\d{{0,2}}(,\d{{3}})+(\.\d*)?{_EXPONENT}")
 _DECIMAL_COMMA = re.compile(rf"[+-]?\d*,\d+{_EXPONENT}")
+_POWER_OF_TEN = re.compile(r"(?<=[\d.])×10([⁻⁰¹²³⁴⁵⁶⁷⁸⁹]+)$")
+_LOWERED = str.maketrans("⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "-0123456789")
 _RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 _LEAST_PLAIN, _MOST_PLAIN = -4, 5  # powers of ten written out; beyond them ×10ⁿ
@@ -22,15 +24,16 @@ _LEAST_PLAIN, _MOST_PLAIN = -4, 5  # powers of ten written out; beyond them ×10
 def parse_number(text: str, where: str = "") -> float:
     """Return the number that a field or a table cell holds.
 
-    A Unicode minus and a Fortran exponent (1.5D+02) are understood. A decimal comma is read
-    only where no thousands reading is possible: "168,4" is a number, "1,684" is not.
+    A Unicode minus, a Fortran exponent (1.5D+02) and a power of ten (1.5×10²) are understood.
+    A decimal comma is read only where no thousands reading is possible: "168,4" is a number,
+    "1,684" is not.
 
     Raises
     ------
     InputError
         For anything else, for NaN, and for numbers too large for a computer.
     """
-    plain = text.strip().translate(_MINUSES)
+    plain = _POWER_OF_TEN.sub(_as_exponent, text.strip().translate(_MINUSES))
     if not plain:
         raise InputError("The cell is empty; a number was expected.", where=where)
     if "," in plain:
@@ -41,6 +44,10 @@ def parse_number(text: str, where: str = "") -> float:
     if not math.isfinite(value):
         raise InputError(f"“{shortened(text)}” is too large to be a number here.", where=where)
     return value
+
+
+def _as_exponent(found: re.Match[str]) -> str:
+    return f"e{found[1].translate(_LOWERED)}"
 
 
 def _without_comma(plain: str, where: str) -> str:

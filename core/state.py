@@ -130,6 +130,8 @@ class MeasuredSpeeds:
         Young's modulus along the pin.
     comments : tuple of str
         Comment lines of the file, kept on saving.
+    name : str
+        Of the file they came from, without its ending; empty where they were typed.
     """
 
     rows: tuple[tuple[str, ...], ...] = ()
@@ -143,6 +145,7 @@ class MeasuredSpeeds:
     robust: bool = False
     criterion: str = "determinant"
     comments: tuple[str, ...] = ()
+    name: str = ""
 
     @property
     def frame(self) -> CrystalFrame:

@@ -40,13 +40,14 @@ from core.study.part import (
     engineering_constants,
     part_table,
 )
+from core.study.trust.plausibility import density_notes, plausibility_notes
 from core.study.verdict import judge
 from core.task import Ticker
 from core.tensor.averages import Averages, Bounds, anisotropy, averages, hashin_shtrikman
 from core.tensor.hidden_axes import nearest_classes
 from core.tensor.notation import reorder, rows_text
 from core.tensor.stability import assess
-from core.tensor.symmetry import distance
+from core.tensor.symmetry import distance, laue_rotations
 
 _EXTREME_KEYS = {
     "young": "young_gpa",
@@ -93,7 +94,17 @@ def summarise(specimen: Specimen, ticker: Ticker | None = None) -> dict[str, Any
         "density_kg_m3": specimen.density,
         "debye_speed_km_s": _debye(medium),
         "extremes": _extremes(extremes(medium, ticker)),
+        "notes": _notes(specimen),
     }
+
+
+def _notes(specimen: Specimen) -> list[str]:
+    """Return what is odd about a crystal, but for a missing density: that stands by itself."""
+    notes = plausibility_notes(
+        stiffness_of(specimen), specimen.density, claimed_class(specimen), specimen.crystal_axes
+    )
+    missing = density_notes(None) if specimen.density is None else ()
+    return [note for note in notes if note not in missing]
 
 
 def _verdict(specimen: Specimen) -> str:
@@ -222,8 +233,9 @@ def compare(
 ) -> dict[str, Any]:
     """Return A, B and B − A of the part table of two orientations or two crystals.
 
-    A row that one of the two has not, as the waves of a crystal without a density, is None
-    there.
+    The misorientation is given as the parts stand, and, for crystals of one class, with the
+    turns that bring such a crystal back onto itself. A row that one of the two has not, as the
+    waves of a crystal without a density, is None there.
     """
     rotation_a, rotation_b = rotation_of(choice_a, first), rotation_of(choice_b, second)
     table_a, table_b = (
@@ -234,11 +246,27 @@ def compare(
         "a": _part(first, choice_a, rotation_a),
         "b": _part(second, choice_b, rotation_b),
         "misorientation_deg": misorientation(rotation_a, rotation_b).angle_deg,
+        "misorientation_by_symmetry_deg": _by_symmetry(first, rotation_a, second, rotation_b),
         "rows": [
             _compared(row, table_a.get(key), table_b.get(key))
             for key, row in (table_a | table_b).items()
         ],
     }
+
+
+def _by_symmetry(
+    first: Specimen, rotation_a: FloatArray, second: Specimen, rotation_b: FloatArray
+) -> float | None:
+    """Return the least turn between parts that their crystals' own turns leave, degrees.
+
+    None where the two crystals are of different classes. In an isotropic one nothing is turned.
+    """
+    claimed, other = claimed_class(first), claimed_class(second)
+    if (claimed.key, claimed.unique_axis) != (other.key, other.unique_axis):
+        return None
+    if claimed.key == "isotropic":
+        return 0.0
+    return misorientation(rotation_a, rotation_b, laue_rotations(claimed)).angle_deg
 
 
 def _part(

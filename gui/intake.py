@@ -170,12 +170,15 @@ class Intake(Intents):
         return ledger_specimen(self.bench.state)
 
     def _put_in_ledger(self, specimen: Specimen) -> None:
+        before = self._ledger_specimen()
+        had = before.stiffness_std is not None or before.covariance is not None
+        gone = ", the old uncertainties are gone" if had and not specimen.stiffness_std else ""
         self.attempt(
             lambda state: with_specimen(state, specimen), "Take in a table", self._refuse
         )
         self.said.emit(
-            "The table is in. Name, density and unit cell are those from before: change them "
-            "if it is another crystal."
+            f"The table is in{gone}. Name, density and unit cell are those from before: change "
+            "them if it is another crystal."
         )
 
     def _refuse(self, message: str) -> None:

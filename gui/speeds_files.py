@@ -47,6 +47,7 @@ class SpeedFiles:
         self._bench, self._window = bench, window
         self._documents, self.intents = documents, intents
         documents.open_otherwise = self.offer
+        intents.said.connect(window.show_message)
         panel = window.views.speeds.readings
         panel.open_wanted.connect(self.ask_open)
         panel.save_wanted.connect(self.ask_save)

@@ -13,6 +13,7 @@ from PySide6.QtWidgets import QApplication
 _LIGATURES = QFont.Tag("liga")
 SEQUENTIAL_MAP = "viridis"
 DIVERGING_MAP = "CET-D1A"
+_CHUNK_SHARE = 0.35  # of the colour of A in a progress bar: its text stays readable
 GREY_FOR_UNDEFINED = "#9A9A94"
 
 
@@ -229,8 +230,8 @@ QScrollBar::handle:hover {{ background: {faint}; }}
 QScrollBar::add-line, QScrollBar::sub-line {{ width: 0; height: 0; }}
 QScrollBar::add-page, QScrollBar::sub-page {{ background: transparent; }}
 QProgressBar {{ background: {field}; border: 1px solid {hairline}; border-radius: 3px;
-    text-align: center; }}
-QProgressBar::chunk {{ background: {a}; }}
+    color: {ink}; text-align: center; }}
+QProgressBar::chunk {{ background: {chunk}; }}
 """
 
 
@@ -238,4 +239,12 @@ def style_sheet(theme: Theme, folder: str) -> str:
     """Return the application's style sheet; `folder` holds the arrows and ticks of controls."""
     roles = {name: getattr(theme, name) for name in Theme.__dataclass_fields__}
     pictures = {part: f"{folder}/{part}_{theme.name}.svg" for part in ("arrow", "tick")}
-    return _STYLE_SHEET.format(**pictures, **roles)
+    chunk = _mix(theme.a, theme.field, _CHUNK_SHARE)
+    return _STYLE_SHEET.format(chunk=chunk, **pictures, **roles)
+
+
+def _mix(colour: str, ground: str, share: float) -> str:
+    """Return a colour laid over a ground with an opacity."""
+    over, under = QColor(colour), QColor(ground)
+    parts = zip(over.getRgb()[:3], under.getRgb()[:3], strict=True)  # type: ignore[index]
+    return QColor(*(round(share * a + (1 - share) * b) for a, b in parts)).name()

@@ -144,6 +144,10 @@ class Group(QWidget):
             self._words.setVisible(not is_bare)
 
 
+def _height(groups: list[Group], is_bare: bool, width: int) -> int:
+    return flow([box.size_at(is_bare) for box in groups], width)[1]
+
+
 def _row_width(groups: list[Group], is_bare: bool) -> int:
     widths = [box.size_at(is_bare).width() for box in groups]
     return sum(widths) + SPACING * (len(widths) - 1) + 2 * MARGIN
@@ -153,7 +157,8 @@ class StageToolbar(QWidget):
     """One row where there is room, more rows where there is not.
 
     Before a second row is begun the buttons of the options give way one by one, for the View
-    menu has them all, and then the words before the choices.
+    menu has them all, and then the words before the choices. The first two choices need none:
+    the quantity says what it is, and each colour begins with that word.
     """
 
     quantity_chosen = Signal(str)
@@ -183,16 +188,16 @@ class StageToolbar(QWidget):
 
     # ------------------------------------------------------------ building
     def _make_groups(self) -> None:
-        self._quantity.setMinimumContentsLength(17)
+        self._quantity.setMinimumContentsLength(14)
         self._quantity.elide_mode = Qt.TextElideMode.ElideMiddle
-        self._colour.setMinimumContentsLength(8)
+        self._colour.setMinimumContentsLength(10)
         self._plane.setMinimumContentsLength(7)
-        self._colour_group = Group("Colour", self._colour)
+        self._colour_group = Group("", self._colour)
         self._plane_group = Group("Section", self._plane)
         self._sheets_group = self._make_sheets()
         self._option_groups = self._make_options()
         self._groups = [
-            Group("Quantity", self._quantity),
+            Group("", self._quantity),
             self._sheets_group,
             self._make_layouts(),
             self._colour_group,
@@ -331,13 +336,12 @@ class StageToolbar(QWidget):
 
     def _arrangement(self, width: int) -> tuple[list[Group], bool]:
         """Return the groups that stand in a width, and whether they go without their words."""
-        groups = self._used_groups()
-        for optional in reversed(self._option_groups.values()):
-            if _row_width(groups, is_bare=False) <= width:
-                return groups, False
-            if optional in groups:
-                groups.remove(optional)
-        return groups, _row_width(groups, is_bare=False) > width
+        ways = [(self._used_groups(), False)]
+        for optional in self._option_groups.values():  # Cut open, the last, stays longest
+            ways.append(([box for box in ways[-1][0] if box is not optional], False))
+        ways.append((ways[-1][0], True))
+        heights = [_height(groups, is_bare, width) for groups, is_bare in ways]
+        return ways[heights.index(min(heights))]  # the fullest of those with fewest rows
 
     def _place(self) -> None:
         groups, is_bare = self._arrangement(self.width())

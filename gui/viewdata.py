@@ -109,6 +109,7 @@ class OrientationView:
     said_otherwise: tuple[tuple[str, str], ...]  # words, text: the same in other ways
     axes: tuple[str, str, str]  # nearest low-index directions of part X, Y, Z
     note: str  # misorientation between A and B, or ""
+    doubt: str = ""  # a direction that the part's axes miss, or ""
 
 
 # ---------------------------------------------------------------- stage
@@ -204,6 +205,8 @@ class SectionView:
     ticks: FloatArray | None = None  # (2, 2, M) polarisation ticks in the plane
     plane: str = "XZ"  # key of the plane in the combo of planes
     planes: tuple[tuple[str, str], ...] = ()  # key, words
+    far_labels: tuple[str, str] | None = None  # at the left and the bottom; None: −X, −Z
+    logarithmic: tuple[float, float] | None = None  # values at the centre and at the rim
 
 
 @dataclass(frozen=True, eq=False)
@@ -267,6 +270,7 @@ class ReadingView:
     has_b: bool
     notice: str = ""
     side: str = "A"  # whose numbers the first column has: "B" when B is shown alone
+    about: str = ""  # specimen, orientation and pin, the first line of a copy
 
 
 @dataclass(frozen=True)
@@ -289,6 +293,7 @@ class ExtremesView:
     rows: tuple[ExtremeRow, ...]
     pending: bool = False  # still being computed; draw dimmed
     notice: str = ""
+    whose: str = ""  # "crystal of A: blank LM-7" where there are two crystals
 
 
 @dataclass(frozen=True)
@@ -386,6 +391,8 @@ class SourceView:
     rings: tuple[tuple[float, str], ...]  # radius in mm, text; the outermost is the rim
     axis_labels: tuple[str, str]  # part axis to the right and upwards
     notice: str = ""
+    far_labels: tuple[str, str] | None = None  # at the left and the bottom; None: −X, −Z
+    before_time: str = ""  # "wavefronts in part XZ after"
 
 
 # ---------------------------------------------------------------- trust
@@ -399,6 +406,8 @@ class ClassRow:
     tooltip: str
     can_turn: bool  # its axes are worth turning to
     can_exact: bool  # the table is not that class already
+    change: str = ""  # what making it exact as entered changes, in words
+    doubt: str = ""  # why that would be a mistake, or ""
 
 
 @dataclass(frozen=True)

@@ -45,9 +45,8 @@ from gui.trust.sheet import TrustSheet
 from gui.verdict_band import VerdictBand
 from gui.widgets.panel import Section
 
-LEDGER_WIDTH = 360
+LEDGER_WIDTH = 360  # the least in which nothing of either panel is cut
 READING_WIDTH = 338
-_NARROWER_BY = 14
 SHEET_HEIGHT = 330
 _ROOM_FOR_ALL = 1010  # height of the window from which the plots stay beside the open sheet
 _LAYOUT_VERSION = 4  # a layout saved by an older arrangement is not restored
@@ -207,6 +206,7 @@ class Window(QMainWindow):
     def _fill_status_line(self) -> None:
         line = self.statusBar()
         line.setSizeGripEnabled(False)
+        line.setContentsMargins(12, 0, 8, 0)
         self._message.setAccessibleName("Message")
         self._message.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self._progress.setRange(0, 100)
@@ -356,7 +356,7 @@ def _side_panel(content: QWidget, width: int, name: str) -> QFrame:
     area.setAccessibleName(name)
     area.setWidget(content)
     frame = _framed(area)
-    frame.setMinimumWidth(width - _NARROWER_BY)
+    frame.setMinimumWidth(width)
     return frame
 
 

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import argparse
 import glob
+import re
 from collections.abc import Sequence
 from pathlib import Path
 
@@ -21,8 +22,9 @@ A quantity is one of young, compressibility, shear_least, shear_greatest, poisso
 poisson_greatest and, with a density, slowness, phase, wave, power_flow, polarisation, focusing.
 """
 _MANY = """\
-FILE may be a pattern such as "crystals/*.json", in quotes or not. With several files the name
-to write must hold {name}, which becomes the name of each file: --out "figures/{name}.png".
+FILE is a specimen (.json), a bench (.tricline) or a text table of constants, or a pattern such
+as "crystals/*.json", in quotes or not. With several files the name to write must hold {name},
+which becomes the name of each file: --out "figures/{name}.png".
 A file that is there already stays whole until the new one is complete.
 """
 _SIZES = """\
@@ -35,10 +37,11 @@ A polar section: the quantity round a plane of the part. Without --out, or with 
 .csv, as columns of numbers; with .png, .svg or .pdf as a figure (see: tricline figure --help).
 
 {_QUANTITIES}
+{_SIZES}
 Examples:
   tricline section blank.json --quantity young --plane XY
   tricline section blank.json --quantity slowness --plane 1,1,0 --out slowness.csv
-  tricline section bench.tricline --quantity wave --plane XZ --out wave.svg
+  tricline section two_cuts.tricline --quantity wave --plane XZ --out wave.svg
 """
 FIGURE_HELP = f"""\
 A figure of any size. The ending of --out decides what is written:
@@ -65,13 +68,15 @@ against B, cutting error, how each number is computed, cautions, provenance. The
 decides: .pdf for pages, .html for one page for a browser. No screen is needed.
 
 --sections takes some of: specimen verdict constants orientation stability symmetry averages
-extremes figures pin comparison part cutting_error methods cautions provenance
+extremes figures pin comparison part cutting_error methods cautions provenance; the cautions
+are in every report
 --figure KIND:QUANTITY:WHOSE chooses a figure and may be repeated; KIND is surface, section,
 hemisphere, sweep or source; WHOSE is A, B, AB or, for a hemisphere, difference or cost.
 
+{_QUANTITIES}
 {_MANY}
 Examples:
-  tricline report bench.tricline --out report.pdf
+  tricline report two_cuts.tricline --out report.pdf
   tricline report blank.json --b "axis [0 0 1] 15" --out report.html
   tricline report blank.json --figure surface:slowness:A --figure section:young:A --out r.pdf
 """
@@ -113,8 +118,15 @@ def add_report(verb: argparse.ArgumentParser) -> None:
 
 
 def _add_files(verb: argparse.ArgumentParser) -> None:
-    verb.add_argument("files", nargs="+", metavar="FILE", help="specimens or bench files")
+    verb.add_argument("files", nargs="+", metavar="FILE",
+                      help="specimens, benches or text tables of constants")
     verb.add_argument("--out", required=True, metavar="NAME", help="where to write; see above")
+
+
+def add_density(verb: argparse.ArgumentParser) -> None:
+    """Add the density that goes before that of the file."""
+    verb.add_argument("--density", metavar="RHO",
+                      help="kg/m³, else that of the file: 2684, or \"2.684 g/cm3\"")
 
 
 def _add_bench(verb: argparse.ArgumentParser) -> None:
@@ -127,14 +139,15 @@ def _add_bench(verb: argparse.ArgumentParser) -> None:
     verb.add_argument("--side", metavar="SIDE", help="whose: A, B or AB")
     verb.add_argument("--pin", metavar="DIRECTION",
                       help="the direction read, in A's crystal: see tricline along --help")
+    add_density(verb)
 
 
 def _add_look(verb: argparse.ArgumentParser) -> None:
     verb.add_argument("--size", default="85x85mm", metavar="SIZE",
-                      help="85x85mm if left out, 174x95mm for A and B; see above")
+                      help="85x85mm if left out, 174x95mm for surfaces of A and B; see above")
     verb.add_argument("--dpi", type=float, default=300.0, help="dots an inch, 300 if left out")
     verb.add_argument("--text", type=float, default=8.0, metavar="PT",
-                      help="height of text in points, for sizes in millimetres")
+                      help="height of text, 4 to 40 points, for sizes in millimetres")
     verb.add_argument("--ground", default="white", help="white, theme or transparent")
     verb.add_argument("--theme", default="light", help="light or night")
     verb.add_argument("--look", metavar="WHERE", help="from X, Y, Z, or AZIMUTH,ELEVATION")
@@ -145,7 +158,8 @@ def _add_look(verb: argparse.ArgumentParser) -> None:
 
 def _add_reproducible(verb: argparse.ArgumentParser) -> None:
     verb.add_argument("--reproducible", action="store_true",
-                      help="no dates: the same input gives the same bytes")
+                      help="no dates: the same input gives the same bytes, as long as "
+                           "program, libraries and fonts are the same")
 
 
 # --- files ----------------------------------------------------------------------------------
@@ -179,8 +193,12 @@ def outputs(pattern: str, files: Sequence[Path]) -> list[Path]:
     Raises
     ------
     InputError
-        When several files would be written to one place.
+        When several files would be written to one place, or for other words in braces.
     """
+    for word in re.findall(r"\{[^{}]*\}", pattern):
+        if word != "{name}":
+            raise InputError(f"{word} stands for nothing.",
+                             "{name} becomes the name of each file.", "--out")
     targets = [Path(pattern.replace("{name}", path.stem)) for path in files]
     if len(set(targets)) < len(targets):
         raise InputError(

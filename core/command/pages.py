@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Sequence
 from typing import Any
 
 from core.numbers import MINUS, UNDEFINED, significant
+from core.tensor.symmetry import crystal_class
 
 Data = dict[str, Any]
 Page = Callable[[Any], str]
 
 _DUST = 1e-9  # of what is shown with four digits: an index or a percentage below it is zero
 _EXACT = 1e-7  # percent
+_PRINTED = 0.01  # percent: what the rounding of a table of five digits leaves
 _WIDE = 31  # columns of labels
 _EXTREMES = (
     ("young_gpa", "Young's modulus, GPa"),
@@ -22,6 +25,12 @@ _EXTREMES = (
     ("middle_km_s", "middle wave, km/s"),
     ("slow_km_s", "slowest wave, km/s"),
 )
+_ACROSS = {"shear_gpa": "   sheared towards", "poisson": "   contracting along"}
+_OF_AN_UNSTABLE_TABLE = (
+    "The table is unstable: a least value is the least of the positive values, and – stands",
+    "where a quantity is not defined or has no bound, for some strain meets no resistance.",
+)
+_VALUE = 12  # columns of a value
 _INDICES = (
     ("universal", "Universal index"),
     ("log_euclidean", "Log-Euclidean index"),
@@ -59,7 +68,8 @@ def summary(data: Data) -> str:
         _symmetry_lines(data["symmetry"]["nearest"]),
         _average_lines(data["averages"]),
         _index_lines(data["anisotropy"]),
-        _extreme_lines(data["extremes"]),
+        _extreme_lines(data["extremes"], data["stable"]),
+        [f"Note: {note}" for note in data["notes"]],
         [CAUTION],
     ]
     return "\n\n".join("\n".join(block) for block in blocks if block)
@@ -67,18 +77,40 @@ def summary(data: Data) -> str:
 
 def _fact_lines(data: Data) -> list[str]:
     density, debye = data["density_kg_m3"], data["debye_speed_km_s"]
-    class_words, off = data["symmetry"]["declared"], data["symmetry"]["as_entered_percent"]
     facts = {
         "Eigenstiffnesses (Kelvin), GPa": "  ".join(
             map(significant, data["eigenstiffness_gpa"])
         ),
         "Density": f"{significant(density)} kg/m³" if density else "not known: no waves",
         "Debye speed": f"{significant(debye)} km/s" if debye else "not defined",
-        "Claimed class": f"{class_words}, exactly in these axes"
-        if off < _DUST
-        else f"{class_words}, {significant(off, 3)} % away in these axes",
+        "Claimed class": _claim(data["symmetry"]),
     }
     return [f"{label:{_WIDE}} {value}" for label, value in facts.items()]
+
+
+def _claim(symmetry: Data) -> str:
+    """Return in words which class is claimed and whether the table has it.
+
+    A triclinic crystal claims no symmetry: of it is said which class its table has.
+    """
+    claimed, off = symmetry["declared"], symmetry["as_entered_percent"]
+    if claimed == "triclinic":
+        return f"none claimed{_fit_words(symmetry['nearest'])}"
+    if off < _DUST:
+        return f"{claimed}, exactly in these axes"
+    return f"{claimed}, {significant(off, 3)} % away in these axes"
+
+
+def _fit_words(nearest: list[Data]) -> str:
+    """Return which is the simplest class that a table has, to the digits of a printed one."""
+    fitting = [row for row in nearest
+               if row["distance_percent"] < _PRINTED and row["class"] != "triclinic"]
+    if not fitting:
+        return ""
+    best = min(fitting, key=lambda row: len(crystal_class(row["class"]).independent))
+    percent = best["distance_percent"]
+    how = "exactly" if percent < _EXACT else f"within {significant(percent, 2)} %"
+    return f"; fits {best['class']} {how}"
 
 
 def _symmetry_lines(nearest: list[Data]) -> list[str]:
@@ -93,13 +125,13 @@ def _symmetry_lines(nearest: list[Data]) -> list[str]:
 
 
 def _average_lines(averages: Data) -> list[str]:
-    lines = [f"{'Polycrystal':14}{'K GPa':>10}{'G GPa':>10}{'E GPa':>10}{'ν':>10}"]
+    lines = [f"{'Polycrystal':14}{'K GPa':>12}{'G GPa':>12}{'E GPa':>12}{'ν':>12}"]
     for name, label in (("voigt", "Voigt"), ("hill", "Hill"), ("reuss", "Reuss")):
         numbers = (
             significant(averages[name][key])
             for key in ("bulk_gpa", "shear_gpa", "young_gpa", "poisson")
         )
-        lines.append(f"{label:14}" + "".join(f"{number:>10}" for number in numbers))
+        lines.append(f"{label:14}" + "".join(f"{number:>12}" for number in numbers))
     bounds = averages["hashin_shtrikman"]
     if bounds["bulk_low_gpa"] is None:
         return lines
@@ -119,9 +151,10 @@ def _index_lines(indices: Data) -> list[str]:
     ]
 
 
-def _extreme_lines(extremes: Data) -> list[str]:
+def _extreme_lines(extremes: Data, is_stable: bool) -> list[str]:
     lines = [
-        f"{'Over all directions':{_WIDE}}{'least':>10}  {'along':28}{'greatest':>10}  along"
+        f"{'Over all directions':{_WIDE}}{'least':>{_VALUE}}  {'along':28}"
+        f"{'greatest':>{_VALUE}}  along"
     ]
     for key, label in _EXTREMES:
         least, greatest = extremes[key]["min"], extremes[key]["max"]
@@ -130,11 +163,21 @@ def _extreme_lines(extremes: Data) -> list[str]:
             f"{_value(greatest)}  {_place(greatest)}"
         )
         lines.append(line.rstrip())
-    return lines
+        if _across(least) or _across(greatest):
+            across = f"{_ACROSS[key]:{_WIDE}}{'':{_VALUE}}  {_across(least):28}"
+            lines.append(f"{across}{'':{_VALUE}}  {_across(greatest)}".rstrip())
+    return lines if is_stable else [*lines, *_OF_AN_UNSTABLE_TABLE]
 
 
 def _value(found: Data | None) -> str:
-    return f"{significant(None if found is None else found['value']):>10}"
+    return f"{significant(None if found is None else found['value']):>{_VALUE}}"
+
+
+def _across(found: Data | None) -> str:
+    """Return the second direction that a shear modulus or Poisson's ratio goes with."""
+    if found is None or found["transverse"] is None or found["set"] == "all":
+        return ""
+    return _vector(found["transverse"], 3)
 
 
 def _place(found: Data | None) -> str:
@@ -164,14 +207,15 @@ def along_page(name: str, texts: Sequence[str]) -> Page:
 
 def _along_lines(data: Data) -> list[str]:
     lines = [f"   {'unit vector, crystal axes':{_WIDE}} {_vector(data['direction'])}"]
-    lines += [f"   {label:{_WIDE}} {significant(data[key]):>10}" for key, label in _ALONG]
+    lines += [f"   {label:{_WIDE}} {significant(data[key]):>{_VALUE}}" for key, label in _ALONG]
     if data["sheets"] is None:
         return [*lines, "   no density: no waves"]
     lines.append(
-        "   wave      v km/s  1/v s/km   longit.  flow off  focusing"
+        "   wave          v km/s    1/v s/km     longit.    flow off    focusing"
         "  polarisation, crystal axes"
     )
-    for name, sheet in zip(("fastest", "middle", "slowest"), data["sheets"], strict=True):
+    named = list(zip(("fastest", "middle", "slowest"), data["sheets"], strict=True))
+    for name, sheet in named:
         numbers = (
             significant(sheet["speed_km_s"]),
             significant(sheet["slowness_s_km"]),
@@ -179,10 +223,22 @@ def _along_lines(data: Data) -> list[str]:
             _degrees(_without_dust(sheet["power_flow_deg"], 1e-5)),
             significant(sheet["focusing"], 3),
         )
-        columns = "".join(f"{number:>10}" for number in numbers)
+        columns = "".join(f"{number:>{_VALUE}}" for number in numbers)
         degenerate = "  (one of a plane)" if sheet["degenerate"] else ""
         lines.append(f"   {name:7}{columns[1:]}  {_vector(sheet['polarisation'])}{degenerate}")
-    return lines
+    lines.append(f"   {'':17}{'group km/s':>{_VALUE}}  its direction, crystal axes")
+    return lines + [
+        f"   energy of {name:7}{_group_words(sheet['group_km_s'])}" for name, sheet in named
+    ]
+
+
+def _group_words(velocity: Sequence[float | None]) -> str:
+    """Return the group speed and the direction in which the energy goes."""
+    known = [x for x in velocity if x is not None]
+    speed = math.sqrt(sum(x * x for x in known))
+    if len(known) < len(velocity) or speed == 0.0:
+        return f"{UNDEFINED:>{_VALUE}}"
+    return f"{significant(speed):>{_VALUE}}  {_vector([x / speed for x in known])}"
 
 
 def _degrees(value: float | None) -> str:
@@ -196,9 +252,11 @@ def _without_dust(value: float | None, dust: float = _DUST) -> float | None:
 def _vector(components: Sequence[float], decimals: int = 5) -> str:
     """Return the components of a unit vector in columns; rounding dust reads as 0."""
     words = (
-        "0" if abs(x) < _DUST else f"{x:.{decimals}f}".replace("-", MINUS) for x in components
+        "0" if abs(x) < _DUST else f"{round(x, decimals) + 0.0:.{decimals}f}"
+        for x in components
     )
-    return " ".join(f"{word:>{decimals + 3}}" for word in words)
+    line = " ".join(f"{word:>{decimals + 3}}" for word in words)
+    return line.replace("-", MINUS)
 
 
 # --- rotate and compare ---------------------------------------------------------------------
@@ -231,11 +289,23 @@ def _block(
 ) -> list[str]:
     """Return a 6×6 with five significant digits; what is rounding dust of it reads as 0."""
     dust = 1e-12 * max(abs(x) for row in matrix for x in row)
-    lines = [f"{title}; rows {' '.join(rows)}"]
-    for row in matrix:
-        cells = (significant(0.0 if abs(x) < dust else factor * x, 5) for x in row)
-        lines.append("   " + "".join(f"{cell:>11}" for cell in cells))
-    return lines
+    cells = [
+        [significant(0.0 if abs(x) < dust else factor * x, 5) for x in row] for row in matrix
+    ]
+    return [f"{title}; rows {' '.join(rows)}", *(f"   {line}" for line in aligned(cells))]
+
+
+def aligned(rows: Sequence[Sequence[str]]) -> list[str]:
+    """Return rows of numbers as lines, the decimal points of every column below each other."""
+    columns = []
+    for column in zip(*rows, strict=True):
+        parts = [cell.partition(".") for cell in column]
+        before = max(len(whole) for whole, _, _ in parts)
+        after = max(len(point + rest) for _, point, rest in parts)
+        columns.append(
+            [f"{whole:>{before}}{point + rest:{after}}" for whole, point, rest in parts]
+        )
+    return ["   ".join(line).rstrip() for line in zip(*columns, strict=True)]
 
 
 def _engineering_lines(data: Data) -> list[str]:
@@ -275,16 +345,28 @@ def comparison(data: Data) -> str:
     lines = [
         f"A  {data['a']['name']}, {data['a']['orientation']}",
         f"B  {data['b']['name']}, {data['b']['orientation']}",
-        f"Turned against each other by {significant(data['misorientation_deg'])}°",
+        f"Turned against each other by {_turn_words(data)}",
         "",
-        f"{'':38}{'A':>11}{'B':>11}{'B − A':>11}",
     ]
+    cells, labels = [("A", "B", f"B {MINUS} A")], [""]
     for row in data["rows"]:
-        label = f"{row['label']}{', ' if row['unit'] else ''}{row['unit']}"
+        labels.append(f"{row['label']}{', ' if row['unit'] else ''}{row['unit']}")
         size = max(abs(row[key] or 0.0) for key in ("a", "b"))
         dust = 1e-5 if row["unit"] == "°" else max(_DUST, 1e-12 * size)
-        numbers = (
+        a, b, difference = (
             significant(_without_dust(row[key], dust)) for key in ("a", "b", "difference")
         )
-        lines.append(f"{label:38}" + "".join(f"{number:>11}" for number in numbers))
+        cells.append((a, b, difference))
+    lines += [f"{label:38}   {line}".rstrip()
+              for label, line in zip(labels, aligned(cells), strict=True)]
     return "\n".join(lines) + "\n"
+
+
+def _turn_words(data: Data) -> str:
+    """Return the angle as the parts stand, and the least that the crystal's symmetry leaves."""
+    as_it_is, least = data["misorientation_deg"], data["misorientation_by_symmetry_deg"]
+    said = f"{significant(_without_dust(as_it_is, 1e-5))}°"
+    if least is None or abs(least - as_it_is) < 1e-5:
+        return said
+    return (f"{said} as they stand, {significant(_without_dust(least, 1e-5))}° by the crystal's"
+            " symmetry")

@@ -6,10 +6,8 @@ import math
 from pathlib import Path
 from typing import Any
 
-import numpy as np
-
 from core import limits
-from core.arrays import FloatArray
+from core.command.pages import aligned
 from core.crystal.cell import CrystalFrame
 from core.errors import InputError
 from core.files.speeds import SpeedTable, read_speeds
@@ -17,6 +15,7 @@ from core.numbers import MINUS, significant
 from core.study.recovery.fit import Fit, FitOptions
 from core.study.recovery.fitting import recover
 from core.study.recovery.planning import Ranking, rank_next
+from core.study.trust.plausibility import density_notes
 from core.task import Ticker
 from core.tensor.notation import constant_name
 from core.tensor.symmetry import CrystalClass, crystal_class
@@ -51,7 +50,7 @@ def run_recover(
         Where the file is at fault, or there is no density.
     """
     frame = CrystalFrame(class_key=crystal_class(class_name).key) if class_name else None
-    table = read_speeds(path, frame)
+    table = read_speeds(path, frame, needs_cell=True)
     cls, guesses = class_of_table(table, class_name)
     known, sigma = density_of_table(table, density, path.name)
     chosen = options or FitOptions()
@@ -129,7 +128,9 @@ def recover_dict(fit: Fit, ranking: Ranking, guesses: tuple[str, ...] = ()) -> d
             )
         ],
         "not_seen": [combination.text for combination in fit.undetermined],
-        "notes": [*fit.notes, *(_sentence(guess) for guess in guesses)],
+        "notes": [
+            *density_notes(fit.density), *fit.notes, *(_sentence(guess) for guess in guesses)
+        ],
     }
 
 
@@ -148,18 +149,20 @@ def recovery_page(data: dict[str, Any]) -> str:
     """Return the page of one recovery; see `recover_dict`."""
     size = len(data["independent"])
     lines = [
-        f"Class {data['crystal_class']}, {size} constants, from {len(data['readings'])} speeds",
+        f"Class {data['crystal_class']}, {counted(size, 'constant')}, from "
+        f"{counted(len(data['readings']), 'speed')}",
         f"Density {significant(data['density_kg_m3'], 5)} kg/m³",
         "",
         "Stiffness, GPa, crystal axes; rows 11 22 33 23 13 12",
-        *_table_lines(np.array(data["constants_gpa"])),
+        *_table_lines(data["constants_gpa"], data["std_gpa"]),
         "",
         "Independent constants, GPa",
         *_constant_lines(data),
         "",
-        f"Seen               {data['rank']} of {size} combinations",
+        f"Seen               {data['rank']} of {counted(size, 'combination')}",
         *(f"Not seen           {text}" for text in data["not_seen"]),
-        f"χ²                 {significant(data['chi2'])} for {data['dof']} degrees of freedom",
+        f"χ²                 {significant(data['chi2'])} for "
+        f"{counted(data['dof'], 'degree')} of freedom",
         f"Stable             {_stability(data)}",
         f"Outliers           {_row_list(data['outliers'])}",
         "",
@@ -169,10 +172,26 @@ def recovery_page(data: dict[str, Any]) -> str:
     return "\n".join(lines) + "\n"
 
 
-def _table_lines(table: FloatArray) -> list[str]:
-    limit = 1e-9 * float(np.abs(table).max())
-    return ["   " + "".join(f"{significant(0.0 if abs(x) < limit else x, 5):>11}" for x in row)
-            for row in table.tolist()]  # fmt: skip
+def counted(count: int, thing: str) -> str:
+    """Return "1 speed", "2 speeds"."""
+    return f"{count} {thing}{'' if count == 1 else 's'}"
+
+
+def _table_lines(
+    table: list[list[float]], deviations: list[list[float | None]]
+) -> list[str]:
+    """Return the 6×6; a constant with a part in what is not seen has a question mark."""
+    dust = 1e-9 * max(abs(x) for row in table for x in row)
+    cells = [
+        [significant(0.0 if abs(x) < dust else x, 5) + ("?" if std is None else "")
+         for x, std in zip(row, line, strict=True)]
+        for row, line in zip(table, deviations, strict=True)
+    ]
+    lines = [f"   {line}" for line in aligned(cells)]
+    if any("?" in line for line in lines):
+        lines.append("   ? not measured: has a part in what is not seen, which was kept as at "
+                     "the start of the fit")
+    return lines
 
 
 def _constant_lines(data: dict[str, Any]) -> list[str]:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import sys
 from argparse import Namespace
 from collections.abc import Callable
 from dataclasses import replace
@@ -12,9 +11,13 @@ from typing import Any
 import numpy as np
 
 from core.command import pages
+from core.command.figure_words import expand
+from core.command.several import Outcome, for_each, told
+from core.command.terminal import say
 from core.crystal.directions import parse_direction
 from core.directional.quantities import quantity
 from core.errors import InputError
+from core.files.foreign.facts import read_density
 from core.files.opening import open_file
 from core.files.origin import Origin, today
 from core.files.text import write_text
@@ -23,38 +26,47 @@ from core.state import BenchState, OrientationChoice, Specimen, as_vector, rotat
 from core.summary import along, compare, rotate, summarise
 from core.tensor.notation import parse_rows
 
-Outcome = tuple[Any, Callable[[Any], str]]
-"""Results made of dicts, lists and numbers, and what writes them as a page."""
+__all__ = ["RUN", "Outcome", "bench_as_asked", "load", "open_bench"]
 
 
-def open_bench(path: str) -> BenchState:
-    """Return what a file holds as a bench; guesses about a text table are said on stderr."""
+def open_bench(path: str, density: str | None = None) -> BenchState:
+    """Return what a file holds as a bench; guesses about a text table are said on stderr.
+
+    Parameters
+    ----------
+    path : str
+    density : str, optional
+        Goes before that of the file, for both crystals of a bench.
+    """
+    known = None if density is None else read_density(density, "--density")[0]
     opened = open_file(Path(path))
     for guess in opened.guesses:
-        sys.stderr.write(f"tricline: {path}: {guess.rstrip('.')}.\n")
-    return opened.bench or BenchState(opened.specimen)
+        say(f"{path}: {guess.rstrip('.')}.")
+    state = opened.bench or BenchState(opened.specimen)
+    if known is None:
+        return state
+    other = None if state.other is None else replace(state.other, density=known)
+    return replace(state, specimen=replace(state.specimen, density=known), other=other)
 
 
-def load(path: str) -> Specimen:
+def load(path: str, density: str | None = None) -> Specimen:
     """Return the specimen of a file, of a bench file the crystal of A."""
-    return open_bench(path).specimen
-
-
-def _one_or_all(results: list[dict[str, Any]]) -> Any:
-    """Return one object where one was asked for, else the list."""
-    return results if len(results) > 1 else results[0]
+    return open_bench(path, density).specimen
 
 
 def _summary(arguments: Namespace) -> Outcome:
-    found = [summarise(load(path)) for path in arguments.files]
-    return _one_or_all(found), pages.summaries
+    files = expand(arguments.files)
+    found, errors = for_each(
+        files, lambda path: summarise(load(str(path), arguments.density))
+    )
+    return told(found, errors, pages.summaries)
 
 
 def _along(arguments: Namespace) -> Outcome:
-    specimen = load(arguments.file)
+    specimen = load(arguments.file, arguments.density)
     texts = [text.strip() for text in arguments.directions]
     found = [along(specimen, text) for text in texts]
-    return _one_or_all(found), pages.along_page(specimen.name, texts)
+    return told(found, (), pages.along_page(specimen.name, texts))
 
 
 def _rotate(arguments: Namespace) -> Outcome:
@@ -80,7 +92,7 @@ def _compare(arguments: Namespace) -> Outcome:
 
 def bench_as_asked(arguments: Namespace, path: str) -> BenchState:
     """Return the bench of a file, changed by the words of a verb that draws."""
-    state = open_bench(path)
+    state = open_bench(path, arguments.density)
     if arguments.a is not None:
         state = replace(state, orientation_a=OrientationChoice(arguments.a))
     if arguments.b is not None:
@@ -139,7 +151,7 @@ def _recover(arguments: Namespace) -> Outcome:
     if not arguments.json:
         return found, recovery_summary.recovery_page
     for note in found["notes"]:
-        sys.stderr.write(f"tricline: {path}: {note}\n")
+        say(f"{path}: {note}")
     return {key: found[key] for key in _RECOVERED}, recovery_summary.recovery_page
 
 

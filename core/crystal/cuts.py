@@ -23,7 +23,10 @@ from core.errors import InputError
 AXES = "XYZ"
 EDGES = "lwt"
 MOST_TURNS = 3
-_EXAMPLE = "Write for example (YXl) 35.25 or (YXwl) 21.93/33.93."
+_EXAMPLE = (
+    "Write for example (YXl) 35.25 or (YXwl) 21.93/33.93: thickness (part Z), length (part X), "
+    "then the edges turned about."
+)
 _PAIRS = ("ZX", "YX", "XY", "ZY", "YZ", "XZ")
 _SAME = 1e-13
 """Entries of a rotation this near are the same: the least turns that still show."""

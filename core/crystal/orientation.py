@@ -32,6 +32,7 @@ from core.crystal.turning import (
     turns_about,
 )
 from core.errors import InputError
+from core.numbers import MINUS, significant
 
 WAYS: dict[str, str] = {
     "directions": "part axes along crystal directions",
@@ -50,6 +51,9 @@ _EXACT_DEGREES = 1e-11  # indices name a vector this near without loss
 _EXACT = 1e-13
 _PART_AXES = "XYZ"
 _WORD_WAYS = ("bunge", "axis", "matrix", "identity")
+_OTHER_WORDS = {"euler": "bunge"}
+_LARGEST_ANGLE = 1e6  # degrees
+_SEEN_OFF = 0.05  # degrees: a direction missed by less is met as well as indices can say
 _ACCEPTED = (
     'Write "Z=(1 1 0) X=[0 0 1]", "bunge 10 20 30", "(YXl) 35.25", "axis [1 1 1] 15",'
     ' "matrix" and nine numbers, or "identity".'
@@ -83,8 +87,9 @@ def parse_orientation(text: str, frame: CrystalFrame) -> Orientation:
     text : str
         "Z=(1 1 0) X=[0 0 1]": two part axes along directions or plane normals, the first
         exact, the second as near as possible. "bunge 10 20 30": φ1, Φ, φ2. "(YXl) 35.25":
-        IEEE Std 176. "axis [1 1 1] 15": the part axes are the crystal axes turned by the
-        angle about the direction, counter-clockwise when it points at the observer.
+        IEEE Std 176, the parentheses at will. "axis [1 1 1] 15": the part axes are the
+        crystal axes turned by the angle about the direction, counter-clockwise when it points
+        at the observer.
         "matrix" and nine numbers by rows. "identity". Any of them may end in
         "turn 0.5 0 -1": a further turn of the part about its own X, then Y, then Z.
         Degree signs are allowed.
@@ -95,16 +100,26 @@ def parse_orientation(text: str, frame: CrystalFrame) -> Orientation:
     InputError
         If it cannot be read or is no rotation.
     """
-    plain = " ".join(plain_signs(text).split())
+    plain = _usual_words(" ".join(plain_signs(text).split()))
     match = re.fullmatch(r"(.*?)\s*\bturn\b(.*)", plain, re.IGNORECASE)
     main, turn = (match[1] or "identity", match[2]) if match else (plain, "0 0 0")
     way = _way_of(main, text)
     rotation, canonical = _READERS[way](main, frame)
-    x, y, z = _exactly(3, turn, "The turn needs three angles, about X, Y and Z")
+    x, y, z = _angles(_exactly(3, turn, "The turn needs three angles, about X, Y and Z"))
     if x or y or z:
         rotation = turned(rotation, (x, y, z))
         canonical += f" turn {number_text(x)} {number_text(y)} {number_text(z)}"
     return Orientation(read_only(rotation), canonical, way)
+
+
+def _usual_words(text: str) -> str:
+    """Return "Euler 10 20 30" as "bunge 10 20 30", and "YXl 35.25" as "(YXl) 35.25"."""
+    word = (re.match(r"[A-Za-z]*", text) or [""])[0]
+    if word.lower() in _OTHER_WORDS:
+        return _OTHER_WORDS[word.lower()] + text[len(word) :]
+    if re.fullmatch(r"[XYZ]{2}[lwt]{1,3}", word):
+        return f"({word}){text[len(word) :]}"
+    return text
 
 
 def _way_of(main: str, text: str) -> str:
@@ -132,10 +147,32 @@ def _exactly(count: int, text: str, sentence: str) -> tuple[float, ...]:
     return values
 
 
+def _angles(values: tuple[float, ...]) -> tuple[float, ...]:
+    """Return angles in degrees, refusing those whose fraction of a turn rounding has eaten."""
+    for value in values:
+        if not abs(value) <= _LARGEST_ANGLE:
+            raise InputError(
+                f"An angle of {value:g}° is out of reach.",
+                f"Up to ±{_LARGEST_ANGLE:,.0f}° is accepted.",
+            )
+    return values
+
+
 # --- reading each way ----------------------------------------------------------------------
 
 
 def _read_directions(main: str, frame: CrystalFrame) -> tuple[FloatArray, str]:
+    letters, first, second = _two_axes(main, frame)
+    rotation = triad(
+        _PART_AXES.index(letters[0]),
+        np.array(first.vector),
+        _PART_AXES.index(letters[1]),
+        np.array(second.vector),
+    )
+    return rotation, f"{letters[0]}={first.text} {letters[1]}={second.text}"
+
+
+def _two_axes(main: str, frame: CrystalFrame) -> tuple[list[str], Direction, Direction]:
     pieces = re.split(r"([XYZxyz])\s*(?:=|\|\||∥)", main)[1:]
     letters = [letter.upper() for letter in pieces[0::2]]
     if len(letters) != 2 or letters[0] == letters[1]:
@@ -144,13 +181,44 @@ def _read_directions(main: str, frame: CrystalFrame) -> tuple[FloatArray, str]:
         )
     first, second = (parse_direction(piece.strip(" ,;"), frame) for piece in pieces[1::2])
     _check_not_parallel(letters, first, second)
-    rotation = triad(
-        _PART_AXES.index(letters[0]),
-        np.array(first.vector),
-        _PART_AXES.index(letters[1]),
-        np.array(second.vector),
+    return letters, first, second
+
+
+def missed_direction(text: str, frame: CrystalFrame) -> str:
+    """Return how far the second part axis stays from where it was put, or "" where it does not.
+
+    Two directions at other than right angles cannot both be met; the first is.
+
+    Parameters
+    ----------
+    text : str
+        An orientation that `parse_orientation` reads; a further turn is left out.
+    frame : CrystalFrame
+
+    Returns
+    -------
+    str
+        As in "X lies 51.2° from [1 0 0], which is not in the plane (1 1 0)", from 0.05° on.
+    """
+    said = parse_orientation(text, frame)
+    if said.way != "directions":
+        return ""
+    letters, first, second = _two_axes(said.text.partition(" turn ")[0], frame)
+    off = abs(90.0 - _between(first, second))
+    if off < _SEEN_OFF:
+        return ""
+    is_plane = first.text.startswith("(")
+    why = "in the plane" if is_plane else "at right angles to"
+    return (
+        f"{letters[1]} lies {significant(off, 3)}° from {second.text}, which is not {why} "
+        f"{first.text}".replace("-", MINUS)
     )
-    return rotation, f"{letters[0]}={first.text} {letters[1]}={second.text}"
+
+
+def _between(first: Direction, second: Direction) -> float:
+    """Return the angle between two directions, degrees."""
+    a, b = np.array(first.vector), np.array(second.vector)
+    return float(np.degrees(np.arctan2(np.linalg.norm(np.cross(a, b)), a @ b)))
 
 
 def _check_not_parallel(letters: list[str], first: Direction, second: Direction) -> None:
@@ -162,12 +230,15 @@ def _check_not_parallel(letters: list[str], first: Direction, second: Direction)
 
 
 def _read_bunge(main: str, frame: CrystalFrame) -> tuple[FloatArray, str]:
-    angles = _exactly(3, main[len("bunge") :], "Bunge's angles are three, φ1, Φ and φ2")
+    angles = _angles(
+        _exactly(3, main[len("bunge") :], "Bunge's angles are three, φ1, Φ and φ2")
+    )
     return turns_about((2, 0, 2), angles), "bunge " + " ".join(map(number_text, angles))
 
 
 def _read_cut(main: str, frame: CrystalFrame) -> tuple[FloatArray, str]:
     cut = parse_cut(main)
+    _angles(cut.angles)
     return cut_rotation(cut), cut.text
 
 
@@ -180,7 +251,7 @@ def _read_axis(main: str, frame: CrystalFrame) -> tuple[FloatArray, str]:
         pieces = [piece for piece in re.split(r"[\s,;]+", rest.replace("°", " ")) if piece]
         where, angle_part = ",".join(pieces[:3]), " ".join(pieces[3:])
     sentence = "'axis' needs a direction and then one angle"
-    (angle,) = _exactly(1, angle_part, sentence)
+    (angle,) = _angles(_exactly(1, angle_part, sentence))
     axis = parse_direction(where, frame)
     turn = axis_turn(np.array(axis.vector), angle)
     return turn.T, f"axis {axis.text} {number_text(angle)}"

@@ -27,8 +27,8 @@ class Quantity:
     key : str
         Its name in files and on the command line.
     name, short, symbol, unit : str
-        For the window, `short` for narrow tables; the unit is empty for a pure number. Values
-        are in this unit.
+        For the window, `short`, of symbols, for narrow tables; the unit is empty for a pure
+        number. Values are in this unit.
     sheets : int
         1, or 3 from the fastest wave to the slowest.
     signed : bool
@@ -138,7 +138,7 @@ _ENTRIES = (
     Quantity(
         key="young",
         name="Young's modulus",
-        short="Young's modulus",
+        short="E",
         symbol="E",
         unit="GPa",
         sheets=1,
@@ -154,7 +154,7 @@ _ENTRIES = (
     Quantity(
         key="compressibility",
         name="Linear compressibility",
-        short="linear compr.",
+        short="β",
         symbol="β",
         unit="1/TPa",
         sheets=1,
@@ -170,7 +170,7 @@ _ENTRIES = (
     Quantity(
         key="shear_least",
         name="Shear modulus, least",
-        short="shear, least",
+        short="G least",
         symbol="G min",
         unit="GPa",
         sheets=1,
@@ -186,7 +186,7 @@ _ENTRIES = (
     Quantity(
         key="shear_greatest",
         name="Shear modulus, greatest",
-        short="shear, greatest",
+        short="G greatest",
         symbol="G max",
         unit="GPa",
         sheets=1,
@@ -202,7 +202,7 @@ _ENTRIES = (
     Quantity(
         key="poisson_least",
         name="Poisson's ratio, least",
-        short="Poisson, least",
+        short="ν least",
         symbol="ν min",
         unit="",
         sheets=1,
@@ -218,7 +218,7 @@ _ENTRIES = (
     Quantity(
         key="poisson_greatest",
         name="Poisson's ratio, greatest",
-        short="Poisson, greatest",
+        short="ν greatest",
         symbol="ν max",
         unit="",
         sheets=1,
@@ -234,7 +234,7 @@ _ENTRIES = (
     Quantity(
         key="slowness",
         name="Slowness",
-        short="slowness",
+        short="1/v",
         symbol="1/v",
         unit="s/km",
         sheets=3,
@@ -251,7 +251,7 @@ _ENTRIES = (
     Quantity(
         key="phase",
         name="Phase speed",
-        short="phase speed",
+        short="v",
         symbol="v",
         unit="km/s",
         sheets=3,
@@ -267,7 +267,7 @@ _ENTRIES = (
     Quantity(
         key="wave",
         name="Wave surface (group velocity)",
-        short="group speed",
+        short="V group",
         symbol="V",
         unit="km/s",
         sheets=3,
@@ -284,7 +284,7 @@ _ENTRIES = (
     Quantity(
         key="power_flow",
         name="Power-flow angle",
-        short="power flow off",
+        short="ψ flow",
         symbol="ψ",
         unit="°",
         sheets=3,
@@ -300,7 +300,7 @@ _ENTRIES = (
     Quantity(
         key="polarisation",
         name="Polarisation deviation",
-        short="polarisation off",
+        short="p off",
         symbol="δ",
         unit="°",
         sheets=3,
@@ -317,7 +317,7 @@ _ENTRIES = (
     Quantity(
         key="focusing",
         name="Focusing",
-        short="focusing",
+        short="A focusing",
         symbol="A",
         unit="",
         sheets=3,

@@ -16,6 +16,7 @@ from core import limits
 from core.arrays import FloatArray
 from core.crystal.cell import CrystalFrame
 from core.errors import InputError
+from core.files.foreign.facts import read_density as density_of_text
 from core.files.speed_cells import Fault, read_row, uses_indices
 from core.files.speeds import SpeedTable, speeds_text
 from core.numbers import full_precision, parse_number
@@ -36,7 +37,6 @@ _FLIGHT = tuple(_PLACE[name] for name in ("thickness_mm", "transit_us"))
 _COMPONENTS = ("nx", "ny", "nz")
 _PLANNED = re.compile(r"planned:\s*(.*?)(?:;\s*sheet\s*([123]))?")
 _IDLE_ZERO = re.compile(r"(?<=\d)\.0(?!\d)")  # of 38.0, which was written 38
-_PLUS_MINUS = re.compile(r"\s*(?:±|\+/-|\+-)\s*")
 _LARGEST_WHOLE, _WHOLE = 12, 1e-12  # components that are written as whole numbers
 _WIDEST_ERROR = 30.0  # degrees; beyond it a direction is not known at all
 
@@ -154,11 +154,8 @@ def read_density(text: str) -> tuple[float | None, float]:
     """
     if not text.strip():
         return None, 0.0
-    value, *sigma = [parse_number(part, "density")
-                     for part in _PLUS_MINUS.split(text.strip(), maxsplit=1)]  # fmt: skip
-    if sigma and sigma[0] < 0:
-        raise InputError("The uncertainty of the density is below zero.", where="density")
-    return limits.density(value, "density"), sigma[0] if sigma else 0.0
+    value, sigma = density_of_text(text, "density")
+    return value, sigma or 0.0
 
 
 def read_direction_sigma(text: str) -> float:
@@ -324,17 +321,22 @@ def _overwritten(row: Row, columns: Sequence[str], line: Sequence[str]) -> Row:
 def with_constants(specimen: Specimen, fit: Fit, speeds: MeasuredSpeeds) -> Specimen:
     """Return the specimen with the constants of a fit and everything they rest on.
 
-    Density, class, and a cell with its axes where the readings have one, go with them. A
-    combination that the readings do not see gets the mean eigenstiffness as its standard
-    uncertainty: no more is known of it than that it belongs to a crystal.
+    Density, class, and a cell with its axes where the readings have one, go with them. Of a
+    specimen of another class nothing is kept: its name, cell and temperature are another
+    crystal's. A combination that the readings do not see gets the mean eigenstiffness as its
+    standard uncertainty, and the notes name it: no more is known of it than that it belongs
+    to a crystal.
     """
     covariance = whole_covariance(fit)
+    base = specimen if is_same_crystal(specimen, fit, speeds) else Specimen(
+        f"Constants from {speeds.name or 'measured speeds'}", specimen.stiffness
+    )  # fmt: skip
     cell = {} if speeds.cell is None else {
         "cell": speeds.cell, "crystal_axes": speeds.crystal_axes
     }  # fmt: skip
     deviations = _deviations(covariance)
     return replace(
-        specimen,
+        base,
         stiffness=as_matrix(limits.stiffness(fit.stiffness, "fit")),
         stiffness_std=as_matrix(deviations),
         covariance=as_matrix(covariance),
@@ -342,8 +344,38 @@ def with_constants(specimen: Specimen, fit: Fit, speeds: MeasuredSpeeds) -> Spec
         crystal_class=fit.cls.key,
         unique_axis=speeds.unique_axis,
         source=f"fit of {len(fit.readings)} measured speeds",
+        notes=_with_note(base.notes, unseen_note(fit)),
         **cell,  # type: ignore[arg-type]
     )
+
+
+def is_same_crystal(specimen: Specimen, fit: Fit, speeds: MeasuredSpeeds) -> bool:
+    """Tell whether the readings can be of a specimen: whether both claim one symmetry."""
+    claimed = crystal_class(specimen.crystal_class, specimen.unique_axis)
+    return crystal_class(fit.cls.key, speeds.unique_axis) == claimed
+
+
+def unseen_words(combinations: Sequence[str]) -> str:
+    """Return "3 constants were not seen: C12, C23, C25"; nothing where all were."""
+    if not combinations:
+        return ""
+    is_single = not any(" " in text for text in combinations)
+    what = "constant" if is_single else "combination of constants"
+    if len(combinations) > 1:
+        what = what.replace(what.split()[0], f"{what.split()[0]}s", 1)
+    verb = "was" if len(combinations) == 1 else "were"
+    return f"{len(combinations)} {what} {verb} not seen: {', '.join(combinations)}"
+
+
+def unseen_note(fit: Fit) -> str:
+    """Return what the notes of a specimen say of constants that nobody measured."""
+    words = unseen_words([combination.text for combination in fit.undetermined])
+    return words and f"{words}. Kept as at the start of the fit, with large uncertainties."
+
+
+def _with_note(notes: str, note: str) -> str:
+    """Return notes with one more line, unless it is there."""
+    return notes if note in notes else "\n".join(filter(None, (notes, note)))
 
 
 def whole_covariance(fit: Fit) -> FloatArray:

@@ -16,7 +16,9 @@ from core import limits
 from core.arrays import FloatArray
 from core.crystal.cell import UnitCell, axes_matrix, axes_text, change_of_axes
 from core.errors import InputError
-from core.files.matrices import read_block, read_table, understand
+from core.files.foreign.guess import Guess
+from core.files.foreign.readings import AS_LISTED
+from core.files.matrices import read_block, understand
 from core.numbers import parse_number
 from core.state import Matrix, Specimen, as_matrix, claimed_class, stiffness_of
 from core.study.uncertainty.changes import (
@@ -43,7 +45,8 @@ from core.tensor.symmetry import (
 FITS = 1e-9  # relative distance below which a table has the form of its class
 CELL_FIELDS = ("a", "b", "c", "alpha", "beta", "gamma")
 PASTED = "pasted block"
-_FEW_WORDS = 9  # fewer than in any list of constants: "C11 = 168.4, C12 = 121.4, C44 = 75.4"
+_FEW_WORDS = 9  # fewer than in any table without names
+_NAMED = re.compile(r"[CcSs][\^_{]*[1-6]")  # "C11", "S_{14}": the name of a constant
 _READ_AS: dict[str, dict[str, str]] = {
     "stiffness": {},
     "compliance": {"kind": "compliance", "unit": "1/TPa"},
@@ -168,7 +171,8 @@ def set_block(specimen: Specimen, face: str, row: int, column: int, text: str) -
     A full table (6×6, a triangle, 21 numbers, a list such as C11 = 168.4) replaces everything
     wherever it is pasted, with it the uncertainties of the old numbers. A smaller block fills
     the cells from (row, column) on, and their mirror images; it may break the form of the
-    class. `paste_guesses` tells what was guessed about the text.
+    class. A list of the constants of a class claims that class. `paste_words` tells how the
+    text was taken.
     """
     block = _smaller_block(text)
     if block is None:
@@ -187,22 +191,59 @@ def set_block(specimen: Specimen, face: str, row: int, column: int, text: str) -
     return _with_components(specimen, face, table, PASTED)
 
 
-def paste_guesses(face: str, text: str) -> tuple[str, ...]:
-    """Return what is guessed about a pasted text (unit, order of rows), in sentences."""
-    if face != "stiffness" or _smaller_block(text) is not None:
+def paste_words(before: Specimen, after: Specimen, face: str, text: str) -> tuple[str, ...]:
+    """Return how a pasted table was taken, and what of the old one is gone or stays.
+
+    What changes the numbers comes first, what was merely taken for granted last.
+
+    Parameters
+    ----------
+    before, after : Specimen
+        As `set_block` got and gave it.
+    face, text : str
+    """
+    if face == "uncertainty" or _smaller_block(text) is not None:
         return ()
-    return read_table(text, PASTED).guesses
+    readings = understand(text, _READ_AS[face], PASTED).readings
+    telling = {guess.field: _taken_words(guess) for guess in readings}
+    words = [telling.pop(field, "") for field in ("unit", "class")]
+    is_listed = any(guess.field == "class" and guess.value != AS_LISTED for guess in readings)
+    if not is_listed and not fits_class(after):
+        words.append(f"the claim to be {claimed_class(after).name} is as before")
+    had = before.stiffness_std is not None or before.covariance is not None
+    if had and after.stiffness_std is None:
+        words.append("the old uncertainties are gone")
+    return tuple(word for word in (*words, *telling.values()) if word)
 
 
-def is_open_table(face: str, text: str) -> bool:
-    """Return whether a text is a whole table about which the user has to be asked something."""
+def _taken_words(guess: Guess) -> str:
+    """Return how one thing about a table was taken; nothing where that goes without saying."""
+    if guess.field == "class":
+        if guess.value == AS_LISTED:
+            return ""
+        name = crystal_class(*guess.value.split()).name.replace(",", " with")
+        return f"class taken as {name}"
+    converted = guess.field == "unit" and guess.value not in ("GPa", "1/TPa")
+    if converted:
+        return f"unit taken as {guess.value} and converted"
+    return f"{guess.field} taken as {guess.value}" if guess.is_guess else ""
+
+
+def belongs_in_dialog(face: str, text: str) -> bool:
+    """Return whether a pasted text is more than the grid can take without asking.
+
+    A plain block of numbers and a table that leaves no question are the grid's own; so is
+    what holds no digit, which is no table at all.
+    """
+    if face != "stiffness" or not any(letter.isdigit() for letter in text):
+        return False
     try:
         if _smaller_block(text) is not None:
             return False
         readings = understand(text, _READ_AS[face], PASTED).readings
     except InputError:
-        return False
-    return face == "stiffness" and any(reading.question for reading in readings)
+        return True
+    return any(reading.question for reading in readings)
 
 
 def _smaller_block(text: str) -> FloatArray | None:
@@ -216,7 +257,7 @@ def _smaller_block(text: str) -> FloatArray | None:
     try:
         block = np.array(read_block(text, PASTED))
     except InputError:
-        if len(text.split()) < _FEW_WORDS:
+        if len(text.split()) < _FEW_WORDS and not _NAMED.search(text):
             raise
         return None
     height, width = block.shape
@@ -254,7 +295,12 @@ def _with_whole_table(specimen: Specimen, face: str, text: str) -> Specimen:
     limits.stiffness(known.stiffness, PASTED)
     std = None if known.std is None else _known(known.std)
     table = as_matrix(known.stiffness)
-    return replace(specimen, stiffness=table, stiffness_std=std, covariance=None)
+    taken = replace(specimen, stiffness=table, stiffness_std=std, covariance=None)
+    listed = known.reading("class")
+    if listed is None or listed.value == AS_LISTED:
+        return taken
+    key, *axis = listed.value.split()
+    return replace(taken, crystal_class=key, unique_axis=(*axis, specimen.unique_axis)[0])
 
 
 # --- the class ------------------------------------------------------------------------------

@@ -120,4 +120,5 @@ _READERS: dict[str, Callable[[str, Any], Any]] = {
     "robust": _flag,
     "criterion": _choice,
     "comments": _comments,
+    "name": _text,
 }

@@ -14,6 +14,7 @@ import numpy as np
 from core.arrays import BoolArray, FloatArray, read_only
 from core.errors import InputError
 from core.files.foreign.cells import read_cells, read_number_rows
+from core.files.foreign.facts import NO_FACTS, Facts, as_said, read_facts
 from core.files.foreign.guess import Guess, RawTable
 from core.files.foreign.readings import (
     AS_LISTED,
@@ -63,12 +64,15 @@ class Understood:
         How each thing was understood, in the order of `FIELDS`.
     notes : tuple of str
         What is odd about the table but does not stop it.
+    facts : Facts
+        What the text says besides its numbers: name, density, class.
     """
 
     stiffness: FloatArray
     std: FloatArray | None
     readings: tuple[Guess, ...]
     notes: tuple[str, ...]
+    facts: Facts = NO_FACTS
 
     @property
     def questions(self) -> tuple[str, ...]:
@@ -92,11 +96,17 @@ class ForeignTable:
         Sentences: what was taken for granted, and why; and what is odd.
     std : ndarray, shape (6, 6), or None
         Standard uncertainties, GPa.
+    facts : Facts
+        What the text says besides its numbers: name, density, class.
+    class_reading : Guess or None
+        Which class a list of named constants is one of; None for other tables.
     """
 
     stiffness: FloatArray
     guesses: tuple[str, ...]
     std: FloatArray | None = None
+    facts: Facts = NO_FACTS
+    class_reading: Guess | None = None
 
 
 def understand(
@@ -112,7 +122,8 @@ def understand(
     ----------
     text : str
     overrides : mapping of str to str, optional
-        Fields of `FIELDS` and what the user chose for them.
+        Fields of `FIELDS` and what the user chose for them; they go before what the text
+        itself says in lines such as ``# symmetry: mean``.
     where : str
         The file it comes from, for messages.
 
@@ -129,6 +140,8 @@ def understand(
     if unknown:
         raise ValueError(f"no reading of a table is called {', '.join(sorted(unknown))}")
     table = read_cells(text, where)
+    facts = read_facts(table, where)
+    by_hand, chosen = chosen, {**facts.said, **chosen}
     raw, shape = read_shape(table, chosen.get("shape"), where)
     raw, symmetry = read_symmetry(raw, chosen.get("symmetry"))
     kind = read_kind(table, raw, chosen.get("kind"))
@@ -138,7 +151,9 @@ def understand(
     components = tensor_components(raw.values, kind.value, rows.value, notation.value)
     listed = None
     if np.isnan(components).any():
-        components, listed = read_class(components, chosen.get("class"), where)
+        components, listed = read_class(
+            components, chosen.get("class"), where, _class_label(facts), kind.value
+        )
     factor = parse_unit(unit.value).factor
     is_compliance = kind.value == "compliance"
     stiffness = _stiffness(components * factor, is_compliance)
@@ -147,9 +162,22 @@ def understand(
         sigmas = factor * _component_sigmas(raw, is_compliance, rows.value, notation.value)
         std = read_only(_std(sigmas, stiffness if is_compliance else None, listed))
     found = (shape, symmetry, kind, unit, rows, notation, listed)
-    readings = tuple(guess for guess in found if guess is not None)
-    notes = _notes(table.headings, raw, kind.value, stiffness)
-    return Understood(stiffness.voigt, std, readings, notes)
+    readings = tuple(
+        guess if guess.field in by_hand else as_said(guess, facts)
+        for guess in found if guess is not None
+    )
+    notes = facts.notes + _notes(
+        tuple(head for head in table.headings if head[0] not in facts.lines),
+        raw, kind.value, stiffness,
+    )
+    return Understood(stiffness.voigt, std, readings, notes, facts)
+
+
+def _class_label(facts: Facts) -> str:
+    """Return the class that a text claims, as `read_class` names it; empty where none."""
+    if facts.class_key == "monoclinic":
+        return f"monoclinic {facts.unique_axis or 'y'}"
+    return facts.class_key or ""
 
 
 def read_table(text: str, where: str = "") -> ForeignTable:
@@ -164,13 +192,22 @@ def read_table(text: str, where: str = "") -> ForeignTable:
     known = understand(text, where=where)
     asked = next((guess for guess in known.readings if guess.question), None)
     if asked is not None:
-        raise InputError(asked.question, f"Say so in the text; {asked.field} can be "
-                         f"{', '.join(asked.choices)}.", where)
+        raise InputError(asked.question, _advice(asked), where)
     guesses = tuple(
         f"{guess.field} taken as {guess.value}: {guess.reason}"
         for guess in known.readings if guess.is_guess
     )
-    return ForeignTable(known.stiffness, guesses + known.notes, known.std)
+    return ForeignTable(known.stiffness, guesses + known.notes, known.std, known.facts,
+                        known.reading("class"))
+
+
+def _advice(asked: Guess) -> str:
+    """Return what to write into the text to answer a question."""
+    if asked.field == "shape":
+        return "Write the numbers as six rows of a triangle or of the whole table."
+    others = [one for one in asked.choices if one != asked.value][:5]
+    rest = f" (or {', '.join(others)})" if others else ""
+    return f"Add a line to the text: # {asked.field}: {asked.value}{rest}."
 
 
 def read_block(text: str, where: str = "") -> list[list[float]]:

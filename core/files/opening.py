@@ -7,9 +7,11 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from core import limits
+from core.errors import InputError
 from core.files import bench, specimen
 from core.files.foreign.readings import AS_LISTED
-from core.files.matrices import read_table, understand
+from core.files.matrices import ForeignTable, read_table
+from core.files.speeds import names_speeds
 from core.files.text import read_text
 from core.state import BenchState, Specimen, as_matrix
 
@@ -71,12 +73,17 @@ def open_file(path: Path) -> Opened:
 
 
 def _open_table(text: str, path: Path) -> Opened:
-    """Return the specimen of a text table, named after its file."""
+    """Return the specimen of a text table, named by the text or else after its file."""
+    if names_speeds(text):
+        raise InputError("This is a file of measured speeds, not a table of constants.",
+                         f"Use: tricline recover {path.name}; in the window, open it on the "
+                         "page of measured speeds.", path.name)
     table = read_table(text, path.name)
-    key, axis = _listed_class(text)
+    key, axis = _claimed_class(table)
     known = Specimen(
-        name=path.stem,
+        name=table.facts.name or path.stem,
         stiffness=as_matrix(limits.stiffness(table.stiffness, path.name)),
+        density=table.facts.density,
         crystal_class=key,
         unique_axis=axis,
         source=f"read from {path.name}",
@@ -85,12 +92,14 @@ def _open_table(text: str, path: Path) -> Opened:
     return Opened(known, guesses=table.guesses)
 
 
-def _listed_class(text: str) -> tuple[str, str]:
-    """Return the class and unique axis that a list of named constants is one of.
+def _claimed_class(table: ForeignTable) -> tuple[str, str]:
+    """Return class and unique axis: what the text claims, else what a list is one of.
 
-    Triclinic where no class was recognised: nothing more is claimed than was written.
+    Triclinic where neither is known: nothing more is claimed than was written.
     """
-    reading = understand(text).reading("class")
+    if table.facts.class_key is not None:
+        return table.facts.class_key, table.facts.unique_axis or "y"
+    reading = table.class_reading
     if reading is None or reading.value == AS_LISTED:
         return "triclinic", "y"
     key, *axis = reading.value.split()

@@ -115,8 +115,13 @@ def check_format(data: dict[str, Any], name: str, version: int, where: str) -> N
     """Refuse a file of another format or of a later version with a plain sentence."""
     found = data.get("format")
     if found != name:
-        said = "no “format”" if found is None else f"“format” is {shortened(repr(found))}"
-        raise InputError(f"This is not a {name} file: it has {said}.", where=where)
+        said = (
+            "it has no “format”" if found is None else f"its “format” is {_shown(found)}"
+        )
+        raise InputError(
+            f"This is not a {name} file: {said}.",
+            f"A file of this kind begins with \"format\": \"{name}\".", where,
+        )
     stated = data.get("version")
     if not isinstance(stated, int) or isinstance(stated, bool) or stated < 1:
         raise InputError("“version” should be a whole number from 1 up.", where=where)
@@ -192,9 +197,16 @@ def specimen_to_dict(specimen: Specimen) -> dict[str, Any]:
 # --- one reader a kind of key ---------------------------------------------------------------
 
 
+def _shown(value: Any) -> str:
+    """Return a JSON value as the file writes it, and null as nothing."""
+    if value is None:
+        return "nothing (null)"
+    return shortened(json.dumps(value, ensure_ascii=False))
+
+
 def _text(value: Any, _key: str) -> str:
     if not isinstance(value, str):
-        raise InputError(f"Text was expected, not {shortened(repr(value))}.")
+        raise InputError(f"Text was expected, not {_shown(value)}.")
     return value
 
 
@@ -208,7 +220,7 @@ def read_number(value: Any, place: str = "") -> float:
     """Return a JSON number as a float; `place` is named in the sentence that refuses it."""
     named = f"{place}: " if place else ""
     if isinstance(value, bool) or not isinstance(value, (int, float)):
-        raise InputError(f"{named}A number was expected, not {shortened(repr(value))}.")
+        raise InputError(f"{named}A number was expected, not {_shown(value)}.")
     try:
         number = float(value)
     except OverflowError:  # a whole number of hundreds of digits

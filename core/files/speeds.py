@@ -23,13 +23,13 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
-from core import limits
 from core.crystal.cell import CrystalFrame, UnitCell, axes_text
 from core.crystal.indices import read_numbers
 from core.errors import InputError
+from core.files.foreign.facts import read_density
 from core.files.speed_cells import COLUMNS, Cells, Fault, read_row, uses_indices
 from core.files.text import read_text, write_text
-from core.numbers import full_precision, parse_number, shortened
+from core.numbers import full_precision, shortened
 from core.study.recovery.problem import MOST_READINGS
 from core.study.recovery.readings import Reading
 from core.tensor.symmetry import crystal_class
@@ -38,8 +38,8 @@ FACTS = ("density_kg_m3", "crystal_class", "unique_axis", "cell", "crystal_axes"
 """Keys of comment lines that are read."""
 
 _FACT = re.compile(rf"#\s*({'|'.join(FACTS)})\s*[:=]\s*(.*)", re.IGNORECASE)
-_PLUS_MINUS = re.compile(r"\s*(?:±|\+/-|\+-)\s*")
 _MOST_FAULTS = 20  # that are named; a wrong file has thousands
+_MOST_ROWS = 5  # that are named for one fault
 _SPEED = ("speed_m_s", "sigma_m_s")
 
 
@@ -73,12 +73,26 @@ class SpeedTable:
     guesses: tuple[str, ...] = ()
 
 
-def read_speeds(path: Path, frame: CrystalFrame | None = None) -> SpeedTable:
+def read_speeds(
+    path: Path, frame: CrystalFrame | None = None, needs_cell: bool = False
+) -> SpeedTable:
     """Return the readings of a file. See `parse_speeds`."""
-    return parse_speeds(read_text(path), frame, path.name)
+    return parse_speeds(read_text(path), frame, path.name, needs_cell)
 
 
-def parse_speeds(text: str, frame: CrystalFrame | None = None, where: str = "") -> SpeedTable:
+def names_speeds(text: str) -> bool:
+    """Tell whether a text is a table of measured speeds, to judge by its header."""
+    _, lines = _split(text)
+    names = {name.strip().lower() for name in re.split(r"[\t;,]", lines[0])} if lines else set()
+    return bool(names & {"speed_m_s", "transit_us"}) and len(names & set(COLUMNS)) >= 2
+
+
+def parse_speeds(
+    text: str,
+    frame: CrystalFrame | None = None,
+    where: str = "",
+    needs_cell: bool = False,
+) -> SpeedTable:
     """Return the readings of a text, such as one that was pasted.
 
     Parameters
@@ -89,6 +103,9 @@ def parse_speeds(text: str, frame: CrystalFrame | None = None, where: str = "") 
         go before it.
     where : str
         Name of the file, for sentences.
+    needs_cell : bool
+        Refuse indices where neither the text nor `frame` has the cell they refer to; without
+        it they are read as components, for somebody who still will give the cell.
 
     Raises
     ------
@@ -96,11 +113,16 @@ def parse_speeds(text: str, frame: CrystalFrame | None = None, where: str = "") 
         For a wrong header, for more rows than can be fitted, and for faulty cells: the first
         twenty are named by row and column.
     """
+    if re.match(r'\s*\{\s*["}]', text):
+        raise InputError("This is a specimen or a bench file, not a table of measured speeds.",
+                         "Use: tricline summary, along, rotate or compare.", where)
     comments, lines = _split(text)
     facts, rest = _read_facts(comments, where)
     rows = _table(lines, where)
     own = _frame(facts, frame)
     readings, faults = read_rows(rows, own)
+    if needs_cell and not own.has_basis:
+        faults = (*_without_cell(rows, own), *faults)
     if faults:
         raise _refusal(faults, where)
     return replace(facts, readings=readings, comments=rest, guesses=_guesses(rows, own))
@@ -126,6 +148,18 @@ def read_rows(
             else:
                 faults += found
     return tuple(readings), tuple(faults)
+
+
+def _without_cell(rows: Sequence[Cells], frame: CrystalFrame) -> list[Fault]:
+    """Return a fault for every row whose indices refer to a cell that is not known."""
+    family = frame.class_key.split("_")[0]
+    message = (f"Indices need the unit cell: this crystal is {family} and no cell was given.")
+    hint = ("Add a line such as # cell: 4.91 4.91 5.40 90 90 120, or give components along the"
+            " crystal axes without brackets: 1 0 0.")
+    return [
+        Fault(number, "direction", message, hint)
+        for number, cells in enumerate(rows, start=1) if uses_indices(cells)
+    ]
 
 
 # --- the text ---------------------------------------------------------------------------------
@@ -216,15 +250,29 @@ def _place(where: str, part: str) -> str:
 
 
 def _refusal(faults: Sequence[Fault], where: str) -> InputError:
-    """Return the error that names the faults of a table."""
-    first, *others = faults
-    message, hint = first.message, first.hint
+    """Return the error that names the faults of a table, one that many rows share once."""
+    shared: dict[tuple[str, str, str], list[int]] = {}
+    for fault in faults:
+        shared.setdefault((fault.column, fault.message, fault.hint), []).append(fault.row)
+    (column, message, hint), rows = next(iter(shared.items()))
+    others = list(shared.items())[1:]
     if others:
-        named = [f"{fault.where}: {fault.message}" for fault in others[: _MOST_FAULTS - 1]]
+        named = [f"{_spot(numbers, key[0])}: {key[1]}"
+                 for key, numbers in others[: _MOST_FAULTS - 1]]
         more = len(others) - len(named)
         rest = f"And {more:,} more faults." if more else ""
         hint = " ".join(part for part in (hint, "Also", *named, rest) if part)
-    return InputError(message, hint, _place(where, first.where))
+    return InputError(message, hint, _place(where, _spot(rows, column)))
+
+
+def _spot(rows: Sequence[int], column: str) -> str:
+    """Return "row 3, column sheet", or "rows 3, 4, 5 and 9 more, column sheet"."""
+    if len(rows) == 1:
+        place = f"row {rows[0]}"
+    else:
+        named, rest = rows[:_MOST_ROWS], len(rows) - _MOST_ROWS
+        place = f"rows {', '.join(map(str, named))}{f' and {rest:,} more' if rest > 0 else ''}"
+    return place + (f", column {column}" if column else "")
 
 
 # --- comment lines ----------------------------------------------------------------------------
@@ -251,13 +299,8 @@ def _read_facts(comments: Sequence[str], where: str) -> tuple[SpeedTable, tuple[
 
 
 def _read_density(text: str) -> dict[str, Any]:
-    value, *sigma = [parse_number(part) for part in _PLUS_MINUS.split(text, maxsplit=1)]
-    if sigma and sigma[0] < 0:
-        raise InputError("The uncertainty of the density is below zero.")
-    return {
-        "density": limits.density(value, ""),
-        "density_sigma": sigma[0] if sigma else None,
-    }
+    value, sigma = read_density(text)
+    return {"density": value, "density_sigma": sigma}
 
 
 def _read_cell(text: str) -> dict[str, Any]:

@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import difflib
+import re
 from dataclasses import dataclass, replace
 
 import numpy as np
 
+from core import live
 from core.crystal.cell import axes_words
 from core.directional.quantities import Quantity, quantity
 from core.errors import InputError
@@ -27,6 +29,8 @@ SHOWN: dict[str, str] = {
     "A": "A", "B": "B", "difference": "B − A", "cost": "what a cutting error costs",
 }
 _WAVES = ("fastest", "middle", "slowest")
+_LONG_NUMBER = re.compile(r"-?\d+\.\d{5,}(?:e[+-]?\d+)?")
+_READ_DECIMALS = 4  # of a number in an orientation, for reading
 _PLANES = {"XY": (0.0, 0.0, 1.0), "XZ": (0.0, 1.0, 0.0), "YZ": (1.0, 0.0, 0.0)}
 
 
@@ -114,6 +118,7 @@ def caption(state: BenchState, choice: FigureChoice) -> str:
     sentences = [_what(state, choice), *_whose(state, needed_sides(choice))]
     if choice.kind == "surface" and choice.sides == "AB":
         sentences.append("One scale of lengths and colours for both.")
+    sentences += _line_words(state_for(state, choice), choice)
     sentences.append(f"{PROGRAM}.")
     return " ".join(sentences)
 
@@ -124,15 +129,14 @@ def _what(state: BenchState, choice: FigureChoice) -> str:
     if choice.kind == "surface":
         return f"{name}, {_surface_words(entry)}. {_marks_words(state)}"
     if choice.kind == "section":
-        return (f"{name}, in the plane {plane_words(state.section)} of the part"
-                f"{'; A solid, B dashed' if choice.sides == 'AB' else ''}.")
+        return f"{name}, in the plane {plane_words(state.section)} of the part."
     if choice.kind == "hemisphere":
         projection = state.display.projection.replace("_", "-")
         return f"{_hemisphere_words(state, choice, name)}; {projection} projection from part Z."
     if choice.kind == "sweep":
         axis = state.display.sweep_about or state.section
-        return (f"{name}, against the angle from the direction {vector_words(state.pin)} "
-                f"turned about {axis_words(axis)} of the part.")
+        return (f"{name}, against the angle from {direction_words(state.pin)}, turned about "
+                f"{direction_words(axis)}.")
     time = state.display.source_time_us if choice.time_us is None else choice.time_us
     return (f"Wavefronts in the plane {plane_words(state.section)} of the part "
             f"{time:g} µs after a pulse from a point; radius in mm.")
@@ -152,7 +156,48 @@ def _surface_words(entry: Quantity) -> str:
 def _marks_words(state: BenchState) -> str:
     plane = plane_words(state.section)
     how = "Opened at" if state.display.cut_away else "Disc:"
-    return f"{how} the plane {plane} of the part; ring: direction {vector_words(state.pin)}."
+    return f"{how} the plane {plane} of the part; ring: {direction_words(state.pin)}."
+
+
+def _line_words(state: BenchState, choice: FigureChoice) -> list[str]:
+    """Return what the lines and the hatching of a figure stand for, as far as it has them."""
+    sides = needed_sides(choice)
+    if choice.kind == "hemisphere":
+        return _disc_words(state, sides)
+    if choice.kind == "surface":
+        return []
+    words = ["A solid, B dashed"] if len(sides) == 2 else []
+    if quantity(state.quantity).sheets == 3 and sum(state.display.sheets) > 1:
+        words.append("the faster the wave, the thicker its line")
+    dotted = "" if choice.kind == "sweep" else _dotted_words(state, sides)
+    words += [dotted] if dotted else []
+    joined = "; ".join(words)
+    return [f"{joined[0].upper()}{joined[1:]}."] if joined else []
+
+
+def _dotted_words(state: BenchState, sides: str) -> str:
+    """Return why parts of the curves of a section are dotted, where any is."""
+    shown = quantity(state.quantity)
+    found = [
+        live.section(live.part_medium(state.specimen_of(side), state.orientation_of(side)),
+                     shown.key, state.section) for side in sides]
+    if shown.shape == "wave":
+        leaves = any(curves.out_of_plane.any() for curves in found)
+        return "dotted where the ray leaves the plane" if leaves else ""
+    negative = shown.signed and any((curves.values < 0).any() for curves in found)
+    return "dotted where negative" if negative else ""
+
+
+def _disc_words(state: BenchState, sides: str) -> list[str]:
+    """Return what the marks on a hemisphere are, and its hatching where it has any."""
+    words = [f"Red dot: {direction_words(state.pin)}."]
+    if state.display.marks and quantity(state.quantity).wave:
+        words.append("Diamonds and dashes: two waves are as fast.")
+    media = [live.part_medium(state.specimen_of(side), state.orientation_of(side))
+             for side in sides]
+    if not all(medium.stiffness.is_stable for medium in media):
+        words.append("Hatched where the quantity is not defined: the table is unstable.")
+    return words
 
 
 def _hemisphere_words(state: BenchState, choice: FigureChoice, name: str) -> str:
@@ -182,8 +227,17 @@ def _crystal_words(specimen: Specimen) -> str:
 
 
 def _turn_words(choice: OrientationChoice) -> str:
-    words = orientation_words(choice).replace("-", MINUS)
+    words = plain_orientation(orientation_words(choice))
     return "part axes along the crystal axes" if words == "identity" else f"part {words}"
+
+
+def plain_orientation(text: str) -> str:
+    """Return an orientation for reading: no number with more than four decimals."""
+
+    def shortened(match: re.Match[str]) -> str:
+        return f"{round(float(match[0]), _READ_DECIMALS) + 0.0:.10g}"
+
+    return _LONG_NUMBER.sub(shortened, text).replace("-", MINUS)
 
 
 def plane_words(normal: Vector3) -> str:
@@ -194,18 +248,18 @@ def plane_words(normal: Vector3) -> str:
     return f"normal to {vector_words(normal)}"
 
 
-def axis_words(vector: Vector3) -> str:
-    """Return "X" for a part axis, else the components."""
+def direction_words(vector: Vector3) -> str:
+    """Return "part X" for a part axis, else the components in part axes."""
     for name, axis in zip("XYZ", np.eye(3), strict=True):
         if float(np.dot(axis, vector)) > 1 - 1e-9:
-            return name
-    return vector_words(vector)
+            return f"part {name}"
+    return f"the direction {vector_words(vector)} in part axes"
 
 
 def vector_words(vector: Vector3) -> str:
-    """Return the components of a direction, part axes, rounded for reading."""
-    words = " ".join(f"{round(float(x), 4) + 0.0:g}" for x in vector)
-    return f"({words})".replace("-", MINUS)
+    """Return "X, Y, Z = 0, 0.6, 0.8", rounded for reading: brackets would name a plane."""
+    words = ", ".join(f"{round(float(x), 4) + 0.0:g}" for x in vector)
+    return f"X, Y, Z = {words}".replace("-", MINUS)
 
 
 def parse_plane(text: str) -> Vector3:

@@ -51,6 +51,8 @@ SECTIONS: dict[str, str] = {
     "provenance": "Provenance",
 }
 """Keys and titles of the sections, in their order."""
+ALWAYS = ("cautions",)
+"""Sections that no report goes without."""
 _MARK_ROLES = {"stable": "good", "doubtful": "doubt", "unstable": "alert"}
 
 
@@ -70,7 +72,8 @@ class ReportPlan:
     Attributes
     ----------
     sections : tuple of str
-        Keys of `SECTIONS`; the order is always that of `SECTIONS`.
+        Keys of `SECTIONS`; the order is always that of `SECTIONS`. Those of `ALWAYS` are
+        there whether named or not.
     figures : tuple of FigureChoice
     file : FileNote or None
         None while the bench has not been saved.
@@ -189,7 +192,7 @@ def report_content(state: BenchState, plan: ReportPlan, ticker: Ticker | None = 
                              f"There are {', '.join(SECTIONS)}.", "sections")
     told = ticker or Ticker()
     draft = Draft(state, plan, told)
-    chosen = [key for key in SECTIONS if key in plan.sections]
+    chosen = [key for key in SECTIONS if key in plan.sections or key in ALWAYS]
     sections = []
     for number, key in enumerate(chosen):
         told.tick(number / len(chosen))
@@ -213,6 +216,7 @@ def _verdict(draft: Draft) -> tuple[Block, ...]:
         verdict = tables.verdict_of(specimen)
         return [
             Paragraph(f"{lead}{verdict.sentence}", _MARK_ROLES[verdict.mark]),  # type: ignore[arg-type]
+            *tables.oddities(specimen, lead),
             tables.spectrum(specimen, lead),
         ]
     return draft.each(blocks)
@@ -291,11 +295,25 @@ def _methods(draft: Draft) -> tuple[Block, ...]:
 
 def _cautions(draft: Draft) -> tuple[Block, ...]:
     own = [text for _, specimen in draft.crystals
-           for text in cautions_of(specimen, tables.verdict_of(specimen))]
+           for text in cautions_of(specimen, tables.verdict_of(specimen),
+                                   _look_wrong(draft, specimen))]
     return tuple(Paragraph(text, "bullet") for text in (*CAUTIONS, *dict.fromkeys(own)))
 
 
-def cautions_of(specimen: Specimen, verdict: Verdict) -> list[str]:
+def _departs(specimen: Specimen) -> bool:
+    """Tell whether a table has not the form of the class it claims."""
+    off = distance(np.array(specimen.stiffness), claimed_class(specimen))
+    return off > NOTABLE_DISTANCE
+
+
+def _look_wrong(draft: Draft, specimen: Specimen) -> bool:
+    """Tell whether the axes of a table look wrong; only one that departs is looked at."""
+    if not _departs(specimen):
+        return False
+    return tables.hidden_of(specimen, draft.summary(specimen)["symmetry"]) is not None
+
+
+def cautions_of(specimen: Specimen, verdict: Verdict, axes_look_wrong: bool) -> list[str]:
     """Return what has to be said of one crystal besides the cautions that hold for all."""
     name, found = specimen.name, []
     if verdict.mark == "unstable":
@@ -304,8 +322,10 @@ def cautions_of(specimen: Specimen, verdict: Verdict) -> list[str]:
     if verdict.mark == "doubtful":
         found.append(f"{name}: stable only within its margins. A small error in the constants "
                      "would turn the verdict.")
-    off = distance(np.array(specimen.stiffness), claimed_class(specimen))
-    if off > NOTABLE_DISTANCE:
+    if axes_look_wrong:
+        found.append(f"{name}: the axes look wrong. In others the table has more symmetry: see "
+                     "“Symmetry”.")
+    elif _departs(specimen):
         found.append(f"{name}: the table departs from the class it claims, in the axes given.")
     if specimen.stiffness_std is None and specimen.covariance is None:
         found.append(f"{name}: no uncertainties are given; four digits are not four known "

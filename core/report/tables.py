@@ -16,16 +16,21 @@ from core.arrays import FloatArray
 from core.crystal.cell import axes_note, axes_words, cell_mismatch
 from core.crystal.directions import Direction, nearest_indices
 from core.crystal.orientation import WAYS, misorientation, orientation_texts
+from core.crystal.turning import axis_and_angle
 from core.directional.quantities import quantity
 from core.errors import InputError
 from core.files.origin import orientation_words
 from core.numbers import MINUS, signed, significant, with_deviation
 from core.report.blocks import Block, Paragraph, Table
+from core.report.captions import plain_orientation
 from core.state import BenchState, Specimen, claimed_class, stiffness_of
 from core.study.tolerance import cone_extremes
+from core.study.trust.plausibility import plausibility_notes
+from core.study.trust.symmetry_verdict import symmetry_verdict
 from core.study.uncertainty.changes import deviations_of
 from core.study.verdict import NOTABLE_DISTANCE, Verdict, judge
 from core.summary import along_direction
+from core.tensor.hidden_axes import HiddenAxes
 from core.tensor.notation import VOIGT_PAIRS
 from core.tensor.stability import assess, criteria
 from core.tensor.symmetry import crystal_class, dependence_text, distance, laue_rotations
@@ -33,6 +38,7 @@ from core.tensor.symmetry import crystal_class, dependence_text, distance, laue_
 SHEETS = ("fastest", "middle", "slowest")
 _ROWS = tuple(f"{i + 1}{j + 1}" for i, j in VOIGT_PAIRS)
 _DUST = 1e-12  # of the largest of a table: what is smaller is zero but for rounding
+_EXACT_PERCENT = 1e-6  # a distance this small is none but for rounding
 _FLAT = 1e-8  # per degree: a slope this small is none but for rounding
 _NO_BREAK = "\N{NO-BREAK SPACE}\N{NO-BREAK SPACE}"
 _SAME_ANGLE = 5e-3  # degrees: nearer to a lattice direction is along it
@@ -92,6 +98,14 @@ def verdict_of(specimen: Specimen) -> Verdict:
     std = None if specimen.stiffness_std is None else np.array(specimen.stiffness_std)
     covariance = None if specimen.covariance is None else np.array(specimen.covariance)
     return judge(stiffness_of(specimen), claimed_class(specimen), std, covariance)
+
+
+def oddities(specimen: Specimen, lead: str) -> list[Block]:
+    """Return what is odd about a crystal for a solid: units, rows, density, axes."""
+    axes = "" if specimen.cell is None else axes_words(specimen.crystal_axes)
+    notes = plausibility_notes(stiffness_of(specimen), specimen.density,
+                               claimed_class(specimen), axes)
+    return [Paragraph(f"{lead}{note}", "bullet") for note in notes]
 
 
 def spectrum(specimen: Specimen, lead: str) -> Table:
@@ -164,22 +178,74 @@ def stability(specimen: Specimen, lead: str) -> list[Block]:
 
 
 def symmetry(specimen: Specimen, found: Mapping[str, Any], lead: str) -> list[Block]:
-    """Return how far the table is from the class it claims, and from others where known."""
+    """Return how far the table is from the class it claims, and from others in their axes.
+
+    Parameters
+    ----------
+    specimen : Specimen
+    found : mapping
+        The part of `core.summary.summarise` on the symmetry.
+    lead : str
+    """
+    blocks: list[Block] = [Paragraph(f"{lead}{_claim_words(specimen, found)}")]
+    hidden = hidden_of(specimen, found)
+    if hidden is not None:
+        blocks += _hidden_blocks(specimen, hidden, lead)
+    rows = tuple((crystal_class(entry["class"]).name, _percent(entry["distance_percent"]))
+                 for entry in found["nearest"])
+    return [*blocks, Table(("class", "distance, %"), rows,
+                           f"{lead}Distance to each class in the axes that suit it best")]
+
+
+def _claim_words(specimen: Specimen, found: Mapping[str, Any]) -> str:
     claimed = claimed_class(specimen)
+    if claimed.key == "triclinic":
+        return ("No class is claimed, or the triclinic one: any table with 21 independent "
+                "constants has it.")
     percent = found["as_entered_percent"]
     away = ("has exactly the form of the class it claims" if
             percent <= 100 * NOTABLE_DISTANCE else
             f"is {significant(percent, 3)} % away from the class it claims")
-    blocks: list[Block] = [Paragraph(
-        f"{lead}In the axes given the table {away}: {claimed.name}, point groups "
-        f"{claimed.groups}, {len(claimed.independent)} independent constants.")]
-    nearest = found.get("nearest") or ()
-    if nearest:
-        rows = tuple((crystal_class(entry["class"]).name,
-                      significant(entry["distance_percent"], 3)) for entry in nearest)
-        blocks.append(Table(("class", "distance, %"), rows,
-                            f"{lead}Distance to each class in the axes that suit it best"))
-    return blocks
+    return (f"In the axes given the table {away}: {claimed.name}, point groups "
+            f"{claimed.groups}, {len(claimed.independent)} independent constants.")
+
+
+def _percent(distance_percent: float) -> str:
+    """Return a distance, percent; what only rounding keeps from zero is "exact"."""
+    return "exact" if distance_percent < _EXACT_PERCENT else significant(distance_percent, 3)
+
+
+def hidden_of(specimen: Specimen, found: Mapping[str, Any]) -> HiddenAxes | None:
+    """Return the axes in which a table has more symmetry than in its own; None without any.
+
+    `found` is the part of `core.summary.summarise` on the symmetry.
+    """
+    classes = tuple(_hidden_axes(specimen, entry) for entry in found["nearest"])
+    return symmetry_verdict(stiffness_of(specimen), classes, deviations(specimen)).hidden
+
+
+def _hidden_axes(specimen: Specimen, entry: Mapping[str, Any]) -> HiddenAxes:
+    rotation = np.array(entry["axes"])
+    axis, angle = axis_and_angle(rotation.T)
+    x, y, z = axis.tolist()
+    return HiddenAxes(entry["class"], specimen.unique_axis, entry["distance_percent"], np.nan,
+                      rotation, float(angle), (x, y, z))
+
+
+def _hidden_blocks(specimen: Specimen, hidden: HiddenAxes, lead: str) -> list[Block]:
+    """Return that the axes look wrong, and the axes in which the table is more symmetric."""
+    name = crystal_class(hidden.class_key).name
+    close = _percent(hidden.distance_percent)
+    within = "exactly" if close == "exact" else f"within {close} %"
+    sentence = (
+        f"{lead}The axes look wrong: turned by {hidden.turn_deg:.2f}° the table is {name} "
+        f"{within}. Check the axes against where the constants came from.")
+    rows = tuple((f"axis {letter}", *(_component(x) for x in row), place(row, specimen))
+                 for letter, row in zip("xyz", hidden.rotation, strict=True))
+    table = Table(("", "x", "y", "z", "in the lattice"), rows,
+                  f"{lead}Axes in which the table is {name}",
+                  "Components along the axes of the table as given.", trailing_words=1)
+    return [Paragraph(sentence, "doubt"), table]
 
 
 # --- axes and orientations ------------------------------------------------------------------
@@ -201,13 +267,13 @@ def orientation(state: BenchState, side: str) -> list[Block]:
         (f"part {axis}", *(_component(x) for x in row), place(row, specimen))
         for axis, row in zip("XYZ", turn, strict=True))
     table = Table(("", "x", "y", "z", "in the lattice"), rows,
-                  f"{side}: {orientation_words(choice).replace('-', MINUS)}",
+                  f"{side}: {plain_orientation(orientation_words(choice))}",
                   "Rows of R, v_part = R v_crystal: part axes in crystal axes.",
                   trailing_words=1)
     said = orientation_texts(turn, specimen.frame)
     others = "; ".join(f"{WAYS[way]}: {text}" for way, text in said.items()
                        if way in ("bunge", "cut") and text != choice.text)
-    return [table, Paragraph(f"{side} said otherwise: {others}".replace("-", MINUS), "note")]
+    return [table, Paragraph(f"{side} said otherwise: {plain_orientation(others)}", "note")]
 
 
 def turned_apart(state: BenchState) -> list[Block]:
@@ -255,6 +321,7 @@ _INDICES = (
     ("percent_shear", "percent anisotropy of G", "%"),
     ("zener", "Zener ratio", ""),
 )
+_COUNTS = {1: "one", 2: "two", 3: "three", 4: "four"}
 _EXTREMES = (
     ("young_gpa", "E", "GPa"),
     ("linear_compressibility_per_tpa", "β", "1/TPa"),
@@ -277,17 +344,30 @@ def averages(summary: Mapping[str, Any], lead: str) -> list[Block]:
     rows += [(f"Hashin–Shtrikman, {words}", significant(bounds[f"bulk_{end}_gpa"]),
               significant(bounds[f"shear_{end}_gpa"]), "", "")
              for end, words in (("high", "upper"), ("low", "lower"))]
-    indices = [(label, significant(summary["anisotropy"][key]), unit)
-               for key, label, unit in _INDICES if summary["anisotropy"][key] is not None]
+    known = {key: value for key, value in summary["anisotropy"].items() if value is not None}
+    indices = [(label, significant(_without_dust(known[key])), unit)
+               for key, label, unit in _INDICES if key in known]
     if summary["density_kg_m3"] is not None:
         indices.append(("Debye speed", significant(summary["debye_speed_km_s"]), "km/s"))
     return [
         Table(("", "K, GPa", "G, GPa", "E, GPa", "ν"), tuple(rows),
               f"{lead}Polycrystal without texture"),
         Table(("", "value", "unit"), tuple(indices), f"{lead}Anisotropy",
-              "The first four are 0 for an isotropic body, the Zener ratio is 1.",
-              trailing_words=1),
+              _isotropic_words(known), trailing_words=1),
     ]
+
+
+def _isotropic_words(known: Mapping[str, float]) -> str:
+    """Return what the indices of an isotropic body are, of those that are there."""
+    zeros = [key for key, _, _ in _INDICES if key in known and key != "zener"]
+    if not zeros:
+        return ""
+    ratio = ", the Zener ratio is 1" if "zener" in known else ""
+    return f"The first {_COUNTS[len(zeros)]} are 0 for an isotropic body{ratio}."
+
+
+def _without_dust(value: float) -> float:
+    return 0.0 if abs(value) < _DUST else value
 
 
 def extremes(specimen: Specimen, found: Mapping[str, Any], lead: str) -> list[Block]:

@@ -82,35 +82,47 @@ def judge(
         form = claimed if fits else crystal_class("triclinic")
         covariance = independent_covariance(deviations, form)
     sigma = None if covariance is None else softest_deviation(stability, covariance)
-    mark, headline = _mark(stability, sigma)
+    mark, headline = _mark(stability, covariance)
     facts = _facts(stiffness, claimed, stability, sigma, symmetry)
     if notes:
         facts = (f"{notes} {'note' if notes == 1 else 'notes'}", *facts)
     return Verdict(mark, headline, facts, _detail(stiffness, claimed, stability))
 
 
-def softest_deviation(stability: Stability, covariance: FloatArray) -> float:
-    """Return the standard uncertainty of the least eigenstiffness, GPa, to first order.
+def softest_deviation(
+    stability: Stability, covariance: FloatArray, which: int = 0
+) -> float:
+    """Return the standard uncertainty of an eigenstiffness, GPa, to first order.
 
-    With e its Kelvin eigenstrain and w the Kelvin weights, ∂λ/∂C_IJ = w_I w_J e_I e_J, twice
-    that off the diagonal, for C_IJ and C_JI are one constant.
+    Of the least one by default. With e its Kelvin eigenstrain and w the Kelvin weights,
+    ∂λ/∂C_IJ = w_I w_J e_I e_J, twice that off the diagonal, for C_IJ and C_JI are one constant.
     """
-    strain = stability.eigenstrains[:, 0] * KELVIN_WEIGHTS
+    strain = stability.eigenstrains[:, which] * KELVIN_WEIGHTS
     slope = upper_triangle(np.outer(strain, strain) * (2.0 - np.eye(6)))
     variance = float(slope @ covariance @ slope)
     return math.sqrt(max(variance, 0.0))
 
 
-def _mark(stability: Stability, sigma: float | None) -> tuple[Mark, str]:
+def _mark(stability: Stability, covariance: FloatArray | None) -> tuple[Mark, str]:
+    values = stability.eigenstiffness
     if not stability.stable:
-        values = stability.eigenstiffness
         count = int((values <= _ZERO * np.abs(values).max()).sum())
+        if covariance is not None and _may_be_positive(stability, covariance, count):
+            return "doubtful", "Not stable as it stands, but within the uncertainties"
         return "unstable", "Unstable" if count == 1 else f"Unstable in {count} strains"
-    if sigma is not None and float(stability.eigenstiffness[0]) < _SURE * sigma:
-        return "doubtful", "Stable, but not beyond the uncertainties"
+    if covariance is not None:
+        sigma = softest_deviation(stability, covariance)
+        if float(values[0]) < _SURE * sigma:
+            return "doubtful", "Stable, but not beyond the uncertainties"
     if stability.near:
         return "doubtful", "Stable, but only just"
     return "stable", "Stable"
+
+
+def _may_be_positive(stability: Stability, covariance: FloatArray, count: int) -> bool:
+    """Tell whether none of the first eigenstiffnesses is below zero beyond its uncertainty."""
+    spreads = [softest_deviation(stability, covariance, k) for k in range(count)]
+    return bool((stability.eigenstiffness[:count] > -_SURE * np.array(spreads)).all())
 
 
 def _facts(
@@ -148,6 +160,8 @@ def _symmetry_facts(
     found = symmetry.replace(", 6 con", " with 6 con").replace(", 7 con", " with 7 con")
     if off > NOTABLE_DISTANCE:
         own = f"{significant(100 * off, 2)} % away from {form} in these axes"
+    elif claimed.key == "triclinic":
+        own = "no class claimed"
     elif found.startswith(form):
         return (found,)
     else:

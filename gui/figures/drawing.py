@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 from PySide6.QtCore import QRect, QRectF, Qt
@@ -173,6 +173,8 @@ def _draw_plot(
     """Draw a plot with its title by the routine that draws it on the screen."""
     view, theme, has_caption = figure.plot, look.ink, look.has_caption or look.is_captioned
     if isinstance(view, SectionView):
+        if has_caption:  # which says how A and B lie; the legend has their letters
+            view = replace(view, legend=tuple((side, "") for side, _ in view.legend))
         draw_section(painter, rect, view, theme, scale, titled=True)
     elif isinstance(view, HemisphereView):
         if has_caption:  # which says the projection; the title need not

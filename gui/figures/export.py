@@ -35,6 +35,8 @@ MOST_PIXELS = 20_000  # of a side
 MOST_IN_ALL = 200_000_000  # of a picture
 VECTOR_DPI = 1200  # units of SVG and PDF to the inch
 LEAST_DPI, MOST_DPI = 30, 2400
+LEAST_TEXT, MOST_TEXT = 4.0, 40.0  # points
+LEAST_SIDE, LEAST_PIXELS = 15.0, 50  # millimetres, with text in points; else pixels
 _LARGE = 4_000_000  # pixels: from here on packing takes longer than it is worth
 _QUICKLY = 60  # PNG is always lossless; this only says how hard to pack
 FORMATS: dict[str, str] = {
@@ -107,10 +109,17 @@ def check_form(form: FigureForm) -> None:
     if not LEAST_DPI <= form.dpi <= MOST_DPI:
         raise InputError(f"A resolution of {form.dpi:g} dpi is out of reach.",
                          f"From {LEAST_DPI} to {MOST_DPI} dpi is accepted.", "dpi")
+    if form.text_pt > 0 and not LEAST_TEXT <= form.text_pt <= MOST_TEXT:
+        raise InputError(f"Text of {form.text_pt:g} points is out of reach.",
+                         f"From {LEAST_TEXT:g} to {MOST_TEXT:g} points are accepted.", "text")
     width, height = form.pixels
-    if min(form.width_mm, form.height_mm) <= 0 or min(width, height) < 1:
-        raise InputError(f"A figure of {width} by {height} pixels has nothing to show.",
-                         "Both sides must be longer than zero.", "size")
+    if form.text_pt > 0 and min(form.width_mm, form.height_mm) < LEAST_SIDE:
+        raise InputError(
+            f"A figure of {form.width_mm:g} by {form.height_mm:g} mm is too small to read.",
+            f"Both sides must have {LEAST_SIDE:g} mm at least.", "size")
+    if min(width, height) < LEAST_PIXELS:
+        raise InputError(f"A figure of {width} by {height} pixels is too small to read.",
+                         f"Both sides must have {LEAST_PIXELS} pixels at least.", "size")
     if max(width, height) > MOST_PIXELS or width * height > MOST_IN_ALL:
         raise InputError(
             f"A figure of {width:,} by {height:,} pixels is too large.",
@@ -286,14 +295,20 @@ class PdfSteps:
         return undated(data) if self._is_reproducible else data
 
 
-_PDF_DATE = re.compile(rb"(/CreationDate \(D:)\d{14}")
+_PDF_DATE = re.compile(rb"(/(?:CreationDate|ModDate) \(D:)\d{14}[^)]*(?=\))")
 _XMP_DATE = re.compile(rb"(Date=\")\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d")
 
 
 def undated(pdf: bytes) -> bytes:
     """Return a PDF with its dates set to the start of 2000; no byte moves."""
-    pdf = _PDF_DATE.sub(rb"\g<1>20000101000000", pdf)
+    pdf = _PDF_DATE.sub(_first_of_2000, pdf)
     return _XMP_DATE.sub(rb"\g<1>2000-01-01T00:00:00", pdf)
+
+
+def _first_of_2000(date: re.Match[bytes]) -> bytes:
+    """Return a date of a PDF as long as it was, whatever zone it was given in."""
+    start, whole = date[1], date[0]
+    return (start + b"20000101000000Z00'00'")[: len(whole)].ljust(len(whole))
 
 
 def _vector_size(form: FigureForm) -> tuple[float, float]:

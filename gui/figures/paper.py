@@ -20,6 +20,8 @@ from gui.theme import LIGHT
 
 Paint = Callable[[QPainter], None]
 _SIDE, _TOP, _BOTTOM = 20.0, 17.0, 21.0  # margins, mm
+SIGN_OFF = 17.0  # mm, the height of the lines for signing
+_INDENT = 5.0  # mm, of the text beside a mark
 _BODY_POINTS = 9.0
 _SHAPES = {"good": "●", "doubt": "▲", "alert": "■"}
 _WRAP = int(Qt.TextFlag.TextWordWrap)
@@ -86,6 +88,11 @@ class Paper:
         return self.width - 2 * mm(_SIDE)
 
     @property
+    def whole(self) -> float:
+        """The height of the text on a page."""
+        return self.height - mm(_BOTTOM) - mm(_TOP)
+
+    @property
     def rest(self) -> float:
         """What is left of the page below `y`."""
         return self.height - mm(_BOTTOM) - self.y
@@ -147,11 +154,12 @@ def lay_text(
     paper.y += height
 
 
-def lay_heading(paper: Paper, text: str) -> None:
-    """Lay the title of a section, with some room below it on the same page."""
+def lay_heading(paper: Paper, text: str, below: float = 0.0) -> None:
+    """Lay the title of a section on the page that has room for what comes first below it."""
     font = page_font("title", bold=True)
     paper.skip(6.0)
-    paper.keep(mm(28.0))
+    height = mm(2.8) + wrapped_height(font, text, paper.room)
+    paper.keep(min(max(height + below, mm(28.0)), paper.whole))
     paper.put(rule_paint(paper.left, paper.y, paper.room, "hairline", 0.8))
     paper.y += mm(1.6)
     lay_text(paper, text, font, "a")
@@ -180,10 +188,19 @@ def lay_paragraph(paper: Paper, paragraph: Paragraph) -> None:
     paper.y += mm(1.6)
 
 
+def paragraph_height(paper: Paper, paragraph: Paragraph) -> float:
+    """Return the height that `lay_paragraph` takes."""
+    role = paragraph.role
+    size = "small" if role == "note" else "body"
+    font = page_font(size, bold=role == "lead" or role in _SHAPES)
+    indent = mm(_INDENT) if role in _SHAPES or role == "bullet" else 0.0
+    return wrapped_height(font, paragraph.text, paper.room - indent) + mm(1.6)
+
+
 def _lay_marked(paper: Paper, text: str, mark: str, role: str, bold: bool) -> None:
     """Lay a text with a mark before it."""
     font = page_font("body", bold)
-    indent = mm(5.0)
+    indent = mm(_INDENT)
     height = wrapped_height(font, text, paper.room - indent)
     paper.keep(height)
     place = QRectF(paper.left, paper.y, indent, line_of(font) + 1.0)
@@ -194,7 +211,7 @@ def _lay_marked(paper: Paper, text: str, mark: str, role: str, bold: bool) -> No
 def lay_sign_off(paper: Paper, block: SignOff) -> None:
     """Lay the lines on which people sign."""
     font = page_font("small")
-    height = mm(17.0)
+    height = mm(SIGN_OFF)
     paper.skip(2.0)
     paper.keep(height)
     width = paper.room / len(block.roles)

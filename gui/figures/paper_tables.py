@@ -49,11 +49,8 @@ class _Grid:
 def lay_table(paper: Paper, table: Table) -> None:
     """Lay a table, going on to new pages between its rows."""
     grid = _measure(table, paper.room)
-    heights = [_row_height(grid, row, grid.font) for row in table.rows]
-    head = _row_height(grid, table.header, grid.bold) if table.header else 0.0
-    kept = len(heights) if len(heights) <= _KEPT_ROWS else _FIRST_ROWS
-    title = line_of(grid.bold) + mm(0.8) if table.title else 0.0
-    paper.keep(title + head + sum(heights[:kept]) + mm(1.0))
+    heights, head = _heights(grid)
+    paper.keep(_kept(grid, heights, head))
     if table.title:
         lay_text(paper, table.title, page_font("small", bold=True))
         paper.y += mm(0.8)
@@ -67,6 +64,25 @@ def lay_table(paper: Paper, table: Table) -> None:
     if table.note:
         lay_text(paper, table.note, page_font("small"), "secondary")
     paper.y += mm(2.6)
+
+
+def kept_height(paper: Paper, table: Table) -> float:
+    """Return the height of what `lay_table` keeps together at the top of a table."""
+    grid = _measure(table, paper.room)
+    return _kept(grid, *_heights(grid))
+
+
+def _heights(grid: _Grid) -> tuple[list[float], float]:
+    """Return the heights of the rows and of the header of a table."""
+    table = grid.table
+    head = _row_height(grid, table.header, grid.bold) if table.header else 0.0
+    return [_row_height(grid, row, grid.font) for row in table.rows], head
+
+
+def _kept(grid: _Grid, heights: list[float], head: float) -> float:
+    kept = len(heights) if len(heights) <= _KEPT_ROWS else _FIRST_ROWS
+    title = line_of(grid.bold) + mm(0.8) if grid.table.title else 0.0
+    return title + head + sum(heights[:kept]) + mm(1.0)
 
 
 def _measure(table: Table, room: float) -> _Grid:

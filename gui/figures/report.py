@@ -26,6 +26,7 @@ from gui.figures.export import (
     text_scale,
 )
 from gui.figures.paper import (
+    SIGN_OFF,
     Paper,
     lay_feet,
     lay_heading,
@@ -35,14 +36,16 @@ from gui.figures.paper import (
     lay_title,
     mm,
     page_font,
+    paragraph_height,
     text_paint,
     wrapped_height,
 )
-from gui.figures.paper_tables import lay_table
+from gui.figures.paper_tables import kept_height, lay_table
 from gui.stage.camera import Camera
 from gui.stage.composition import Renderer
 from gui.theme import LIGHT
 
+_Row = Paragraph | Table | SignOff | list[Figure]
 Steps = Generator[float, None, bytes]
 """Yields the fraction done, 0 to 1, between pieces of work; returns the file."""
 
@@ -128,8 +131,9 @@ def _pdf_steps(report: Report, press: Press) -> Steps:
 
 
 def _lay_section(paper: Paper, section: Section, press: Press) -> None:
-    lay_heading(paper, section.title)
-    for row in _rows_of(section):
+    rows = list(_rows_of(section))
+    lay_heading(paper, section.title, _beginning(paper, rows))
+    for row in rows:
         if isinstance(row, list):
             _lay_figures(paper, row, press)
         elif isinstance(row, Table):
@@ -140,7 +144,24 @@ def _lay_section(paper: Paper, section: Section, press: Press) -> None:
             lay_paragraph(paper, row)
 
 
-def _rows_of(section: Section) -> Iterator[Paragraph | Table | SignOff | list[Figure]]:
+def _beginning(paper: Paper, rows: list[_Row]) -> float:
+    """Return the height of what has to stand right under a heading, past its sentences."""
+    height = 0.0
+    for row in rows:
+        if isinstance(row, Paragraph):
+            height += paragraph_height(paper, row)
+            if height > paper.whole / 3:
+                return height
+        elif isinstance(row, Table):
+            return height + kept_height(paper, row)
+        elif isinstance(row, SignOff):
+            return height + mm(SIGN_OFF)
+        else:
+            return height + sum(_figure_heights(row))
+    return height
+
+
+def _rows_of(section: Section) -> Iterator[_Row]:
     """Yield the blocks of a section, narrow figures in pairs."""
     waiting: list[Figure] = []
     for block in section.blocks:
@@ -173,31 +194,32 @@ def figure_size(figure: Figure) -> tuple[float, float]:
 def _lay_figures(paper: Paper, figures: list[Figure], press: Press) -> None:
     """Lay one figure, or two side by side, with the captions under them."""
     font = page_font("small")
-    sizes = [figure_size(figure) for figure in figures]
-    widths = [mm(width) for width, _ in sizes]
-    height = mm(max(height for _, height in sizes))
-    words = [f"Figure {figure.number}. {figure.caption}" for figure in figures]
-    alone = len(figures) == 1 and _is_narrow(figures[0])
-    below = 0.0 if alone else max(wrapped_height(font, text, width)
-                                  for text, width in zip(words, widths, strict=True))
+    widths = [mm(figure_size(figure)[0]) for figure in figures]
+    height, below = _figure_heights(figures)
     paper.keep(height + below + mm(2.0))
     draws = [_FigurePaint(figure, press) for figure in figures]
     before = len(paper.pages[-1])
     places = lay_side_by_side(paper, widths, height, draws)
     paper.pages[-1][before:] = [
         replace(draw, rect=place) for draw, place in zip(draws, places, strict=True)]
-    if alone:  # the caption stands beside it, at its foot
-        gap = mm(4.0)
-        room = paper.room - widths[0] - gap
-        tall = wrapped_height(font, words[0], room)
-        rect = QRectF(places[0].right() + gap, places[0].bottom() - tall, room, tall + 1.0)
-        paper.put(text_paint(rect, words[0], font, "secondary"))
-        words = []
     paper.y += mm(1.0)
-    for text, place in zip(words, places, strict=False):
+    for figure, place in zip(figures, places, strict=True):
         rect = QRectF(place.left(), paper.y, place.width(), below + 1.0)
-        paper.put(text_paint(rect, text, font, "secondary"))
+        paper.put(text_paint(rect, _numbered(figure), font, "secondary"))
     paper.y += below + mm(5.0)
+
+
+def _figure_heights(figures: list[Figure]) -> tuple[float, float]:
+    """Return the height of figures that stand beside each other, and of their captions."""
+    font = page_font("small")
+    height = mm(max(figure_size(figure)[1] for figure in figures))
+    below = max(wrapped_height(font, _numbered(figure), mm(figure_size(figure)[0]))
+                for figure in figures)
+    return height, below
+
+
+def _numbered(figure: Figure) -> str:
+    return f"Figure {figure.number}. {figure.caption}"
 
 
 @dataclass(frozen=True, eq=False)
@@ -313,7 +335,7 @@ def _html_figure(figure: Figure, press: Press) -> str:
     form = FigureForm(width, height, _DPI, _TEXT_POINTS, has_caption=False, is_captioned=True)
     data = figure_bytes(drawable(press.state, figure.choice), "svg", form, press.renderer,
                         press.cameras)
-    words = html.escape(f"Figure {figure.number}. {figure.caption}")
+    words = html.escape(_numbered(figure))
     kind = ' class="narrow"' if _is_narrow(figure) else ""
     source = f"data:image/svg+xml;base64,{b64encode(data).decode()}"
     return (f'<figure{kind}><img alt="{html.escape(figure.choice.title)}" src="{source}">'

@@ -25,6 +25,7 @@ from core.files.origin import today
 from core.files.text import write_bytes
 from core.report.captions import FIGURE_KINDS, FigureChoice
 from core.report.content import (
+    ALWAYS,
     SECTIONS,
     FileNote,
     ReportPlan,
@@ -95,7 +96,10 @@ class ReportDialog(QDialog):
         state = self._studio.state
         self.sections = _checked_list("Sections of the report")
         for key, words in SECTIONS.items():
-            _add(self.sections, words, key, True)
+            item = _add(self.sections, words, key, True)
+            if key in ALWAYS:  # ticked for good
+                item.setFlags(item.flags() & ~Qt.ItemFlag.ItemIsEnabled)
+                item.setToolTip("In every report")
         self.figures = _checked_list("Figures of the report")
         for choice in default_figures(state):
             _add(self.figures, choice.title, choice, True)
@@ -163,7 +167,8 @@ class ReportDialog(QDialog):
         settings = self._studio.settings
         left_out = remembered_text(settings, "report/without", "").split()
         for item in _items(self.sections):
-            item.setCheckState(_OFF if item.data(_CHOICE) in left_out else _ON)
+            is_out = item.data(_CHOICE) in left_out and item.data(_CHOICE) not in ALWAYS
+            item.setCheckState(_OFF if is_out else _ON)
         show_key(self.paper, remembered_text(settings, "report/paper", "A4"))
         show_key(self.format, remembered_text(settings, "report/format", "pdf"))
         self.opens.setChecked(remembered_flag(settings, "report/open", True))
@@ -297,13 +302,16 @@ def _checked_list(name: str) -> QListWidget:
     return made
 
 
-def _add(target: QListWidget, words: str, data: object, is_on: bool) -> None:
+def _add(
+    target: QListWidget, words: str, data: object, is_on: bool
+) -> QListWidgetItem:
     item = QListWidgetItem(words)
     item.setData(_CHOICE, data)
     item.setToolTip(words)
     item.setFlags(item.flags() | Qt.ItemFlag.ItemIsUserCheckable)
     item.setCheckState(_ON if is_on else _OFF)
     target.addItem(item)
+    return item
 
 
 def _items(source: QListWidget) -> list[QListWidgetItem]:

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 import hashlib
+import math
 import os
 import shlex
-import socket
 import sys
 from argparse import Namespace
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from functools import cache
 from pathlib import Path
@@ -17,7 +17,7 @@ from typing import Any
 for _variable in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
     os.environ.setdefault(_variable, "1")  # the drawing wants the other core
 
-from PySide6.QtCore import QCoreApplication  # noqa: E402 - after the threads are set
+from PySide6.QtCore import QCoreApplication, QHashSeed  # noqa: E402 - after the threads
 from PySide6.QtWidgets import QApplication  # noqa: E402
 
 from core.command.figure_words import (  # noqa: E402
@@ -26,7 +26,8 @@ from core.command.figure_words import (  # noqa: E402
     expand,
     outputs,
 )
-from core.command.verbs import Outcome, bench_as_asked  # noqa: E402
+from core.command.several import Outcome, for_each, told  # noqa: E402
+from core.command.verbs import bench_as_asked  # noqa: E402
 from core.directional.quantities import quantity  # noqa: E402
 from core.errors import InputError  # noqa: E402
 from core.files.meshes import MESHES  # noqa: E402
@@ -43,15 +44,18 @@ from core.report.captions import (  # noqa: E402
 from core.report.content import (  # noqa: E402
     SECTIONS,
     ReportPlan,
+    compared_sides,
     default_figures,
     file_note,
     report_content,
 )
-from core.state import BenchState  # noqa: E402
+from core.state import SOURCE_TIMES_US, BenchState  # noqa: E402
 from gui.figures.drawing import drawable  # noqa: E402
 from gui.figures.export import (  # noqa: E402
     GROUNDS,
+    LEAST_TEXT,
     MM,
+    MOST_TEXT,
     FigureForm,
     check_form,
     figure_bytes,
@@ -66,7 +70,6 @@ from gui.theme import THEMES  # noqa: E402
 
 _USUAL_SIZE, _WIDE_SIZE = "85x85mm", "174x95mm"
 _AXES = {"X": (1.0, 0.0, 0.0), "Y": (0.0, 1.0, 0.0), "Z": (0.0, 0.0, 1.0)}
-_X_PORT = 6000
 
 
 # --- a place to draw ------------------------------------------------------------------------
@@ -90,30 +93,11 @@ def _application() -> QCoreApplication:
     running = QApplication.instance()
     if running is not None:
         return running
-    if "QT_QPA_PLATFORM" not in os.environ and not has_screen(os.environ):
-        os.environ["QT_QPA_PLATFORM"] = "offscreen"
+    # Never through a screen, even where there seems to be one: Qt ends the program when the
+    # screen does not answer. OpenGL is found without, where it works at all.
+    os.environ["QT_QPA_PLATFORM"] = "offscreen"
+    QHashSeed.setDeterministicGlobalSeed()  # else fonts stand in a PDF in any order
     return QApplication(sys.argv[:1])
-
-
-def has_screen(environment: Mapping[str, str]) -> bool:
-    """Tell whether a screen answers; Qt ends the program if it is sent to one that does not."""
-    if sys.platform != "linux":
-        return True
-    if environment.get("WAYLAND_DISPLAY"):
-        return True
-    host, _, rest = environment.get("DISPLAY", "").rpartition(":")
-    number = rest.split(".")[0]
-    if not number.isdigit():
-        return False
-    try:
-        if host in ("", "unix"):
-            with socket.socket(socket.AF_UNIX) as line:
-                line.connect(f"/tmp/.X11-unix/X{number}")
-        else:
-            socket.create_connection((host, _X_PORT + int(number)), timeout=1.0).close()
-    except OSError:
-        return False
-    return True
 
 
 # --- figures --------------------------------------------------------------------------------
@@ -124,15 +108,18 @@ def figure(arguments: Namespace) -> Outcome:
     files = expand(arguments.files)
     targets = outputs(arguments.out, files)
     arguments.kind = one_of(arguments.kind, FIGURE_KINDS, "kind of figure")
+    _check_time(arguments.time)
     suffix = Path(arguments.out).suffix.lower()
     write = _write_surface if suffix in SURFACE_FILES else _write_figure
     if write is _write_figure:
         format_of(Path(arguments.out))
         check_form(form_of(arguments, is_wide=False))
     with drawing_board() as (renderer, _):
-        written = [write(bench_as_asked(arguments, str(path)), arguments, target, renderer)
-                   for path, target in zip(files, targets, strict=True)]
-    return _told(written)
+        written, errors = for_each(
+            list(zip(files, targets, strict=True)),
+            lambda one: write(bench_as_asked(arguments, str(one[0])), arguments, one[1],
+                              renderer))
+    return told(written, errors, _page)
 
 
 def section(arguments: Namespace) -> Outcome:
@@ -142,13 +129,14 @@ def section(arguments: Namespace) -> Outcome:
     check_form(form_of(arguments, is_wide=False))
     with drawing_board() as (renderer, _):
         state = bench_as_asked(arguments, arguments.file)
-        return _told([_write_figure(state, arguments, target, renderer)])
+        return _write_figure(state, arguments, target, renderer), _page
 
 
 def _write_figure(
     state: BenchState, arguments: Namespace, target: Path, renderer: Renderer
 ) -> dict[str, Any]:
     choice = _choice(state, arguments)
+    _check_difference(state, choice)
     is_wide = len(choice.sides) == 2 and choice.kind == "surface"
     form = form_of(arguments, is_wide)
     check_form(form)
@@ -160,6 +148,21 @@ def _write_figure(
         "kind": choice.kind, "quantity": choice.quantity, "caption": shown.caption,
         "width_mm": form.width_mm, "height_mm": form.height_mm,
         "width_px": width, "height_px": height, "dpi": form.dpi}
+
+
+def _check_difference(state: BenchState, choice: FigureChoice) -> None:
+    """Refuse a difference of one crystal in one orientation."""
+    if choice.kind == "hemisphere" and choice.shown == "difference" and (
+            compared_sides(state) == "A"):
+        raise InputError("There is no B that differs from A, and so no difference to show.",
+                         "Give B's orientation with --b, or a bench file with both.")
+
+
+def _check_time(time_us: float | None) -> None:
+    first, last = SOURCE_TIMES_US
+    if time_us is not None and not first <= time_us <= last:
+        raise InputError(f"A time of {time_us:g} µs after the pulse is out of reach.",
+                         f"From {first:g} to {last:,.0f} µs is accepted.", "--time")
 
 
 def _choice(state: BenchState, arguments: Namespace) -> FigureChoice:
@@ -178,6 +181,9 @@ def form_of(arguments: Namespace, is_wide: bool) -> FigureForm:
         For a size that cannot be read.
     """
     text = arguments.size
+    if not LEAST_TEXT <= arguments.text <= MOST_TEXT:
+        raise InputError(f"Text of {arguments.text:g} points is out of reach.",
+                         f"From {LEAST_TEXT:g} to {MOST_TEXT:g} points are accepted.", "--text")
     if is_wide and text == _USUAL_SIZE:
         text = _WIDE_SIZE
     width, height, is_mm = parse_size(text)
@@ -199,9 +205,10 @@ def parse_size(text: str) -> tuple[float, float, bool]:
     try:
         width, height = (float(side) for side in (sides * 2 if len(sides) == 1 else sides))
     except ValueError:
+        width = height = math.nan
+    if not (math.isfinite(width) and math.isfinite(height)):
         raise InputError(f"“{text}” is no size.",
-                         "Write millimetres as 85x70mm or pixels as 3000x3000.", "--size",
-                         ) from None
+                         "Write millimetres as 85x70mm or pixels as 3000x3000.", "--size")
     return width, height, is_mm
 
 
@@ -214,6 +221,8 @@ def camera_of(text: str | None) -> Camera:
     try:
         numbers = [float(word) for word in text.replace(",", " ").split()]
         azimuth, elevation, zoom = (*numbers, 1.0)[:3] if len(numbers) == 2 else numbers
+        if not all(map(math.isfinite, numbers)) or zoom <= 0:
+            raise ValueError(text)
     except ValueError:
         raise InputError(f"“{text}” says no place to look from.",
                          "Write X, Y, Z, or azimuth,elevation in degrees such as -55,22.",
@@ -250,23 +259,28 @@ def report(arguments: Namespace) -> Outcome:
     paper = one_of(arguments.paper, dict.fromkeys(PAPERS, ""), "paper")
     with drawing_board() as (renderer, found):
         drawn_with = f"OpenGL, {found.renderer}" if found.ok else "numpy, without OpenGL"
-        written = []
-        for path, target in zip(files, targets, strict=True):
+
+        def write(one: tuple[Path, Path]) -> dict[str, Any]:
+            path, target = one
             state = bench_as_asked(arguments, str(path))
             plan = _plan(arguments, state, path, drawn_with)
             press = Press(state, renderer, {}, paper, arguments.reproducible)
             content = report_content(state, plan)
             data = run(report_steps(content, suffix[1:], press))
-            written.append(_written(target, data) | {
-                "sections": [one.key for one in content.sections],
-                "figures": len(plan.figures)})
-    return _told(written)
+            return _written(target, data) | {
+                "sections": [section.key for section in content.sections],
+                "figures": len(plan.figures)}
+
+        written, errors = for_each(list(zip(files, targets, strict=True)), write)
+    return told(written, errors, _page)
 
 
 def _plan(arguments: Namespace, state: BenchState, path: Path, drawn_with: str) -> ReportPlan:
     figures = default_figures(state)
     if arguments.figure:
         figures = tuple(parse_figure(text, state) for text in arguments.figure)
+    for choice in figures:
+        _check_difference(state, choice)
     sections = tuple(arguments.sections or SECTIONS)
     if arguments.no_figures:
         figures, sections = (), tuple(key for key in sections if key != "figures")
@@ -296,7 +310,7 @@ def parse_figure(text: str, state: BenchState) -> FigureChoice:
 def _again(arguments: Namespace, path: Path) -> str:
     """Return the command that makes the same report, whatever it is then called."""
     words = ["tricline", "report", path.name]
-    for name in ("quantity", "plane", "a", "b", "side", "pin"):
+    for name in ("quantity", "plane", "a", "b", "side", "pin", "density"):
         value = getattr(arguments, name)
         words += [f"--{name}", value.strip()] if value is not None else []
     words += [word for text in arguments.figure or () for word in ("--figure", text)]
@@ -315,10 +329,6 @@ def _written(target: Path, data: bytes) -> dict[str, Any]:
     write_bytes(target, data)
     return {"file": str(target), "bytes": len(data),
             "sha256": hashlib.sha256(data).hexdigest()}
-
-
-def _told(written: list[dict[str, Any]]) -> Outcome:
-    return (written if len(written) > 1 else written[0]), _page
 
 
 def _page(found: Any) -> str:

@@ -6,13 +6,16 @@ from collections.abc import Iterable
 from dataclasses import replace
 from typing import Any
 
+import numpy as np
 from PySide6.QtCore import QObject, Signal
 
 from core import live
 from core.crystal.orientation import orientation_texts, parse_orientation
 from core.editing import specimen as edits
 from core.errors import InputError
-from core.state import BenchState, OrientationChoice, Specimen
+from core.numbers import significant
+from core.state import BenchState, OrientationChoice, Specimen, claimed_class
+from core.tensor.symmetry import distance
 from gui.bench import Bench
 from gui.intents.base import Intents, check_orientations, with_orientation, with_specimen
 from gui.presenting import ledger
@@ -27,6 +30,7 @@ _FIELD_WORDS = {
     "source": "source",
     "notes": "notes",
 }
+_SEEN_CHANGE = 1e-6  # percent
 _CELL_WORDS = {name: name for name in "abc"} | {"alpha": "α", "beta": "β", "gamma": "γ"}
 
 
@@ -72,23 +76,20 @@ class LedgerIntents(Intents):
         )
 
     def _paste(self, row: int, column: int, text: str) -> None:
-        """Put a pasted block in; a table that leaves something to ask goes to its dialog."""
+        """Put a pasted block in; what cannot go in as it is goes to the dialog of tables."""
         face = self.bench.state.display.face
-        if edits.is_open_table(face, text):
+        if edits.belongs_in_dialog(face, text):
             self.table_asked.emit(text)
             return
 
         def build(state: BenchState) -> BenchState:
-            specimen = edits.set_block(self.specimen, face, row, column, text)
-            guesses = edits.paste_guesses(face, text)
-            self.said.emit("; ".join(guess.partition(":")[0] for guess in guesses))
+            before = self.specimen
+            specimen = edits.set_block(before, face, row, column, text)
+            words = "; ".join(edits.paste_words(before, specimen, face, text))
+            self.said.emit(f"{words[:1].upper()}{words[1:]}")
             return with_specimen(state, specimen)
 
-        self.attempt(
-            build,
-            "Paste constants",
-            lambda message: self._views.constants.show_error(row, column, message),
-        )
+        self.attempt(build, "Paste constants", self._views.constants.show_refusal)
 
     def _choose_face(self, face: str) -> None:
         self.show_choice(f"Show {ledger.NAMES[face].lower()}", face=face)
@@ -128,10 +129,11 @@ class LedgerIntents(Intents):
 
     def make_exact(self) -> None:
         """Replace the table by the nearest one of its class."""
-        state = self.bench.state
-        self.bench.edit(
-            "Make the class exact", with_specimen(state, edits.make_exact(self.specimen))
-        )
+        state, before = self.bench.state, self.specimen
+        off = 100 * distance(np.array(before.stiffness), claimed_class(before))
+        self.bench.edit("Make the class exact", with_specimen(state, edits.make_exact(before)))
+        if off > _SEEN_CHANGE:
+            self.said.emit(f"The table has changed by {significant(off, 2)} %.")
 
     def swap(self) -> None:
         """Exchange A and B, crystals included."""

@@ -7,11 +7,14 @@ from dataclasses import replace
 
 from PySide6.QtCore import QObject
 
+from core import live
+from core.crystal.orientation import orientation_texts
 from core.editing import readings as measured
+from core.errors import InputError
 from core.files.speeds import SpeedTable
-from core.state import BenchState, MeasuredSpeeds
+from core.state import BenchState, MeasuredSpeeds, OrientationChoice, Specimen
 from gui.bench import Bench
-from gui.intents.base import Intents, with_specimen
+from gui.intents.base import Intents, with_orientation, with_specimen
 from gui.presenters.speeds import SpeedsPresenter, speeds_of
 from gui.presenting import speeds_plots as plots
 from gui.presenting.ledger import ledger_specimen
@@ -35,6 +38,43 @@ _COLUMN_WORDS = {
 }  # fmt: skip
 _PAGE_WORDS = {"bench": "Go to the bench", "speeds": "Go to the measured speeds"}
 Change = Callable[[MeasuredSpeeds], MeasuredSpeeds]
+
+
+def said_without_cell(before: BenchState, after: BenchState) -> BenchState:
+    """Return a state whose orientations need no cell: the same turns, said by angles."""
+    for side in "AB":
+        choice, old = before.orientation_of(side), before.specimen_of(side)
+        if after.specimen_of(side) != old and uses_cell(choice, after.specimen_of(side)):
+            turn = live.rotation(replace(choice, turn=(0.0, 0.0, 0.0)), old)
+            text = orientation_texts(turn, old.frame)["bunge"]
+            after = with_orientation(after, side, replace(choice, text=text))
+    return after
+
+
+def uses_cell(choice: OrientationChoice, specimen: Specimen) -> bool:
+    """Tell whether an orientation cannot be read with what is known of a specimen."""
+    try:
+        live.rotation(choice, specimen)
+    except InputError:
+        return True
+    return False
+
+
+def _handed_over(old: Specimen, new: Specimen, is_same: bool, unseen: str) -> str:
+    """Return what of the ledger's crystal was kept, as a sentence or two."""
+    facts = [
+        words
+        for words, value in (("cell", old.cell), ("temperature", old.temperature_c))
+        if value is not None
+    ]
+    names = " and ".join(", ".join(["name", *facts]).rsplit(", ", 1))
+    verb = "were" if facts else "was"
+    kept = (
+        f"The constants are in the ledger; the {names} of {old.name} {verb} kept."
+        if is_same
+        else f"{new.name}: the {names} of {old.name} {verb} not kept."
+    )
+    return f"{kept} {unseen}".strip()
 
 
 class SpeedsIntents(Intents):
@@ -77,6 +117,7 @@ class SpeedsIntents(Intents):
         """Put the readings of a file on the page and go there."""
         state = self.bench.state
         speeds = measured.from_table(table, ledger_specimen(state))
+        speeds = replace(speeds, name=name.rpartition(".")[0] or name)
         display = replace(state.display, page="speeds")
         self.bench.edit(f"Open {name}", replace(state, readings=speeds, display=display))
 
@@ -86,14 +127,19 @@ class SpeedsIntents(Intents):
         if fit is None:
             return
 
+        before = self.bench.state
+        old, speeds = ledger_specimen(before), speeds_of(before)
+        specimen = measured.with_constants(old, fit, speeds)
+
         def build(state: BenchState) -> BenchState:
-            specimen = measured.with_constants(
-                ledger_specimen(state), fit, speeds_of(state)
-            )
             display = replace(state.display, page="bench", face="stiffness")
-            return replace(with_specimen(state, specimen), display=display)
+            new = replace(with_specimen(state, specimen), display=display)
+            return said_without_cell(state, new) if specimen.cell is None else new
 
         self.attempt(build, "Use the fitted constants", self._refuse)
+        if self.bench.state is not before:
+            is_same = measured.is_same_crystal(old, fit, speeds)
+            self.said.emit(_handed_over(old, specimen, is_same, measured.unseen_note(fit)))
 
     # -------------------------------------------------------------- the readings
     def _edit(self, change: Change, label: str, refuse: Callable[[str], None]) -> None:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from PySide6.QtCore import QObject, Signal, Slot
 
-from core.crystal.cell import AXES_CONVENTIONS, axes_words, cell_mismatch
+from core.crystal.cell import AXES_CONVENTIONS, cell_mismatch
 from core.editing.symmetry import claim_exactly, kept_part, turn_to
 from core.state import BenchState, Specimen
 from core.tensor.hidden_axes import HiddenAxes
@@ -15,7 +15,8 @@ from gui.presenters.trust import TrustDetails
 from gui.presenting.ledger import ledger_specimen
 from gui.window import Views
 
-NO_CELL = "What the axes are called is as before: there is no unit cell to say it by."
+NO_CELL = "Without a cell the axes keep their name."
+ARE_OF_CELL = "If these are along the cell: choose its axes, keep the numbers."
 
 
 class TrustIntents(Intents):
@@ -87,20 +88,18 @@ def _with_parts(
 
 
 def _words(name: str, axes: HiddenAxes, turned: Specimen) -> str:
-    """Return what has been done, and what to think of when the new axes are odd."""
+    """Return what has been done, and what to think of when the new axes are odd.
+
+    What the axes are now stands in the form of the cell.
+    """
     done = f"Turned {axes.turn_deg:.1f}° to the {name} axes."
     if turned.cell is None:
         return f"{done} {NO_CELL}"
-    words = f"{done} The axes are now {axes_words(turned.crystal_axes)}."
     fits = axes.class_key != "triclinic" and not cell_mismatch(
         turned.cell, axes.class_key, axes.unique_axis
     )
-    if fits and turned.crystal_axes not in AXES_CONVENTIONS and "." in turned.crystal_axes:
-        words += (
-            f" A {name} crystal has them along its cell: if the table was never in the axes it "
-            "was said to be in, choose the crystal axes again and keep the numbers."
-        )
-    return words
+    is_odd = turned.crystal_axes not in AXES_CONVENTIONS and "." in turned.crystal_axes
+    return f"{done} {ARE_OF_CELL}" if fits and is_odd else done
 
 
 def _name(key: str) -> str:

@@ -187,9 +187,18 @@ class ConstantsTable(QTableView):
 
     # ------------------------------------------------------------ keys
     def event(self, event: QEvent) -> bool:
-        """Keep copying, pasting and selecting all for the grid."""
+        """Keep copying, pasting, selecting all, Home and End for the grid."""
         keys = QKeySequence.StandardKey
-        return claims(event, keys.Copy, keys.Paste, keys.SelectAll) or super().event(event)
+        own = (
+            keys.Copy,
+            keys.Paste,
+            keys.SelectAll,
+            keys.MoveToStartOfLine,
+            keys.MoveToEndOfLine,
+            keys.MoveToStartOfDocument,
+            keys.MoveToEndOfDocument,
+        )
+        return claims(event, *own) or super().event(event)
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         """Copy, paste, drop a bad entry, step down, or begin to type."""
@@ -326,6 +335,14 @@ class ConstantsGrid(QWidget):
         """Mark the entry last made in a cell as a bad one and say why."""
         self.cells.mark(row, column, message)
         self._show_words()
+
+    def show_refusal(self, message: str) -> None:
+        """Say under the grid why what was pasted did not go in; the cells are as good as ever.
+
+        The next move, entry or paste takes the words away.
+        """
+        set_or_hide(self._fault, message)
+        self._note.hide()
 
     def clear_error(self, row: int, column: int) -> None:
         """Take the mark off a cell."""

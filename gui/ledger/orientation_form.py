@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+
 from PySide6.QtCore import Signal
 from PySide6.QtWidgets import (
     QGridLayout,
@@ -19,7 +21,19 @@ from gui.widgets.panel import Expander
 
 AXES = ("X", "Y", "Z")
 WORDS_WIDTH = 132  # of the ways in the list of the same, pixels
+TEXT_TIP = (
+    "How the part's axes X, Y, Z lie in the crystal: Z=(1 1 0) X=[0 0 1], bunge 10 20 30, "
+    "(YXl) 35.25, axis [1 1 1] 15, matrix and nine numbers. Of a rotated cut part Z is the "
+    "plate's thickness and part X its length."
+)
 WORD_SPACE = "\N{NO-BREAK SPACE}"
+
+
+def _kept_together(text: str) -> str:
+    """Return a text in which no line breaks within indices."""
+    return re.sub(
+        r"\[[^]]*\]|\([^)]*\)", lambda found: found[0].replace(" ", WORD_SPACE), text
+    )
 
 
 class SaidOtherwise(QWidget):
@@ -77,7 +91,7 @@ class OrientationForm(QWidget):
             "way", f"How orientation {side} is said", "The way of saying the orientation."
         )
         self._text = TextField(
-            "text", f"Orientation {side}", "How the part's axes X, Y, Z lie in the crystal."
+            "text", f"Orientation {side}", TEXT_TIP
         )
         self._turns = tuple(
             DragField(
@@ -90,6 +104,7 @@ class OrientationForm(QWidget):
         )
         self._axes = label(role="secondary", wrap=True)
         self._note = label(role="secondary", wrap=True)
+        self._doubt = label(role="doubt", wrap=True)
         self._otherwise = SaidOtherwise()
         self._lay_out()
         self._connect()
@@ -113,6 +128,7 @@ class OrientationForm(QWidget):
         column.addLayout(first)
         column.addWidget(self._text)
         column.addWidget(self._text.error_label)
+        column.addWidget(self._doubt)
         column.addLayout(turns)
         for field in self._turns:
             column.addWidget(field.number.error_label)
@@ -120,6 +136,7 @@ class OrientationForm(QWidget):
         column.addWidget(self._note)
         column.addWidget(Expander("the same, said otherwise", self._otherwise))
         self._note.hide()
+        self._doubt.hide()
 
     def _connect(self) -> None:
         self._way.chosen.connect(self._choose_way)
@@ -138,6 +155,7 @@ class OrientationForm(QWidget):
         self._axes.setText("   ".join(piece.replace(" ", WORD_SPACE) for piece in pieces))
         self._otherwise.show_pairs(view.said_otherwise)
         set_or_hide(self._note, view.note)
+        set_or_hide(self._doubt, f"▲ {_kept_together(view.doubt)}" if view.doubt else "")
 
     def show_error(self, field: str, message: str) -> None:
         """Mark the text as wrong and say why."""

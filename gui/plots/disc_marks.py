@@ -9,7 +9,7 @@ from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QFont, QPainter, QPen, QPolygonF
 
 from gui.plots.lettering import Placement, lettering, text_rect
-from gui.plots.polar import PolarGround
+from gui.plots.polar import SMALL_RIM, PolarGround
 from gui.theme import Theme
 
 Mark = tuple[float, float, str, str]
@@ -37,14 +37,21 @@ def draw_marks(
     ordered = sorted(marks, key=lambda mark: _FIRST.get(mark[3], 2))
     font = lettering(theme, "small", scale)
     painter.setFont(font)
+    is_small = ground.rim < SMALL_RIM * scale
     for x, y, label, kind in ordered:
         point = QPointF(*ground.place(np.array([x, y])))
         # The pin is told by its shape and colour; a word beside it would hide the picture.
-        box = None if kind == "pin" else _free_box(font, point, label, placement, scale)
+        is_bare = kind == "pin" or (is_small and not _is_axis(label))
+        box = None if is_bare else _free_box(font, point, label, placement, scale)
         if box is not None:
             _draw_label(painter, box, label, theme, scale)
     for x, y, _, kind in reversed(ordered):
         _draw_symbol(painter, QPointF(*ground.place(np.array([x, y]))), kind, theme, scale)
+
+
+def _is_axis(label: str) -> bool:
+    """Tell whether a label is one of the three axes, as [1 0 0]."""
+    return sorted(label.strip("[]").split()) == ["0", "0", "1"]
 
 
 def _free_box(

@@ -23,6 +23,7 @@ from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWi
 
 from gui.theme import LIGHT, Theme
 
+_LEAST_WIDTH = 190  # pixels
 _COPY_SCALE = 2.0  # copied pictures are this much finer than the screen
 _KEY_STEPS = {
     Qt.Key.Key_Left: (-1, 0),
@@ -174,6 +175,10 @@ class PlotFrame(QWidget):
     def draw(self, painter: QPainter, rect: QRectF, theme: Theme, scale: float) -> None:
         """Draw the plot, as on the screen."""
         raise TypeError("a plot says how it is drawn")
+
+    def minimumSizeHint(self) -> QSize:
+        """Make do with little: the header gives way, so that plots side by side stay equal."""
+        return QSize(_LEAST_WIDTH, super().minimumSizeHint().height())
 
     def draw_titled(self, painter: QPainter, rect: QRectF, theme: Theme, scale: float) -> None:
         """Draw the plot with its title, as a picture of its own."""

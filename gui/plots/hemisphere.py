@@ -7,7 +7,7 @@ from functools import partial
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, QSignalBlocker, Qt, Signal
-from PySide6.QtGui import QColor, QPaintEngine, QPainter, QPen
+from PySide6.QtGui import QColor, QFontMetrics, QPaintEngine, QPainter, QPen, QResizeEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
     QComboBox,
@@ -32,6 +32,7 @@ from gui.plots.lettering import (
     elide,
     lettering,
     line_height,
+    notice_box,
     text_rect,
 )
 from gui.plots.polar import PolarGround, Rim, draw_axis_ends, polar_ground
@@ -45,6 +46,7 @@ _HATCH = 6.0  # pixels between the lines where nothing is defined
 _VECTOR_PIXELS, _MOST_PIXELS = 1024, 2048  # side of the picture in SVG and PDF; and ever
 _LABELLED_LENGTH = 70.0  # pixels: a shorter contour gets no label
 _STEP = 0.02  # of the disc's radius, for an arrow key
+_WIDE_HEADER = 360  # pixels from which the choices have a button each
 _RIM_SLACK = 1.06  # a press this far out still means the rim
 
 
@@ -89,7 +91,7 @@ def draw_hemisphere(
         draw_colour_bar(painter, _bar_rect(rect, theme, scale), view.scale, theme, scale)
         _draw_note(painter, rect, view.notice, theme, scale)
     else:
-        _draw_plate(painter, ground, view.notice, theme, scale)
+        _draw_plate(painter, rect, ground, view.notice, theme, scale)
     painter.restore()
 
 
@@ -246,17 +248,19 @@ def _over_colour(view: HemisphereView, level: float) -> QColor:
 
 
 def _draw_plate(
-    painter: QPainter, ground: PolarGround, text: str, theme: Theme, scale: float
+    painter: QPainter, rect: QRectF, ground: PolarGround, text: str, theme: Theme, scale: float
 ) -> None:
-    """Write a notice on a plate in the middle of an empty disc."""
+    """Write a notice on a plate across the whole frame, at the height of the empty disc."""
     if not text:
         return
-    wide, high = 0.82 * ground.rim, 0.56 * ground.rim  # the corners stay within the disc
-    plate = QRectF(ground.centre.x() - wide, ground.centre.y() - high, 2 * wide, 2 * high)
+    half = min(ground.centre.y() - rect.top(), rect.bottom() - ground.centre.y())
+    area = QRectF(rect.left(), ground.centre.y() - half, rect.width(), 2 * half)
+    edge = 10 * scale
+    plate = notice_box(area, text, theme, scale).adjusted(-edge, -edge, edge, edge)
     painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(theme.colour("panel", 0.92))
     painter.drawRoundedRect(plate, 4 * scale, 4 * scale)
-    draw_notice(painter, plate, text, theme, scale)
+    draw_notice(painter, area, text, theme, scale)
 
 
 # ---------------------------------------------------------------- widget
@@ -283,6 +287,12 @@ class HemispherePlot(PlotFrame):
         self._face_row = QHBoxLayout()
         self._face_row.setSpacing(10)
         self.header.addLayout(self._face_row)
+        self.short_list = QComboBox(self)
+        self.short_list.setAccessibleName("What the hemisphere shows")
+        self.short_list.setToolTip("Whose hemisphere, or what is compared on it")
+        self.short_list.setMinimumContentsLength(4)
+        self.short_list.activated.connect(self._choose_face)
+        self.header.addWidget(self.short_list, 1)
         self.canvas.setAccessibleDescription(
             "Press, drag or arrow keys: put the pin. Ctrl+C: copy the picture."
         )
@@ -391,9 +401,26 @@ class HemispherePlot(PlotFrame):
                 added = self._faces.button(index)
                 QWidget.setTabOrder(before, added)
                 before = added
+            with QSignalBlocker(self.short_list):
+                self.short_list.clear()
+                self.short_list.addItems([words for _, words in view.choices])
+            self._fit_header()
         button = self.face(view.shown)
         if button is not None:
             button.setChecked(True)
+            self.short_list.setCurrentIndex(self._faces.id(button))
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Offer the choices as buttons, or as a list where these have no room."""
+        super().resizeEvent(event)
+        self._fit_header()
+
+    def _fit_header(self) -> None:
+        """Show the buttons of the choices in a wide header, their list in a narrow one."""
+        is_narrow = self.width() < _WIDE_HEADER
+        self.short_list.setVisible(is_narrow)
+        for button in self._faces.buttons():
+            button.setVisible(not is_narrow)
 
     def _add_face(self, index: int, words: str) -> None:
         """Add the button of one choice."""
@@ -401,6 +428,8 @@ class HemispherePlot(PlotFrame):
         button.setProperty("role", "face")
         button.setCheckable(True)
         button.setAccessibleName(f"Hemisphere of {words}")
+        bold = QFontMetrics(LIGHT.font(bold=True))  # as the pressed one is written
+        button.setMinimumWidth(bold.horizontalAdvance(words) + 6)
         button.setToolTip(f"Show {words}")
         button.clicked.connect(partial(self._choose_face, index))
         self._faces.addButton(button, index)

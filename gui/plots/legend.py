@@ -14,6 +14,7 @@ from gui.theme import Theme
 _EDGE = 10.0  # pixels from the border of the area
 _SAMPLE = 24.0  # length of a line sample
 _GAP = 5.0
+_NARROW = 330.0  # pixels: a shorter strip has the letters of the sides only
 _BETWEEN = 14.0  # from one entry to the next
 _NOTES_SHARE = 0.4  # of the strip, for the notes where the entries are long
 
@@ -41,6 +42,8 @@ def draw_strip(
     scale: float = 1.0,
 ) -> None:
     """Draw line sample, letter and words of each side from the left, the notes at the right."""
+    if strip.width() < _NARROW * scale:
+        entries = [(side, "") for side, _ in entries]  # a few letters of words say nothing
     left, right = strip.left() + _EDGE * scale, strip.right() - _EDGE * scale
     middle = strip.center().y() - 2.0 * scale
     font = lettering(theme, "small", scale)

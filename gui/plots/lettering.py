@@ -14,6 +14,7 @@ from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPen
 
 from gui.theme import Theme
 
+_LEAST_SHRINK = 0.75
 _TABULAR_FIGURES = QFont.Tag("tnum")
 
 
@@ -80,6 +81,20 @@ class Placement:
         return True
 
 
+_NOTICE_FLAGS = int(Qt.AlignmentFlag.AlignCenter) | int(Qt.TextFlag.TextWordWrap)
+
+
+def _notice_area(rect: QRectF, scale: float) -> QRectF:
+    """Return the part of an area in which a notice is wrapped."""
+    return rect.adjusted(18 * scale, 8 * scale, -18 * scale, -8 * scale)
+
+
+def notice_box(rect: QRectF, text: str, theme: Theme, scale: float = 1.0) -> QRectF:
+    """Return the box of what `draw_notice` writes into an area."""
+    metrics = QFontMetricsF(lettering(theme, "body", scale))
+    return metrics.boundingRect(_notice_area(rect, scale), _NOTICE_FLAGS, text)
+
+
 def draw_notice(
     painter: QPainter, rect: QRectF, text: str, theme: Theme, scale: float = 1.0
 ) -> None:
@@ -88,9 +103,9 @@ def draw_notice(
         return
     painter.setFont(lettering(theme, "body", scale))
     painter.setPen(theme.colour("secondary"))
-    inner = rect.adjusted(18 * scale, 8 * scale, -18 * scale, -8 * scale)
-    flags = int(Qt.AlignmentFlag.AlignCenter) | int(Qt.TextFlag.TextWordWrap)
-    painter.drawText(inner, flags, text)
+    # Where even the whole area is too low, better beyond its edge than cut in the middle.
+    flags = _NOTICE_FLAGS | int(Qt.TextFlag.TextDontClip)
+    painter.drawText(_notice_area(rect, scale), flags, text)
 
 
 def draw_top_note(
@@ -115,14 +130,37 @@ def below_note(rect: QRectF, text: str, theme: Theme, scale: float = 1.0) -> QRe
 def draw_title(
     painter: QPainter, rect: QRectF, text: str, theme: Theme, scale: float = 1.0
 ) -> QRectF:
-    """Write a title along the top of an area and return the area that is left below it."""
-    font = lettering(theme, "body", scale, bold=True)
+    """Write a title along the top of an area and return the area that is left below it.
+
+    A long title has smaller letters, and goes on on further lines.
+    """
+    gap = 10 * scale
+    room = rect.width() - 2 * gap
+    font = fitting(theme, "body", text, room, scale, bold=True)
     painter.setFont(font)
     painter.setPen(theme.colour("ink"))
-    gap = 10 * scale
-    box = draw_text(painter, rect.topLeft() + QPointF(gap, gap),
-                    elide(font, text, rect.width() - 2 * gap), 0.0, 0.0)  # fmt: skip
+    if QFontMetricsF(font).horizontalAdvance(text) <= room:
+        box = draw_text(painter, rect.topLeft() + QPointF(gap, gap), text, 0.0, 0.0)
+    else:
+        flags = int(Qt.TextFlag.TextWordWrap)
+        place = QRectF(rect.left() + gap, rect.top() + 0.5 * gap, room, rect.height())
+        box = QFontMetricsF(font).boundingRect(place, flags, text)
+        painter.drawText(place, flags, text)
     return rect.adjusted(0.0, box.bottom() - rect.top() + 6 * scale, 0.0, 0.0)
+
+
+def fitting(
+    theme: Theme, size: str, text: str, width: float, scale: float = 1.0, bold: bool = False
+) -> QFont:
+    """Return a font of the theme, smaller if a text would else be wider than `width`.
+
+    It is never smaller than three quarters of the theme's.
+    """
+    font = lettering(theme, size, scale, bold)
+    wanted = QFontMetricsF(font).horizontalAdvance(text)
+    if wanted <= width:
+        return font
+    return lettering(theme, size, scale * max(_LEAST_SHRINK, width / wanted), bold)
 
 
 def draw_chip(

@@ -55,6 +55,7 @@ class PlaneCombo(QComboBox):
                     self.addItem(text, key)
             self.setCurrentIndex(self.findData(plane))
             self.setEditText(words)
+            self._line.setCursorPosition(0)  # long words are seen from their beginning
         self._plane, self._words, self._sent = plane, words, ""
         self.mark_wrong(False)
 

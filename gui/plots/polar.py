@@ -12,13 +12,14 @@ from PySide6.QtGui import QFont, QFontMetricsF, QPainter, QPen
 
 from core.arrays import BoolArray, FloatArray
 from gui.plots.grid import MINUS
-from gui.plots.lettering import Placement, lettering, text_rect
+from gui.plots.lettering import Placement, draw_text, lettering, text_rect
 from gui.theme import Theme
 
 # Rays along which the texts of the rings may stand, degrees, the best liked first.
 _TEXT_RAYS = (68.0, 22.0, 112.0, 158.0, -22.0, -68.0, 45.0, 135.0, -45.0, -112.0, 75.0,
               15.0, 52.0, 38.0, 105.0, 165.0, -15.0, -75.0, 128.0, 142.0)  # fmt: skip
 _CLEARANCE = 2.0  # pixels from a ring's text to the nearest curve
+SMALL_RIM = 70.0  # pixels: a smaller rim has no room for the names of directions
 _RIM_GAP = 6.0  # pixels from the rim to its labels
 _SPOKES_DEG = (30.0, 60.0, 120.0, 150.0)
 
@@ -69,6 +70,14 @@ class Rim:
     axis_labels: tuple[str, str]
     directions: Sequence[tuple[float, str]] = ()
     unit: str = ""
+    # The labels at the far ends of the two axes; without them the others with a minus before.
+    far_labels: tuple[str, str] | None = None
+
+    @property
+    def far(self) -> tuple[str, str]:
+        """The labels at the left and at the bottom."""
+        right, up = self.axis_labels
+        return self.far_labels or (MINUS + right, MINUS + up)
 
 
 def polar_ground(
@@ -76,11 +85,16 @@ def polar_ground(
 ) -> PolarGround:
     """Return the largest ground that leaves room in `rect` for the labels round its rim."""
     metrics = QFontMetricsF(lettering(theme, "small", scale))
-    texts = [MINUS + rim.axis_labels[0], *(text for _, text in rim.directions)]
-    widest = max(metrics.horizontalAdvance(text) for text in texts)
-    across = rect.width() / 2 - widest - (_RIM_GAP + 4) * scale
+    bold = QFontMetricsF(lettering(theme, "small", scale, bold=True))
+    beside = (*_lines(rim.axis_labels[0]), *_lines(rim.far[0]))
+    letter = max(bold.horizontalAdvance(text) for text in beside)
+    named = max((metrics.horizontalAdvance(text) for _, text in rim.directions), default=0.0)
+    half = rect.width() / 2 - (_RIM_GAP + 4) * scale
     down = rect.height() / 2 - metrics.height() - _RIM_GAP * scale
-    return PolarGround(rect.center(), max(min(across, down), 8.0 * scale), radius)
+    pixels = min(half - max(letter, named), down)
+    if pixels < SMALL_RIM * scale:  # the names of the directions are left out: take their room
+        pixels = min(half - letter, down, max(pixels, 0.99 * SMALL_RIM * scale))
+    return PolarGround(rect.center(), max(pixels, 8.0 * scale), radius)
 
 
 def draw_ground(
@@ -166,8 +180,22 @@ def draw_axis_ends(
     """Write the two axis letters at the right and the top of a rim."""
     painter.setFont(lettering(theme, "small", scale, bold=True))
     painter.setPen(theme.colour("ink"))
-    for label, angle in zip(labels, (0.0, math.pi / 2), strict=True):
-        placement.block(_draw_outside(painter, ground, angle, label, _RIM_GAP * scale))
+    right, up = labels
+    placement.block(_draw_outside(painter, ground, math.pi / 2, up, _RIM_GAP * scale))
+    pitch = QFontMetricsF(painter.font()).capHeight() + 4.0 * scale
+    lines = _lines(right)
+    for row, text in enumerate(lines):
+        down = QPointF(_RIM_GAP * scale, (row - (len(lines) - 1) / 2) * pitch)
+        placement.block(draw_text(painter, ground.at(0.0, ground.rim) + down, text, 0.0, 0.5))
+
+
+def _lines(label: str) -> list[str]:
+    """Return the lines of a label beside the rim.
+
+    The numbers of a free direction stand one below the other: a row of them would take the
+    drawing's room.
+    """
+    return label.split(" ")
 
 
 def rim_text_box(
@@ -199,8 +227,8 @@ def _draw_axis_letters(
     draw_axis_ends(painter, ground, rim.axis_labels, placement, theme, scale)
     painter.setFont(lettering(theme, "small", scale))
     painter.setPen(theme.colour("faint"))
-    for label, angle in zip(rim.axis_labels, (math.pi, -math.pi / 2), strict=True):
-        box = _draw_outside(painter, ground, angle, MINUS + label, _RIM_GAP * scale)
+    for label, angle in zip(rim.far, (math.pi, -math.pi / 2), strict=True):
+        box = _draw_outside(painter, ground, angle, label, _RIM_GAP * scale)
         placement.block(box)
 
 
@@ -216,11 +244,12 @@ def _draw_directions(
     font = lettering(theme, "small", scale)
     painter.setFont(font)
     tick, gap = 3.5 * scale, (_RIM_GAP + 2.0) * scale
+    is_small = ground.rim < SMALL_RIM * scale
     for angle, text in rim.directions:
         painter.setPen(QPen(theme.colour("secondary"), scale))
         painter.drawLine(ground.at(angle, ground.rim), ground.at(angle, ground.rim + tick))
         box = rim_text_box(ground, font, angle, text, gap)
-        if text and placement.claim(box):
+        if text and not is_small and placement.claim(box):
             painter.drawText(box.bottomLeft(), text)
 
 

@@ -7,7 +7,7 @@ from itertools import zip_longest
 
 import numpy as np
 from PySide6.QtCore import QPointF, QRectF, Qt, Signal
-from PySide6.QtGui import QColor, QPainter, QPen
+from PySide6.QtGui import QColor, QPainter, QPen, QResizeEvent
 from PySide6.QtWidgets import QWidget
 
 from core.arrays import FloatArray
@@ -21,6 +21,8 @@ from gui.plots.strokes import band_path, draw_signed_curve, side_pen
 from gui.theme import Theme
 from gui.viewdata import Curve, SectionView
 
+_NARROW = 380.0  # pixels: in a narrower picture the note on dots stands above the plane
+_TITLED = 300  # pixels of the plot from which the header has room for the title
 _MIDDLE = 5.0  # pixels round the centre in which an angle means nothing
 _REACH = 1.25  # the mouse reads values up to this many rims from the centre
 _SAME_CROSSING = 1e-9  # relative: a closed curve meets its own end on the ray
@@ -66,7 +68,7 @@ def section_ground(
 ) -> PolarGround:
     """Return where `draw_section` places the plane in `rect`, when it writes no title."""
     area, _ = split_strip(rect, _has_strip(view), theme, scale)
-    area = below_note(area, view.notice, theme, scale)
+    area = below_note(area, _top_note(rect, view, scale), theme, scale)
     return polar_ground(area, view.radius, _rim(view), theme, scale)
 
 
@@ -93,27 +95,35 @@ def values_at(curve: Curve, angle: float) -> FloatArray:
     return np.asarray(radius[first], dtype=np.float64)
 
 
+def shown_value(view: SectionView, radius: FloatArray) -> FloatArray:
+    """Return the values that stand at a radius of the drawing; the sign stays."""
+    if view.logarithmic is None:
+        return radius
+    low, high = view.logarithmic
+    return np.asarray(np.sign(radius) * low * (high / low) ** np.abs(radius))
+
+
 def curves_as_text(view: SectionView) -> str:
     """Return the curves as tab-separated columns at full precision: angle and value of each."""
-    columns = [column for curve in view.curves for column in _columns(curve, view.unit)]
+    columns = [column for curve in view.curves for column in _columns(curve, view)]
     return "\n".join("\t".join(row) for row in zip_longest(*columns, fillvalue=""))
 
 
-def _columns(curve: Curve, unit: str) -> tuple[list[str], list[str]]:
+def _columns(curve: Curve, view: SectionView) -> tuple[list[str], list[str]]:
     """Return the two columns of a curve, each with its header."""
     name = " ".join(part for part in (curve.side, curve.label) if part)
     x, y = curve.points
-    angles, radii = np.degrees(np.arctan2(y, x)), np.hypot(x, y)
+    angles, radii = np.degrees(np.arctan2(y, x)), shown_value(view, np.hypot(x, y))
     if curve.negative is not None:
         radii = np.where(curve.negative, -radii, radii)
-    header = f"{name}, {unit}" if unit else name
+    header = f"{name}, {view.unit}" if view.unit else name
     return ([f"{name}, angle, °", *map(repr, angles.tolist())],
             [header, *map(repr, radii.tolist())])  # fmt: skip
 
 
 def _rim(view: SectionView) -> Rim:
     """Return what is written on the ground of a section."""
-    return Rim(view.rings, view.axis_labels, view.directions, view.unit)
+    return Rim(view.rings, view.axis_labels, view.directions, view.unit, view.far_labels)
 
 
 def _draw_body(
@@ -139,8 +149,17 @@ def _draw_body(
     if view.pin_angle is not None:
         _draw_pin(painter, ground, view, theme, scale)
     _, strip = split_strip(rect, _has_strip(view), theme, scale)
-    draw_strip(painter, strip, view.legend, _notes(view), theme, scale)
-    draw_top_note(painter, rect, view.notice, theme, scale)
+    above = _top_note(rect, view, scale)
+    below = [note for note in _notes(view) if note != above]
+    draw_strip(painter, strip, view.legend, below, theme, scale)
+    draw_top_note(painter, rect, above, theme, scale)
+
+
+def _top_note(rect: QRectF, view: SectionView, scale: float) -> str:
+    """Return the line above the plane: the notice, or what has no room in a narrow strip."""
+    is_narrow = rect.width() < _NARROW * scale
+    dotted = view.negative_note if view.negative_note in _notes(view) else ""
+    return view.notice or (dotted if is_narrow else "")
 
 
 def _has_strip(view: SectionView) -> bool:
@@ -243,6 +262,11 @@ class SectionPlot(PlotFrame):
             self.set_message("")
         self.canvas.update()
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Leave the narrow header to the plane: the bar above says which quantity it is."""
+        super().resizeEvent(event)
+        self.title.setVisible(self.width() >= _TITLED)
+
     def show_error(self, message: str) -> None:
         """Mark the plane that was typed, and say why it cannot be read."""
         self.plane.mark_wrong(True)
@@ -262,7 +286,8 @@ class SectionPlot(PlotFrame):
         degrees = f"{math.degrees(angle):.1f}°".replace("-", MINUS)
         lines = [(f"{degrees} from {right} to {up}", self.theme.colour("secondary"))]
         for curve in view.curves:
-            values = [number_text(float(value)) for value in values_at(curve, angle)]
+            found = shown_value(view, values_at(curve, angle)).tolist()
+            values = [number_text(value) for value in found]
             words = [curve.side, curve.label, ", ".join(values) or "–", view.unit]
             text = "  ".join(word for word in words if word)
             lines.append((text, self.theme.side(curve.side)))

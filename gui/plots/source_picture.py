@@ -5,12 +5,12 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from PySide6.QtCore import QPointF, QRectF, QSignalBlocker, Signal
-from PySide6.QtGui import QColor, QPainter, QPen
+from PySide6.QtCore import QPointF, QRectF, QSignalBlocker, Qt, Signal
+from PySide6.QtGui import QColor, QPainter, QPen, QResizeEvent
 from PySide6.QtWidgets import QAbstractSpinBox, QDoubleSpinBox, QWidget
 
 from core.state import SOURCE_TIMES_US
-from gui.plots.frame import PlotFrame
+from gui.plots.frame import ElidedLabel, PlotFrame
 from gui.plots.grid import MINUS, number_text
 from gui.plots.legend import draw_strip, split_strip
 from gui.plots.lettering import below_note, draw_chip, draw_notice, draw_title, draw_top_note
@@ -20,7 +20,11 @@ from gui.theme import Theme
 from gui.viewdata import SourceView
 
 _UNIT = "mm"
-_NOTE = "dotted: the energy leaves the plane"
+_NOTE = "dotted: energy leaves the plane"
+_FIRST_WORDS = "wavefronts in "
+_TIME_WIDTH = 88  # pixels of the field of the time
+_CONTROLS = 230  # pixels of the header that the list of faces and the time take
+_NARROW = 380.0  # pixels: in a narrower picture the note stands above the plane
 _NO_ARROWS = """QDoubleSpinBox::up-button, QDoubleSpinBox::down-button {
     width: 0; border: none; }"""
 _FAINT = 0.7
@@ -67,7 +71,7 @@ def source_ground(
 ) -> PolarGround:
     """Return where `draw_source` places the plane in `rect` when it writes no title."""
     area, _ = split_strip(rect, True, theme, scale)
-    area = below_note(area, view.notice, theme, scale)
+    area = below_note(area, _top_note(rect, view, scale), theme, scale)
     return polar_ground(area, _radius(view), _rim(view), theme, scale)
 
 
@@ -76,9 +80,20 @@ def _radius(view: SourceView) -> float:
     return max((radius for radius, _ in view.rings), default=0.0)
 
 
+def _leaves_plane(view: SourceView) -> bool:
+    """Tell whether any part of the wavefronts is dotted."""
+    return any(leaves.any() for _, _, _, leaves in view.curves)
+
+
+def _top_note(rect: QRectF, view: SourceView, scale: float) -> str:
+    """Return the line above the plane: the notice, or what has no room under it."""
+    is_narrow = rect.width() < _NARROW * scale
+    return view.notice or (_NOTE if is_narrow and _leaves_plane(view) else "")
+
+
 def _rim(view: SourceView) -> Rim:
     """Return what is written on the ground."""
-    return Rim(view.rings, view.axis_labels, unit=_UNIT)
+    return Rim(view.rings, view.axis_labels, unit=_UNIT, far_labels=view.far_labels)
 
 
 def _draw_body(
@@ -100,9 +115,10 @@ def _draw_body(
     painter.drawEllipse(ground.centre, 3.5 * scale, 3.5 * scale)
     _, strip = split_strip(rect, True, theme, scale)
     entries = [(side, "") for side in sorted({curve[0] for curve in view.curves})]
-    has_leaving = any(leaves.any() for _, _, _, leaves in view.curves)
-    draw_strip(painter, strip, entries, [_NOTE] if has_leaving else [], theme, scale)
-    draw_top_note(painter, rect, view.notice, theme, scale)
+    above = _top_note(rect, view, scale)
+    notes = [_NOTE] if _leaves_plane(view) and above != _NOTE else []
+    draw_strip(painter, strip, entries, notes, theme, scale)
+    draw_top_note(painter, rect, above, theme, scale)
 
 
 # ---------------------------------------------------------------- widget
@@ -124,6 +140,7 @@ class SourcePicture(PlotFrame):
         self.time.setAccessibleName("Time since the pulse, microseconds")
         self.time.setToolTip("Time since the pulse, µs")
         self.time.setSuffix(" µs")
+        self.time.setMaximumWidth(_TIME_WIDTH)
         self.time.setDecimals(2)
         self.time.setRange(*SOURCE_TIMES_US)
         # Not NoButtons: in a styled spin box Qt then makes the field one pixel wide.
@@ -131,6 +148,11 @@ class SourcePicture(PlotFrame):
         self.time.setStepType(QAbstractSpinBox.StepType.AdaptiveDecimalStepType)
         self.time.setKeyboardTracking(False)
         self.time.valueChanged.connect(self.time_chosen)
+        self.before_time = ElidedLabel(self)
+        self.before_time.setProperty("role", "secondary")
+        middle = Qt.AlignmentFlag.AlignVCenter
+        self.before_time.setAlignment(Qt.AlignmentFlag.AlignRight | middle)
+        self.header.addWidget(self.before_time, 10)
         self.header.addWidget(self.time)
         self.canvas.setAccessibleDescription("Ctrl+C: copy the wavefronts as numbers.")
 
@@ -140,7 +162,21 @@ class SourcePicture(PlotFrame):
         self.title.set_whole(view.title)
         with QSignalBlocker(self.time):
             self.time.setValue(view.time_us)
+        self._say_before_time()
         self.canvas.update()
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Say what the time is of in as many words as there is room for."""
+        super().resizeEvent(event)
+        self._say_before_time()
+
+    def _say_before_time(self) -> None:
+        """Write the words before the time, without the first where all do not fit."""
+        if self._view is not None:
+            whole = self._view.before_time
+            room = self.width() - _CONTROLS
+            fits = self.before_time.fontMetrics().horizontalAdvance(whole) <= room
+            self.before_time.set_whole(whole if fits else whole.removeprefix(_FIRST_WORDS))
 
     def readout(self, angle: float, distance_mm: float) -> list[tuple[str, QColor]]:
         """Return the lines of the card beside the mouse: how far from the source, and where."""

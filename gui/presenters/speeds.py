@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -52,6 +52,11 @@ class FitRequest:
     robust: bool
     crystal_class: str
     unique_axis: str
+
+
+def wanted_plain(wanted: FitRequest) -> FitRequest:
+    """Return the request of a plain fit of the same readings."""
+    return replace(wanted, robust=False)
 
 
 @dataclass(frozen=True, eq=False)
@@ -141,6 +146,8 @@ class SpeedsPresenter(QObject):
             self._rank(state, speeds)
         elif self._given_up is not None and self._given_up[0] == self._wanted:
             notice = self._given_up[1]
+        elif wanted_plain(self._wanted) in self._fits:  # the next best until the robust one
+            self._shown = self._fits[wanted_plain(self._wanted)]
         self._draw(state, speeds, notice)
         if self._wanted is not None and not notice:
             self._ask_fit(self._wanted)
@@ -163,7 +170,8 @@ class SpeedsPresenter(QObject):
         if wanted in self._fits or wanted == self._asked:
             return
         self._asked, self._given_up = wanted, None
-        self._scheduler.submit(Job(FIT, wanted, _fit, "Fit of the speeds"))
+        words = "Robust fit of the speeds" if wanted.robust else "Fit of the speeds"
+        self._scheduler.submit(Job(FIT, wanted, _fit, words))
 
     @Slot(object, object)
     def _on_changed(self, state: BenchState, names: frozenset[str]) -> None:

@@ -6,6 +6,7 @@ ask here for what is known. What has been found of a crystal is kept while it is
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 from PySide6.QtCore import QObject, Signal, Slot
@@ -67,7 +68,10 @@ class TrustDetails(QObject):
     def show_verdict(self, state: BenchState, _fine: bool) -> None:
         """Show the band, with what is known so far."""
         specimen = ledger.ledger_specimen(state)
-        self._band.show_view(ledger.verdict_view(specimen, self.findings(specimen)))
+        view = ledger.verdict_view(specimen, self.findings(specimen))
+        if state.display.page != "bench":  # whose numbers are not those of the page
+            view = replace(view, headline=f"{specimen.name}, on the bench: {view.headline}")
+        self._band.show_view(view)
 
     def show_sheet(self, state: BenchState, _fine: bool) -> None:
         """Show the sheet if it can be seen, and ask for what is not known yet."""
@@ -75,11 +79,8 @@ class TrustDetails(QObject):
         asked = trust.trust_request(specimen)
         found = self._findings.get(asked)
         if self._sheet.isVisible():
-            shown = found or next(reversed(self._findings.values()), None)
             self._sheet.show_view(
-                trust.trust_view(
-                    state, shown, self.pin_spread(state), self._draws_of(asked), found is None
-                )
+                trust.trust_view(state, found, self.pin_spread(state), self._draws_of(asked))
             )
         if found is None:
             self._submit(_TRUST, (asked, specimen), trust.find)

@@ -206,7 +206,8 @@ class Presenter(QObject):
     def _show_tables(self, state: BenchState, _fine: bool) -> None:
         known = self.trust.table_spread(state)
         specimen = ledger.ledger_specimen(state)
-        self._views.aggregate.show_view(reading.aggregate_view(specimen, known))
+        aggregate = reading.aggregate_view(specimen, known, reading.whose(state))
+        self._views.aggregate.show_view(aggregate)
         self._views.part.show_view(reading.part_view(state, known))
 
     @Slot()
@@ -238,7 +239,9 @@ class Presenter(QObject):
         found = self._extremes.get(key)
         shown = found if found is not None else next(iter(self._extremes.values()), None)
         self._views.extremes.show_view(
-            reading.extremes_view(specimen, turn, shown, pending=found is None)
+            reading.extremes_view(
+                specimen, turn, shown, pending=found is None, whose=reading.whose(state)
+            )
         )
         if found is None:
             medium = live.crystal_medium(*key)

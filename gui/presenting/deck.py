@@ -9,27 +9,31 @@ from functools import lru_cache
 import numpy as np
 
 from core import live
-from core.arrays import FloatArray, IntArray
+from core.arrays import FloatArray
 from core.crystal.cell import CrystalFrame
 from core.crystal.directions import nearest_indices
 from core.directional.medium import Medium
 from core.directional.projection import from_disc, to_disc
 from core.directional.quantities import Quantity, quantity
-from core.directional.sphere import plane_axes, sphere_mesh
+from core.directional.sphere import plane_axes
 from core.directional.waves import modes
 from core.numbers import significant
 from core.state import BenchState, Vector3
-from core.study.tolerance import cost_map
+from core.study.true_range import true_range
 from gui.plots.grid import nice_step, nice_ticks, tick_texts
 from gui.presenting.axes import AxesOf, axes_in_part, axes_now, single_directions
+from gui.presenting.discs import contour_lines, disc_values
 from gui.presenting.rays import parted, parted_flags
 from gui.presenting.spread import section_deviation
 from gui.presenting.stage import (
+    ALL_HIDDEN,
     NO_DENSITY,
     PLANES,
     SHEET_NAMES,
     ColourOf,
+    colour_of,
     drawable_limit,
+    hidden_notice,
     pane_title,
     plane_choices,
     plane_key,
@@ -38,14 +42,13 @@ from gui.presenting.stage import (
     sides,
     unit_vector,
 )
-from gui.stage.remembered import Remembered
 from gui.viewdata import Curve, HemisphereView, SectionView, SourceView, SweepView
 
 _ON_PLANE = 0.02  # |n·pin| below which the pin is drawn on the section
 _SECTION_CLIP = {"focusing": 20.0}  # infinite on caustics: the plot stops here
+LOGARITHMIC = (0.05, 20.0)  # values at the centre and at the rim of a logarithmic radius
+_LOGARITHMIC_RINGS = (0.1, 1.0, 10.0)
 _TICK_STEP = 24  # every so many points of a section carry a polarisation tick
-_COST_LEVEL = 5
-_contours: Remembered[tuple[tuple[float, FloatArray], ...]] = Remembered(4)
 
 
 def shown_sides(state: BenchState) -> tuple[str, ...]:
@@ -56,6 +59,11 @@ def shown_sides(state: BenchState) -> tuple[str, ...]:
         for side in sides(state)
         if not shown.wave or state.specimen_of(side).density is not None
     )
+
+
+def _is_known(state: BenchState) -> bool:
+    """Tell whether a crystal that is shown has a density."""
+    return any(state.specimen_of(side).density is not None for side in sides(state))
 
 
 def _medium(state: BenchState, side: str) -> Medium:
@@ -73,8 +81,7 @@ def section_view(state: BenchState, is_live: bool = False) -> SectionView:
     curves = [
         curve for side in shown_sides(state) for curve in _curves(state, shown, side, is_live)
     ]
-    radius = max((_reach(curve) for curve in curves), default=0.0)
-    ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
+    radius, rings = _radius_and_rings(shown, curves)
     across, up = plane_axes(np.array(state.section))
     dotted = any(
         flags is not None and flags.any()
@@ -85,18 +92,45 @@ def section_view(state: BenchState, is_live: bool = False) -> SectionView:
         title=quantity_title(shown),
         curves=tuple(curves),
         radius=radius,
-        rings=tuple(zip(ticks, tick_texts(ticks), strict=True)),
+        rings=rings,
         axis_labels=(axis_label(across), axis_label(up)),
+        far_labels=far_labels(across, up),
+        logarithmic=LOGARITHMIC if shown.logarithmic else None,
         unit=shown.unit,
         pin_angle=_pin_angle(state, across, up),
         negative_note=_dotted_note(shown, dotted),
-        notice="" if curves else NO_DENSITY,
+        notice="" if curves else hidden_notice(state) or NO_DENSITY,
         legend=tuple((side, pane_title(state, side)) for side in shown_sides(state)),
         directions=_rim_directions(state, across, up),
         ticks=_section_ticks(state, shown, across, up),
         plane=plane_key(state.section),
         planes=plane_choices(state),
     )
+
+
+def _radius_and_rings(
+    shown: Quantity, curves: list[Curve]
+) -> tuple[float, tuple[tuple[float, str], ...]]:
+    """Return the radius of the drawing and its rings with their texts."""
+    if shown.logarithmic and curves:
+        return 1.0, tuple((float(_log_share(v)), f"{v:g}") for v in _LOGARITHMIC_RINGS)
+    radius = max((_reach(curve) for curve in curves), default=0.0)
+    ticks = nice_ticks(0.0, radius, 4)[1:] if radius > 0 else ()
+    return radius, tuple(zip(ticks, tick_texts(ticks), strict=True))
+
+
+def _log_share(values: FloatArray | float) -> FloatArray:
+    """Return how far out values stand on a logarithmic radius: 0 the centre, 1 the rim."""
+    low, high = LOGARITHMIC
+    kept = np.clip(values, low, high)  # leaves NaN alone
+    return np.asarray(np.log(kept / low) / np.log(high / low))
+
+
+def _on_log_radius(points: FloatArray) -> FloatArray:
+    """Return points (2, ...) moved along their rays to where their logarithm stands."""
+    length = np.hypot(points[0], points[1])
+    share = _log_share(length)
+    return np.asarray(points * (share / np.where(length > 0.0, length, 1.0)))
 
 
 def _reach(curve: Curve) -> float:
@@ -126,6 +160,9 @@ def _curves(state: BenchState, shown: Quantity, side: str, is_live: bool) -> lis
             drawn = parted(drawn, gaps)
             leaves = parted_flags(found.out_of_plane[sheet], gaps)
             band = None if band is None else parted(band, gaps)
+        if shown.logarithmic:
+            drawn = _on_log_radius(drawn)
+            band = None if band is None else np.stack([_on_log_radius(edge) for edge in band])
         curves.append(Curve(drawn, side, sheet, label, band, negative, leaves))
     return curves
 
@@ -144,7 +181,7 @@ def _dotted_note(shown: Quantity, dotted: bool) -> str:
     if not dotted:
         return ""
     return (
-        "dotted where the ray leaves the plane"
+        "dotted: the ray leaves the plane"
         if shown.shape == "wave"
         else ("dotted where negative")
     )
@@ -156,6 +193,15 @@ def axis_label(vector: FloatArray) -> str:
         if abs(vector @ axis) > 1 - 1e-9:
             return name if vector @ axis > 0 else f"−{name}"
     return " ".join(significant(round(float(x), 2), 2) for x in vector)
+
+
+def far_labels(across: FloatArray, up: FloatArray) -> tuple[str, str]:
+    """Return what stands at the far ends of two axes: "−X", and nothing for a free direction.
+
+    Three numbers at either end would leave the drawing no room, and say the same twice.
+    """
+    left, below = (axis_label(-vector) for vector in (across, up))
+    return ("" if " " in left else left, "" if " " in below else below)
 
 
 def _pin_angle(state: BenchState, across: FloatArray, up: FloatArray) -> float | None:
@@ -199,7 +245,9 @@ def _section_ticks(
     state: BenchState, shown: Quantity, across: FloatArray, up: FloatArray
 ) -> FloatArray | None:
     """Return polarisation ticks on the curves of the first side, shape (2, 2, M)."""
-    if not state.display.ticks or shown.sheets == 1 or not shown_sides(state):
+    if not state.display.ticks or shown.sheets == 1 or shown.logarithmic:
+        return None
+    if not shown_sides(state):
         return None
     medium = _medium(state, shown_sides(state)[0])
     found = live.section(medium, state.quantity, state.section)
@@ -248,19 +296,23 @@ def hemisphere_view(
     projection = state.display.projection
     sheet = min(state.display.hemisphere_sheet, shown.sheets - 1)
     picture = np.full((2, 2), np.nan)
+    media: tuple[Medium, ...] = ()
     if known:
         media = tuple(_medium(state, side) for side in sides_wanted)
-        picture = _disc_values(
+        picture = disc_values(
             media, shown.key, choice, sheet, projection, state.cutting_error_deg, size
         )
-    about = _colour_of(state, shown, choice, sides_wanted)
-    scale = scale_view(about, *_picture_range(about, picture, projection, size))
+    about = _colour_of(state, shown, choice, sides_wanted, media)
+    ends = _picture_range(about, picture, projection, size)
+    if known and fine and choice in ("A", "B") and not about.logarithmic:
+        ends = _widened(ends, true_range(media[0], shown.key)[sheet])
+    scale = scale_view(about, *ends)
     levels = tuple(value for value, _ in scale.ticks)
     return HemisphereView(
         title=about.title,
         picture=picture,
         scale=scale,
-        contours=_contour_lines(picture, levels) if known and fine else (),
+        contours=contour_lines(picture, levels) if known and fine else (),
         marks=_hemisphere_marks(state, choice, axes_of) if known else (),
         lines=_degenerate_lines(state, choice, axes_of) if known else (),
         projection=projection,  # type: ignore[arg-type]
@@ -284,6 +336,14 @@ def _picture_range(
     return max(low, -limit), min(high, limit)
 
 
+def _widened(ends: tuple[float, float], true: FloatArray) -> tuple[float, float]:
+    """Return the range of a picture widened to the extremes between its pixels, where known."""
+    low, high = ends
+    if not np.isfinite(true).all():
+        return ends
+    return min(low, float(true[0])), max(high, float(true[1]))
+
+
 def _hemisphere_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
     both = len(sides(state)) == 2
     keys = ("A", "B", "difference", "cost") if both else (sides(state)[0], "cost")
@@ -304,82 +364,20 @@ def _sides_of(state: BenchState, choice: str) -> tuple[str, ...]:
 
 
 def _colour_of(
-    state: BenchState, shown: Quantity, choice: str, about: tuple[str, ...]
-) -> ColourOf:
-    """Return what the colours of the hemisphere tell."""
-    title = quantity_title(shown)
-    if choice == "difference":
-        return ColourOf(f"B − A: {title}", diverging=True)
-    if choice == "cost":
-        return ColourOf(f"change of {title} within ±{state.cutting_error_deg:g}° ({about[0]})")
-    return ColourOf(title, shown.signed, shown.logarithmic)
-
-
-@lru_cache(maxsize=8)
-def _disc_values(
+    state: BenchState, shown: Quantity, choice: str, about: tuple[str, ...],
     media: tuple[Medium, ...],
-    key: str,
-    choice: str,
-    sheet: int,
-    projection: str,
-    delta: float,
-    size: int,
-) -> FloatArray:
-    """Return the picture of one sheet; the same request gives the same object."""
-    if choice == "cost":
-        costs: FloatArray = _cost_picture(media[0], key, projection, delta, size)[sheet]
-        return costs
-    values = [live.hemisphere(medium, key, projection, size)[sheet] for medium in media]
-    picture: FloatArray = values[1] - values[0] if choice == "difference" else values[0]
-    return picture
-
-
-@lru_cache(maxsize=4)
-def _cost_picture(
-    medium: Medium, key: str, projection: str, delta: float, size: int
-) -> FloatArray:
-    """Return the cost of a cutting error on the disc, taken from the nearest vertices."""
-    mesh = sphere_mesh(_COST_LEVEL)
-    costs = cost_map(medium, mesh, delta, key)
-    inside = live.disc(projection, size)[1]
-    nearest = _nearest_vertices(projection, size)
-    picture = np.full((len(costs), *inside.shape), np.nan)
-    picture[:, inside] = costs[:, nearest]
-    return picture
-
-
-@lru_cache(maxsize=4)
-def _nearest_vertices(projection: str, size: int) -> IntArray:
-    """Return, for every pixel of the disc, the nearest evaluated direction of the mesh."""
-    from scipy.spatial import cKDTree
-
-    half = sphere_mesh(_COST_LEVEL).half.n
-    both = np.concatenate([half, -half], axis=1).T
-    _, index = cKDTree(both).query(live.disc(projection, size)[0].n.T)
-    return np.asarray(index % half.shape[1])
-
-
-def _contour_lines(
-    picture: FloatArray, levels: tuple[float, ...]
-) -> tuple[tuple[float, FloatArray], ...]:
-    """Return contour lines of the picture in disc coordinates, remembered by the picture."""
-    return _contours.get((picture, levels), lambda: _trace(picture, levels))
-
-
-def _trace(
-    picture: FloatArray, levels: tuple[float, ...]
-) -> tuple[tuple[float, FloatArray], ...]:
-    import pyqtgraph as pg
-
-    size = picture.shape[0]
-    lines = []
-    for level in levels:
-        for line in pg.functions.isocurve(picture, level, connected=True):
-            points = np.array(line).T  # the middle of the first pixel is (0.5, 0.5)
-            x = points[1] / size * 2.0 - 1.0
-            y = 1.0 - points[0] / size * 2.0
-            lines.append((level, np.stack([x, y])))
-    return tuple(lines)
+) -> ColourOf:  # fmt: skip
+    """Return what the colours of the hemisphere tell."""
+    colours, title = colour_of(shown), quantity_title(shown)
+    if choice not in ("difference", "cost"):
+        return colours
+    sizes = [float(np.nan_to_num(np.abs(true_range(medium, shown.key))).max())
+             for medium in media]  # fmt: skip
+    size = max([colours.size, *sizes])
+    if choice == "difference":
+        return ColourOf(f"B − A: {title}", diverging=True, size=size)
+    words = f"change of {title} within ±{state.cutting_error_deg:g}° ({about[0]})"
+    return ColourOf(words, size=size)
 
 
 def _hemisphere_marks(
@@ -519,7 +517,7 @@ def sweep_view(state: BenchState) -> SweepView:
         ),
         chosen=chosen,
         value_label=f"{shown.symbol}{', ' if shown.unit else ''}{shown.unit}",
-        notice=notice if curves else NO_DENSITY,
+        notice=notice if curves else hidden_notice(state) or NO_DENSITY,
     )
 
 
@@ -530,6 +528,12 @@ def sweep_direction(state: BenchState, degrees: float) -> Vector3:
 
 
 # ------------------------------------------------------------------ source picture
+def _plane_words(state: BenchState) -> str:
+    """Return what the section plane is called in a short sentence, "part XZ"."""
+    key = plane_key(state.section)
+    return "the section plane" if key == "other" else dict(plane_choices(state))[key]
+
+
 def source_view(state: BenchState, time_us: float | None = None) -> SourceView:
     """Return the wavefronts from a point source in the section plane.
 
@@ -560,5 +564,7 @@ def source_view(state: BenchState, time_us: float | None = None) -> SourceView:
         time_us=time_us,
         rings=tuple(zip(rings, tick_texts(rings), strict=True)),
         axis_labels=(axis_label(across), axis_label(up)),
-        notice="" if curves else NO_DENSITY,
+        far_labels=far_labels(across, up),
+        before_time=f"wavefronts in {_plane_words(state)} after",
+        notice=("" if curves else ALL_HIDDEN if _is_known(state) else NO_DENSITY),
     )

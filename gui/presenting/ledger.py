@@ -16,20 +16,21 @@ from core.crystal.cell import (
     axes_words,
     cell_mismatch,
 )
-from core.crystal.directions import nearest_indices
 from core.crystal.orientation import (
     WAYS,
     misorientation,
+    missed_direction,
     orientation_texts,
     parse_orientation,
     turned,
 )
 from core.editing.specimen import FITS
 from core.errors import InputError
-from core.numbers import full_precision, significant, with_deviation
-from core.state import BenchState, OrientationChoice, Specimen, claimed_class
+from core.numbers import MINUS, full_precision, significant, with_deviation
+from core.state import BenchState, OrientationChoice, Specimen, claimed_class, stiffness_of
 from core.study.trust.findings import Findings
 from core.study.trust.plausibility import DENSITY
+from core.study.trust.symmetry_verdict import claim_sentence
 from core.study.uncertainty.changes import deviations_of
 from core.study.uncertainty.deviations import eigenstiffness_deviation
 from core.study.verdict import Verdict, judge
@@ -45,6 +46,7 @@ from core.tensor.symmetry import (
     distance,
     laue_rotations,
 )
+from gui.presenting.near import axis_words
 from gui.presenting.sigmas import number_text, plain_or_bracketed
 from gui.presenting.spread import crystal_factor
 from gui.viewdata import (
@@ -64,6 +66,11 @@ COVARIANCE_NOTE = (
     "How the 21 errors are correlated is known too (a full covariance), and every ± goes by "
     "it. Editing an uncertainty lets the correlations go."
 )
+LEAST_CHANCE = 0.95  # of being stable: with less a crystal is doubtful
+DOUBTED = "Stable, but not beyond the uncertainties"
+_ABOUT_CLASS = ("as entered", "in these axes", "claimed ", "nearest higher class")
+_DIGITS = 4
+_PLAIN = (1e-3, 1e6)  # sizes of the largest number that are written without powers of ten
 _OFF_PATTERN = 1e-6  # of the largest constant: a cell this far from its class says so
 
 
@@ -83,16 +90,40 @@ def verdict_of(specimen: Specimen, symmetry: str = "", notes: int = 0) -> Verdic
 
 def verdict_view(specimen: Specimen, findings: Findings | None = None) -> VerdictView:
     """Return the band above everything, with what the search for symmetry has found."""
-    if findings is None:
-        verdict = verdict_of(specimen)
-    else:
-        verdict = verdict_of(specimen, findings.symmetry.sentence, len(findings.notes))
-    facts = verdict.facts
+    verdict = verdict_of(specimen)
+    mark, headline, facts = verdict.mark, verdict.headline, verdict.facts
+    if findings is not None:
+        facts = _with_findings(specimen, findings, facts)
+        chance = findings.chance
+        if mark == "stable" and chance is not None and chance.probability < LEAST_CHANCE:
+            mark, headline = "doubtful", DOUBTED
+            facts = (f"stable in {100 * chance.probability:.0f} % of the draws", *facts)
     if specimen.density is None:
         facts = (*facts, "no density: waves are off")
     elif not DENSITY[0] <= specimen.density <= DENSITY[1]:
         facts = (f"no crystal has a density of {significant(specimen.density)} kg/m³", *facts)
-    return VerdictView(verdict.mark, verdict.headline, facts, verdict.detail)
+    return VerdictView(mark, headline, facts, verdict.detail)
+
+
+def _with_findings(
+    specimen: Specimen, findings: Findings, facts: tuple[str, ...]
+) -> tuple[str, ...]:
+    """Return the facts of a verdict with one on what is claimed and found of the symmetry.
+
+    It comes first where it is news; of an unstable crystal what gives way comes first.
+    """
+    claimed, stiffness = claimed_class(specimen), stiffness_of(specimen)
+    said = claim_sentence(claimed, distance(stiffness.voigt, claimed), findings.symmetry)
+    others = [fact for fact in facts if not is_about_class(fact)]
+    is_news = ";" in said and assess(stiffness).stable
+    facts = (said, *others) if is_news else (*others[:1], said, *others[1:])
+    count = len(findings.notes)
+    return (f"{count} {'note' if count == 1 else 'notes'}", *facts) if count else facts
+
+
+def is_about_class(fact: str) -> bool:
+    """Return whether a fact of a verdict tells how the table stands to its claimed class."""
+    return any(words in fact for words in _ABOUT_CLASS)
 
 
 def window_title(specimen: Specimen) -> str:
@@ -108,10 +139,14 @@ def constants_view(specimen: Specimen, face: str) -> ConstantsView:
     expected = _expected(specimen, claimed) if face == "stiffness" else table
     std = deviations(specimen) if face == "stiffness" else np.zeros((6, 6))
     slack = _OFF_PATTERN * float(np.abs(np.array(specimen.stiffness)).max())
+    decimals = _decimals(table, claimed)
+    texts = [
+        [_cell_text(face, float(table[i, j]), float(std[i, j]), decimals) for j in range(6)]
+        for i in range(6)
+    ]
     cells = tuple(
         tuple(
-            _cell(face, claimed, table, expected, slack, i, j, float(std[i, j]))
-            for j in range(6)
+            _cell(face, claimed, table, expected, slack, i, j, texts[i][j]) for j in range(6)
         )
         for i in range(6)
     )
@@ -155,7 +190,7 @@ def _cell(
     slack: float,
     row: int,
     column: int,
-    deviation: float,
+    text: str,
 ) -> CellView:
     """Return one cell; a number that breaks the class's pattern shows as a free one."""
     i, j = sorted((row, column))
@@ -177,14 +212,30 @@ def _cell(
         tooltip = f"equal to {letter}{i + 1}{j + 1}"
     if kind == "zero":
         return CellView("·", "zero", "0.0", f"{letter}{i + 1}{j + 1}: zero by symmetry")
-    return CellView(_cell_text(face, value, deviation), kind, full_precision(value), tooltip)  # type: ignore[arg-type]
+    full = full_precision(value)
+    return CellView(text, kind, full, f"{tooltip}: {full.replace('-', MINUS)} {UNITS[face]}")  # type: ignore[arg-type]
 
 
-def _cell_text(face: str, value: float, deviation: float) -> str:
-    """Return a number with the digits that its uncertainty leaves it."""
+def _decimals(table: FloatArray, claimed: CrystalClass) -> int | None:
+    """Return how many decimals all numbers of a face have; None where they are of odd sizes.
+
+    The largest independent number shows four significant digits, so the others line up under
+    it and what rounding left reads as zero.
+    """
+    free = [abs(float(table[i, j])) for i, j in claimed.independent]
+    largest = max(free) if np.isfinite(table).all() else 0.0
+    if not _PLAIN[0] <= largest < _PLAIN[1]:
+        return None
+    return max(_DIGITS - 1 - int(f"{largest:.{_DIGITS - 1}e}".split("e")[1]), 0)
+
+
+def _cell_text(face: str, value: float, deviation: float, decimals: int | None) -> str:
+    """Return a number with the digits that its uncertainty leaves it, or that its face has."""
     if face == "uncertainty":
         return "·" if value == 0.0 else significant(value, 2)
-    return with_deviation(value, deviation).split(" ")[0]
+    if deviation > 0 or decimals is None:
+        return with_deviation(value, deviation).split(" ")[0]
+    return f"{round(value, decimals) + 0.0:.{decimals}f}".replace("-", MINUS)
 
 
 def edit_label(face: str, row: int, column: int) -> str:
@@ -318,10 +369,12 @@ def orientation_view(state: BenchState, side: str) -> OrientationView:
     """Return the form of one orientation."""
     specimen, choice = state.specimen_of(side), state.orientation_of(side)
     way, others, axes = _said(choice, specimen.frame)
+    doubt = missed_direction(choice.text, specimen.frame)
     note = _misorientation_note(state) if side == "B" else ""
     return OrientationView(
-        side, choice.text, way, tuple(WAYS.items()), choice.turn, others, axes, note
-    )
+        side, choice.text, way, tuple(WAYS.items()), choice.turn, others, axes, note,
+        doubt,
+    )  # fmt: skip
 
 
 @lru_cache(maxsize=8)
@@ -336,17 +389,6 @@ def _said(
     return said.way, others, axes
 
 
-def axis_words(vector: FloatArray, frame: CrystalFrame) -> str:
-    """Return the low-index direction nearest to a vector (crystal axes), with how far off."""
-    if not frame.has_basis:
-        return "  ".join(significant(round(float(x), 4), 3) for x in vector)
-    near = nearest_indices(vector, frame)
-    plane = nearest_indices(vector, frame, plane=True)
-    best = plane if plane.angle_deg < near.angle_deg - 1e-6 else near
-    off = "" if best.angle_deg < 5e-3 else f" {significant(best.angle_deg, 2)}° off"
-    return best.text.replace("-", "−") + off
-
-
 def _misorientation_note(state: BenchState) -> str:
     """Return how far B is turned from A, as it stands and by the crystal's own symmetry."""
     rotation_a, rotation_b = (
@@ -355,7 +397,7 @@ def _misorientation_note(state: BenchState) -> str:
     plain = misorientation(rotation_a, rotation_b)
     if plain.angle_deg < 1e-9:
         return "the same orientation as A"
-    text = f"{significant(plain.angle_deg, 4)}° from A"
+    text = f"{significant(plain.angle_deg, 4)}° from A as they stand"
     claimed = claimed_class(state.specimen)
     if state.other is not None or claimed.key in ("triclinic", "isotropic"):
         return text

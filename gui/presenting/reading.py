@@ -11,12 +11,11 @@ from typing import Any
 import numpy as np
 
 from core import live
-from core.crystal.directions import nearest_indices
 from core.directional import waves
 from core.directional.debye import debye_speed
 from core.directional.extremes import Extreme
 from core.directional.medium import Medium
-from core.directional.quantities import QUANTITIES, quantity
+from core.directional.quantities import QUANTITIES, Quantity, quantity
 from core.directional.sphere import Directions, directions
 from core.numbers import full_precision, signed, significant
 from core.state import BenchState, Specimen, Vector3, claimed_class
@@ -25,6 +24,7 @@ from core.study.tolerance import cone_extremes
 from core.study.uncertainty.deviations import extreme_deviations
 from core.tensor.averages import anisotropy, averages, hashin_shtrikman
 from core.tensor.stiffness import Stiffness
+from gui.presenting.near import angle_words, near_words, place_words
 from gui.presenting.sigmas import (
     DIFFERENCE_BRACKETS,
     NOTHING,
@@ -37,11 +37,19 @@ from gui.presenting.sigmas import (
     rounded,
     sigma_words,
 )
-from gui.presenting.spread import PinSpread, TableSpread, crystal_factor, quick_deviations
+from gui.presenting.spread import (
+    IMPEDANCE,
+    LONGITUDINALITY,
+    SPLITTING,
+    PinSpread,
+    TableSpread,
+    crystal_factor,
+    quick_deviations,
+)
 from gui.presenting.stage import SHEET_NAMES, sides
 from gui.viewdata import ExtremeRow, ExtremesView, ReadingRow, ReadingView, TableView
 
-_DUST = 1e-12
+_DUST = 1e-9  # of the size of a quantity
 Row = tuple[str, str, str, float, str, str]  # key, label, unit, value, tooltip, group
 
 
@@ -83,7 +91,22 @@ def reading_view(state: BenchState, spread: PinSpread | None = None) -> ReadingV
         bool(a and b),
         notice,
         sides(state)[0],
+        _about(state),
     )
+
+
+def _about(state: BenchState) -> str:
+    """Return whose numbers these are, in one line for whoever pastes them."""
+    parts = [
+        f"{side}: {state.specimen_of(side).name}, orientation {state.orientation_of(side).text}"
+        + "".join(
+            f", turned {significant(angle)}° about {axis}"
+            for axis, angle in zip("XYZ", state.orientation_of(side).turn, strict=True)
+            if angle
+        )
+        for side in sides(state)
+    ]
+    return "; ".join((*parts, f"pin {pin_words(state.pin)}"))
 
 
 def _place_of(row: Row) -> tuple[str, str]:
@@ -97,31 +120,13 @@ def _medium(state: BenchState, side: str) -> Medium:
 
 def pin_words(pin: Vector3) -> str:
     """Return the polar angles of the pin in part axes."""
-    x, y, z = pin
-    theta = np.degrees(np.arctan2(np.hypot(x, y), z))
-    phi = np.degrees(np.arctan2(y, x)) if np.hypot(x, y) > 1e-12 else 0.0
-    return f"θ {theta:.1f}°  φ {phi:.1f}° in part axes".replace("-", "−")
+    return f"{angle_words(np.array(pin))} in part axes"
 
 
 def _near_words(state: BenchState, side: str) -> str:
     specimen = state.specimen_of(side)
     vector = live.rotation(state.orientation_of(side), specimen).T @ np.array(state.pin)
-    return near_words(vector, specimen)
-
-
-def near_words(vector: np.ndarray, specimen: Specimen) -> str:
-    """Return "near [1 0 2], 1.3° off" for a vector in crystal axes."""
-    if not specimen.frame.has_basis:
-        return "x y z  " + "  ".join(significant(round(float(x), 4), 3) for x in vector)
-    direction = nearest_indices(vector, specimen.frame)
-    plane = nearest_indices(vector, specimen.frame, plane=True)
-    near = plane if plane.angle_deg < direction.angle_deg - 1e-6 else direction
-    text = near.text.replace("-", "−")
-    return (
-        f"along {text}"
-        if near.angle_deg < 5e-3
-        else (f"near {text}, {significant(near.angle_deg, 2)}° off")
-    )
+    return near_words(vector, specimen.frame)
 
 
 @lru_cache(maxsize=4)
@@ -133,10 +138,15 @@ def pin_rows(medium: Medium, pin: Vector3) -> tuple[Row, ...]:
         if entry.wave:
             continue
         value = float(entry.values(medium, one)[0, 0])
-        rows.append((key, entry.short, entry.unit, value, entry.definition, "stiffness"))
+        rows.append((key, entry.short, entry.unit, value, _tip(entry), "stiffness"))
     if medium.density is not None:
         rows += _wave_rows(medium, one)
     return tuple(rows)
+
+
+def _tip(entry: Quantity) -> str:
+    """Return what a symbol stands for, and its definition."""
+    return f"{entry.name}\n{entry.definition}"
 
 
 _WAVE_KEYS = tuple(key for key, entry in QUANTITIES.items() if entry.wave)
@@ -158,27 +168,27 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
                     entry.short,
                     entry.unit,
                     float(values[key][sheet]),
-                    entry.definition,
+                    _tip(entry),
                     group,
                 )
             )
         rows.append(
             (
                 "phase",
-                "longitudinality",
+                LONGITUDINALITY,
                 "",
                 float(along[sheet]),
-                "|p·n|: 1 for a purely longitudinal wave, 0 for a pure shear wave.",
+                "Longitudinality: 1 for a purely longitudinal wave, 0 for a pure shear wave.",
                 group,
             )
         )
         rows.append(
             (
                 "phase",
-                "impedance",
+                IMPEDANCE,
                 "MRayl",
                 float(impedance[sheet]),
-                "Z = ρ v, the acoustic impedance of a plane wave.",
+                "Acoustic impedance of a plane wave: Z = ρ v.",
                 group,
             )
         )
@@ -186,11 +196,11 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
     rows.append(
         (
             "slowness",
-            "shear splitting",
+            SPLITTING[1],
             "ns/mm",
             splitting,
-            "Difference of travel time between the middle and the slowest wave.",
-            "middle and slowest wave",
+            "Shear splitting: travel time of the slowest wave less that of the middle one.",
+            SPLITTING[0],
         )
     )
     return rows
@@ -199,8 +209,10 @@ def _wave_rows(medium: Medium, one: Directions) -> list[Row]:
 def _reading_row(row: Row, other: float | None, sigmas: RowSigmas) -> ReadingRow:
     key, label, unit, value, tooltip, group = row
     place = group, label
-    value, other = _without_dust(value), None if other is None else _without_dust(other)
-    difference = None if other is None else other - value
+    floor = _floor(unit)
+    value = without_dust(value, floor)
+    other = None if other is None else without_dust(other, floor)
+    difference = None if other is None else difference_of(value, other, floor)
     text = rounded if sigmas.beside else number_text
     own = sigmas.first.get(place, 0.0)
     return ReadingRow(
@@ -218,9 +230,22 @@ def _reading_row(row: Row, other: float | None, sigmas: RowSigmas) -> ReadingRow
     )
 
 
-def _without_dust(value: float) -> float:
-    """Return zero for what only rounding keeps from it, as along symmetry axes."""
-    return 0.0 if abs(value) < _DUST else value
+def without_dust(value: float, *scale: float) -> float:
+    """Return zero for what only rounding keeps from it, beside sizes that count."""
+    return 0.0 if abs(value) <= _DUST * max(map(abs, scale)) else value
+
+
+def difference_of(first: float, second: float, floor: float) -> float:
+    """Return second − first, zero where both are the same but for rounding."""
+    return without_dust(second - first, first, second, floor)
+
+
+def _floor(unit: str) -> float:
+    """Return a size below which a unit is never of interest: pure numbers and angles are of 1.
+
+    Other quantities may be of any size, and where they vanish they do so all but exactly.
+    """
+    return 1.0 if unit in ("", "°") else 1e-3
 
 
 # ------------------------------------------------------------------ extremes
@@ -229,15 +254,26 @@ _EXTREMES = (
     ("compressibility", "β", "1/TPa"),
     ("shear", "G", "GPa"),
     ("poisson", "ν", ""),
-    ("fast", "fastest v", "km/s"),
-    ("middle", "middle v", "km/s"),
-    ("slow", "slowest v", "km/s"),
+    ("fast", "v1", "km/s"),
+    ("middle", "v2", "km/s"),
+    ("slow", "v3", "km/s"),
 )
+_EXTREME_WORDS = {
+    "E": "Young's modulus", "β": "Linear compressibility",
+    "G": "Shear modulus over all pairs of directions",
+    "ν": "Poisson's ratio over all pairs of directions",
+    "v1": "Speed of the fastest wave", "v2": "Speed of the middle wave",
+    "v3": "Speed of the slowest wave",
+}  # fmt: skip
 Extremes = dict[str, tuple[Extreme | None, Extreme | None]]
 
 
 def extremes_view(
-    specimen: Specimen, turn: np.ndarray, found: Extremes | None, pending: bool
+    specimen: Specimen,
+    turn: np.ndarray,
+    found: Extremes | None,
+    pending: bool,
+    whose: str = "",
 ) -> ExtremesView:
     """Return the extremes over all directions.
 
@@ -250,6 +286,8 @@ def extremes_view(
         Crystal axes; None while nothing has been computed yet.
     pending : bool
         Whether a newer result is on its way.
+    whose : str
+        Which crystal this is, where there are two.
     """
     sigmas = {} if found is None or pending else _extreme_sigmas(specimen, found)
     rows = (
@@ -267,8 +305,16 @@ def extremes_view(
         ]
     )
     return ExtremesView(
-        "Extremes", tuple(rows), pending, "being found …" if found is None else ""
+        "Extremes", tuple(rows), pending, "being found …" if found is None else "", whose
     )
+
+
+def whose(state: BenchState) -> str:
+    """Return which of two crystals the tables of one crystal are about."""
+    if state.other is None:
+        return ""
+    side = state.display.ledger
+    return f"crystal of {side}: {state.specimen_of(side).name}"
 
 
 def _extreme_sigmas(
@@ -296,12 +342,15 @@ def _extreme_row(
             name, "–", "not defined", None, "Not defined: the table is unstable.", ""
         )
     crystal = np.array(extreme.direction)
-    place = place_words(crystal, specimen)
+    place = place_words(crystal, specimen.frame, turn)
     place = {"all": "every direction", "ring": f"ring through {place}"}.get(
         extreme.where, place
     )
     spread = f" ± {significant(sigma, 2)}" if sigma else ""
-    tooltip = f"{extreme.value!r}{spread} along {extreme.direction} in crystal axes"
+    tooltip = (
+        f"{_EXTREME_WORDS[label.split()[0]]}\n"
+        f"{extreme.value!r}{spread} along {extreme.direction} in crystal axes"
+    )
     if extreme.transverse is not None:
         tooltip += f", transverse direction {extreme.transverse}"
     x, y, z = (turn @ crystal).tolist()
@@ -313,15 +362,6 @@ def _extreme_row(
         tooltip,
         full_precision(extreme.value),
     )
-
-
-def place_words(vector: np.ndarray, specimen: Specimen) -> str:
-    """Return the lattice direction near a vector of crystal axes, or its components."""
-    if not specimen.frame.has_basis:
-        return "  ".join(significant(round(float(x), 3), 2) for x in vector)
-    near = nearest_indices(vector, specimen.frame)
-    text = near.text.replace("-", "−")
-    return text if near.angle_deg < 0.05 else f"{text} {significant(near.angle_deg, 2)}° off"
 
 
 # ------------------------------------------------------------------ cutting error
@@ -341,26 +381,15 @@ def cutting_error_view(state: BenchState) -> TableView:
                     if entry.sheets == 1
                     else (f"{SHEET_NAMES[sheet]} {entry.symbol}")
                 )
-                rows.append(
-                    (
-                        side,
-                        label,
-                        significant(cone.least),
-                        significant(cone.greatest),
-                        significant(abs(cone.slope), 3),
-                        entry.unit,
-                    )
+                floor = _floor(entry.unit)
+                sizes = [x for x in (cone.least, cone.greatest, floor) if np.isfinite(x)]
+                least, greatest, slope = (
+                    without_dust(x, *sizes) for x in (cone.least, cone.greatest, cone.slope)
                 )
-                full.append(
-                    (
-                        side,
-                        label,
-                        full_precision(cone.least),
-                        full_precision(cone.greatest),
-                        full_precision(cone.slope),
-                        entry.unit,
-                    )
-                )
+                shown = significant(least), significant(greatest), significant(abs(slope), 3)
+                exact = map(full_precision, (least, greatest, slope))
+                rows.append((side, label, *shown, entry.unit))
+                full.append((side, label, *exact, entry.unit))
     return TableView(
         "Cutting error",
         ("", "", "least", "greatest", "per °", "unit"),
@@ -381,11 +410,14 @@ def _cone_keys(state: BenchState, medium: Medium) -> tuple[str, ...]:
 
 
 # ------------------------------------------------------------------ aggregates and part
-def aggregate_view(specimen: Specimen, spread: TableSpread | None = None) -> TableView:
+def aggregate_view(
+    specimen: Specimen, spread: TableSpread | None = None, whose: str = ""
+) -> TableView:
     """Return averages, bounds and indices of anisotropy, with uncertainties where known."""
     view = _aggregate(
         specimen.stiffness, specimen.density, claimed_class(specimen).key == "cubic"
     )
+    view = replace(view, notice=whose)
     if spread is None or not spread.aggregate:
         return view
     sigmas = tuple(spread.aggregate.get(row[0], ()) for row in view.rows)
@@ -434,29 +466,32 @@ def _aggregate(table: Any, density: float | None, cubic: bool) -> TableView:
     ]
     lines += [
         (
-            "Hashin–Shtrikman, upper",
+            "H–S, upper",
             (bounds.bulk_high, bounds.shear_high),
-            "Closest upper bound on a random polycrystal without texture.",
+            "Hashin–Shtrikman: closest upper bound on a random polycrystal without texture.",
         ),
         (
-            "Hashin–Shtrikman, lower",
+            "H–S, lower",
             (bounds.bulk_low, bounds.shear_low),
-            "Closest lower bound on a random polycrystal without texture.",
+            "Hashin–Shtrikman: closest lower bound on a random polycrystal without texture.",
         ),
         (
-            "universal anisotropy",
-            (index.universal,),
-            "5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski 2008); 0 when isotropic.",
+            "A universal",
+            (without_dust(index.universal, 1.0),),
+            "Universal anisotropy: 5 G_V/G_R + K_V/K_R − 6 (Ranganathan & Ostoja-Starzewski"
+            " 2008); 0 when isotropic.",
         ),
         (
-            "log-Euclidean anisotropy",
-            (index.log_euclidean,),
-            "√[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when isotropic.",
+            "A log-Euclid",
+            (without_dust(index.log_euclidean, 1.0),),
+            "Log-Euclidean anisotropy: √[ln²(K_V/K_R) + 5 ln²(G_V/G_R)] (Kube 2016); 0 when"
+            " isotropic.",
         ),
         (
-            "percent anisotropy of K, G",
-            (index.percent_bulk, index.percent_shear),
-            "100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung & Buessem 1967).",
+            "A % of K, G",
+            tuple(without_dust(x, 1.0) for x in (index.percent_bulk, index.percent_shear)),
+            "Percent anisotropy: 100 (K_V − K_R)/(K_V + K_R), and the same of G (Chung &"
+            " Buessem 1967).",
         ),
     ]
     if index.zener is not None:
@@ -464,9 +499,9 @@ def _aggregate(table: Any, density: float | None, cubic: bool) -> TableView:
     if density is not None:
         lines.append(
             (
-                "Debye speed, km/s",
+                "Debye, km/s",
                 (debye_speed(Medium(stiffness, density)).speed,),
-                "(⟨Σ v⁻³⟩/3)^(−1/3) over all directions and the three waves.",
+                "Debye speed: (⟨Σ v⁻³⟩/3)^(−1/3) over all directions and the three waves.",
             )
         )
     return TableView(
@@ -495,10 +530,10 @@ def part_view(state: BenchState, spread: TableSpread | None = None) -> TableView
     header = ("", "A", "B", "B − A") if second else ("", sides(state)[0])
     rows = tuple(_part_row(row, second, significant, lambda x: signed(x, 3)) for row in first)
     full = tuple(_part_row(row, second, full_precision, full_precision) for row in first)
+    view = TableView("Part", header, rows, full, tuple(_part_words(row) for row in first))
     if spread is None or not spread.part:
-        return TableView("Part", header, rows, full)
+        return view
     sigmas = _part_sigmas(state, tables, spread)
-    view = TableView("Part", header, rows, full, ("",) * len(rows))
     return replace(view, **_with_sigmas(rows, full, sigmas, view.tooltips))
 
 
@@ -522,11 +557,26 @@ def _part(medium: Medium) -> tuple[PartRow, ...]:
     return part_table(medium)
 
 
+_PART_SYMBOLS = tuple(
+    (f"{name} wave{words}", f"{letter}{number}")
+    for number, name in enumerate(SHEET_NAMES, start=1)
+    for words, letter in ((": power flow off", "ψ"), ("", "v"))
+)
+
+
+def _part_words(row: PartRow) -> str:
+    return f"{row.label}{', ' if row.unit else ''}{row.unit}"
+
+
 def _part_row(
     row: PartRow, second: dict[str, float], text: Any, difference_text: Any
 ) -> tuple[str, ...]:
-    label = f"{row.label}{', ' if row.unit else ''}{row.unit}"
+    label = _part_words(row)
+    for words, symbol in _PART_SYMBOLS:
+        label = label.replace(words, symbol)
+    floor = _floor(row.unit)
+    value = without_dust(row.value, floor)
     if not second:
-        return label, text(row.value)
-    other = second.get(row.key, float("nan"))
-    return label, text(row.value), text(other), difference_text(other - row.value)
+        return label, text(value)
+    other = without_dust(second.get(row.key, float("nan")), floor)
+    return label, text(value), text(other), difference_text(difference_of(value, other, floor))

@@ -10,7 +10,7 @@ import numpy as np
 
 from core.arrays import FloatArray
 from core.crystal.cell import CrystalFrame, axes_text
-from core.editing.readings import Understood, understand
+from core.editing.readings import Understood, understand, unseen_words
 from core.numbers import full_precision, significant, with_deviation
 from core.state import SPEED_COLUMNS, BenchState, MeasuredSpeeds
 from core.study.recovery.conflicts import UNLIKELY, chi2_probability
@@ -18,7 +18,8 @@ from core.study.recovery.fit import Fit
 from core.study.recovery.planning import Plan, Ranking
 from core.study.recovery.readings import DEFAULT_RELATIVE_SIGMA, Reading
 from core.tensor.symmetry import dependence_text
-from gui.presenting.ledger import axis_words, class_choices, ledger_specimen
+from gui.presenting.ledger import class_choices, ledger_specimen
+from gui.presenting.near import axis_words
 from gui.speeds.viewdata import (
     BlankRow,
     BlanksView,
@@ -261,6 +262,7 @@ def result_view(speeds: MeasuredSpeeds, found: Found) -> ResultView:
         can_use=not found.notice,
         pending=found.pending,
         notice=found.notice,
+        question=f"{unseen_words(unseen)}." if unseen else "",
     )
 
 

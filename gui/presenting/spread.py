@@ -41,9 +41,9 @@ Place = tuple[str, str]
 Deviations = dict[Place, float]
 
 STIFFNESS = "stiffness"
-SPLITTING: Place = ("middle and slowest wave", "shear splitting")
-LONGITUDINALITY = "longitudinality"
-IMPEDANCE = "impedance"
+SPLITTING: Place = ("middle and slowest wave", "splitting")
+LONGITUDINALITY = "|p·n|"
+IMPEDANCE = "Z"
 LIVE_KEYS = (
     "young", "compressibility", "shear_least", "shear_greatest", "poisson_least",
     "poisson_greatest", "slowness", "phase",
@@ -348,12 +348,12 @@ def _aggregate(specimen: Specimen) -> dict[str, tuple[float, ...]]:
         )
     }  # fmt: skip
     spreads: dict[str, tuple[float, ...]] = rows | {
-        "universal anisotropy": (index.universal,),
-        "log-Euclidean anisotropy": (index.log_euclidean,),
-        "percent anisotropy of K, G": (index.percent_bulk, index.percent_shear),
+        "A universal": (index.universal,),
+        "A log-Euclid": (index.log_euclidean,),
+        "A % of K, G": (index.percent_bulk, index.percent_shear),
     }
     if index.zener is not None:
         spreads["Zener ratio"] = (index.zener,)
     if specimen.density is not None and medium.stiffness.is_stable:
-        spreads["Debye speed, km/s"] = (debye_deviation(medium, factor),)
+        spreads["Debye, km/s"] = (debye_deviation(medium, factor),)
     return spreads

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 import numpy as np
@@ -10,14 +10,16 @@ import numpy as np
 from core import live
 from core.arrays import Float32Array, FloatArray
 from core.crystal.cell import axes_matrix
+from core.crystal.directions import nearest_indices
 from core.directional.medium import Medium
 from core.directional.quantities import QUANTITIES, Quantity, quantity
 from core.directional.seams import MendedSheet, Seams, find_seams, mend
 from core.directional.sphere import sphere_mesh
 from core.directional.surfaces import Fields, SurfaceMaker
 from core.directional.waves import longitudinality, modes
-from core.numbers import significant
+from core.numbers import MINUS, significant
 from core.state import BenchState, Vector3
+from core.study.true_range import true_range
 from gui.plots.grid import nice_ticks, tick_texts
 from gui.presenting.axes import Axes, AxesOf, axes_in_part, axes_now, single_directions
 from gui.viewdata import (
@@ -35,14 +37,16 @@ PLANES: dict[str, Vector3] = {
     "YZ": (1.0, 0.0, 0.0),
 }
 COLOURS = {
-    "value": "the value",
-    "longitudinality": "how longitudinal",
-    "power_flow": "power-flow angle",
-    "focusing": "focusing",
+    "value": "colour: value",
+    "longitudinality": "colour: how longitudinal",
+    "power_flow": "colour: power-flow angle",
+    "focusing": "colour: focusing",
 }
 SHEET_NAMES = ("fastest", "middle", "slowest")
 NO_DENSITY = "Waves want a density. Enter it in the ledger; the stiffness side works without."
+ALL_HIDDEN = "All sheets are hidden: show one in the bar above."
 LEFT_OUT = "Left out where it is not defined or has no bound: the table is unstable."
+_EXACT_DEG = 1e-5  # a normal this near a low-index one is that one
 _TICK_LEVEL = 2  # 162 vertices: enough ticks to read, few enough to see the sheet
 _TALLEST = 3.0  # times the median: where a quantity runs off to infinity, it is cut there
 _COLOUR_VALUES = {
@@ -50,6 +54,10 @@ _COLOUR_VALUES = {
     **{key: entry.values for key, entry in QUANTITIES.items() if entry.sheets == 3},
 }
 _FOCUSING_RANGE = (0.05, 20.0)  # focusing is infinite on caustics: colours stop here
+_ALIKE = 1e-9  # of the size of a quantity: values that differ by less are one value
+_ALIKE_DRAWN = 1e-6  # the same of surfaces, which are kept to seven digits
+_RIGHT_ANGLE = 90.0  # degrees: the size of an angle, which may itself be zero everywhere
+_FEWEST_DIGITS, _MOST_DIGITS = 4, 10  # of the ends of a scale
 
 
 def toolbar_view(state: BenchState, linked: bool) -> ToolbarView:
@@ -77,6 +85,13 @@ def toolbar_view(state: BenchState, linked: bool) -> ToolbarView:
     )
 
 
+def hidden_notice(state: BenchState) -> str:
+    """Return the sentence for three sheets of which none is shown, or nothing."""
+    hides_all = quantity(state.quantity).sheets == 3 and not any(state.display.sheets)
+    is_known = any(state.specimen_of(side).density is not None for side in sides(state))
+    return ALL_HIDDEN if hides_all and is_known else ""
+
+
 def has_density(state: BenchState) -> bool:
     """Return whether every crystal on the stage has a density."""
     return all(state.specimen_of(side).density is not None for side in sides(state))
@@ -100,9 +115,22 @@ def plane_choices(state: BenchState) -> tuple[tuple[str, str], ...]:
     choices = [(key, f"part {key}") for key in PLANES]
     choices.append(("pin", "through X and the pin"))
     if plane_key(state.section) == "other":
-        words = "  ".join(significant(round(x, 3), 3) for x in state.section)
-        choices.append(("other", f"normal {words}"))
+        choices.append(("other", f"normal {_normal_words(state)}"))
     return tuple(choices)
+
+
+def _normal_words(state: BenchState) -> str:
+    """Return a plane or direction of the crystal that is exactly a free normal, or numbers."""
+    side = sides(state)[0]
+    specimen = state.specimen_of(side)
+    turn = live.rotation(state.orientation_of(side), specimen)
+    if specimen.frame.has_basis:
+        normal = turn.T @ np.array(state.section)
+        for plane in (True, False):
+            near = nearest_indices(normal, specimen.frame, largest=6, plane=plane)
+            if near.angle_deg < _EXACT_DEG:
+                return f"{near.text.replace('-', MINUS)} of {side}'s crystal"
+    return "  ".join(significant(round(x, 3), 3) for x in state.section)
 
 
 # ------------------------------------------------------------------ panes
@@ -125,6 +153,8 @@ def pane_views(
     `core.directional.seams`), as far as `axes_of` knows where that is.
     """
     shown = quantity(state.quantity)
+    if hidden_notice(state):
+        return {side: _empty_pane(state, side, shown) for side in sides(state)}
     level = live.FINE_LEVEL if fine else live.COARSE_LEVEL
     drawn = {}
     for side in sides(state):
@@ -136,7 +166,7 @@ def pane_views(
     groups = [tuple(drawn)] if state.display.shared_scale else [(side,) for side in drawn]
     views = {}
     for group in groups:
-        radius, scale = _settle([drawn[side] for side in group], state, shown)
+        radius, scale = _settle([drawn[side] for side in group], state, shown, fine)
         for side in group:
             views[side] = _pane(state, shown, drawn[side], radius, scale, level, fine)
     return {side: views.get(side) or _empty_pane(state, side, shown) for side in sides(state)}
@@ -174,8 +204,13 @@ def _keep_to_colours(rows: Float32Array, colour: str) -> None:
         np.clip(rows[:, 6], *_FOCUSING_RANGE, out=rows[:, 6])
 
 
-def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[float, ScaleView]:
-    """Return the length that fills a pane and the colour scale, shared by a group of sides."""
+def _settle(
+    group: list[Drawn], state: BenchState, shown: Quantity, fine: bool
+) -> tuple[float, ScaleView]:
+    """Return the length that fills a pane and the colour scale, shared by a group of sides.
+
+    At rest (`fine`) the scale ends at the very extremes, not at those of the vertices.
+    """
     seen = [sheet for one in group for sheet in _visible(one.rows, state)]
     if not seen:
         seen = [sheet for one in group for sheet in one.rows]
@@ -187,7 +222,26 @@ def _settle(group: list[Drawn], state: BenchState, shown: Quantity) -> tuple[flo
     values = [sheet[6] for sheet in seen]
     low = min((float(np.nanmin(v, initial=np.inf)) for v in values), default=0.0)
     high = max((float(np.nanmax(v, initial=-np.inf)) for v in values), default=1.0)
-    return radius or 1.0, scale_view(_colour_quantity(state, shown), low, high)
+    about = _colour_quantity(state, shown)
+    if fine and not about.logarithmic:
+        low, high = _widened(low, high, group, state, shown)
+    return radius or 1.0, scale_view(replace(about, alike=_ALIKE_DRAWN), low, high)
+
+
+def _widened(
+    low: float, high: float, group: list[Drawn], state: BenchState, shown: Quantity
+) -> tuple[float, float]:
+    """Return a range of vertices widened to the extremes between them, where known."""
+    key = shown.key
+    if shown.sheets == 3 and state.display.colour_by != "value":
+        key = state.display.colour_by
+    for one in group:
+        ends = true_range(one.medium, key)
+        if shown.sheets == 3 and any(state.display.sheets):
+            ends = ends[np.flatnonzero(state.display.sheets)]
+        if np.isfinite(ends).all():
+            low, high = min(low, float(ends.min())), max(high, float(ends.max()))
+    return low, high
 
 
 def drawable_limit(sizes: FloatArray) -> float:
@@ -233,11 +287,24 @@ def _visible(rows: tuple[Float32Array, ...], state: BenchState) -> list[Float32A
 
 @dataclass(frozen=True)
 class ColourOf:
-    """What a colour scale is about."""
+    """What a colour scale is about.
+
+    Attributes
+    ----------
+    title : str
+    diverging, logarithmic : bool
+    size : float
+        How large the quantity is where the values shown do not tell: differences may all be
+        zero, and rounding is small beside what they are differences of.
+    alike : float
+        Values that differ by less than this part of the size are one value.
+    """
 
     title: str
     diverging: bool = False
     logarithmic: bool = False
+    size: float = 0.0
+    alike: float = _ALIKE
 
 
 def quantity_title(shown: Quantity) -> str:
@@ -249,17 +316,31 @@ def quantity_title(shown: Quantity) -> str:
 def _colour_quantity(state: BenchState, shown: Quantity) -> ColourOf:
     colour = state.display.colour_by
     if shown.sheets == 3 and colour == "longitudinality":
-        return ColourOf("how longitudinal, |p·n|")
+        return ColourOf("how longitudinal, |p·n|", size=1.0)
     if shown.sheets == 3 and colour != "value":
         shown = quantity(colour)
-    return ColourOf(quantity_title(shown), shown.signed, shown.logarithmic)
+    return colour_of(shown)
+
+
+def colour_of(shown: Quantity) -> ColourOf:
+    """Return the colours that tell a quantity itself."""
+    size = _RIGHT_ANGLE if shown.unit == "°" else 0.0
+    return ColourOf(quantity_title(shown), shown.signed, shown.logarithmic, size)
 
 
 def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
-    """Return the colour scale over a range of values."""
+    """Return the colour scale over a range of values.
+
+    A range that is nothing but rounding is one value: both ends are that value, and there are
+    no ticks.
+    """
     if not (np.isfinite(low) and np.isfinite(high)):
         low, high = 0.0, 1.0
-    ends = significant(low), significant(high)
+    size = max(about.size, abs(low), abs(high))
+    if high - low <= about.alike * size:
+        value = 0.5 * (low + high)
+        return _constant_scale(about, 0.0 if abs(value) <= about.alike * size else value)
+    ends = _end_texts(low, high)
     if about.logarithmic:
         least, most = _FOCUSING_RANGE
         ends = (
@@ -281,6 +362,22 @@ def scale_view(about: ColourOf, low: float, high: float) -> ScaleView:
         tuple(zip(ticks, texts, strict=True)),
         about.logarithmic,
     )
+
+
+def _constant_scale(about: ColourOf, value: float) -> ScaleView:
+    """Return the scale of a quantity that is the same in every direction."""
+    text = significant(value)
+    is_diverging = about.diverging and value <= 0
+    return ScaleView(value, value, text, text, about.title, is_diverging)
+
+
+def _end_texts(low: float, high: float) -> tuple[str, str]:
+    """Return the two ends in words, with as many digits as tell them apart."""
+    for digits in range(_FEWEST_DIGITS, _MOST_DIGITS):
+        texts = significant(low, digits), significant(high, digits)
+        if texts[0] != texts[1]:
+            return texts
+    return significant(low, _MOST_DIGITS), significant(high, _MOST_DIGITS)
 
 
 def _pane(
@@ -365,7 +462,7 @@ def _empty_pane(state: BenchState, side: str, shown: Quantity) -> PaneView:
         triads=(),
         marks=(),
         section=None,
-        notice=NO_DENSITY,
+        notice=NO_DENSITY if state.specimen_of(side).density is None else hidden_notice(state),
     )
 
 

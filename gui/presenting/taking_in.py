@@ -16,7 +16,7 @@ from core.numbers import significant
 from core.state import Specimen
 from core.study.trust.symmetry_verdict import SymmetryVerdict
 from core.tensor.symmetry import crystal_class
-from gui.presenting.ledger import class_choices, constants_view, verdict_view
+from gui.presenting.ledger import class_choices, constants_view, is_about_class, verdict_view
 from gui.presenting.sigmas import sentence
 from gui.viewdata import CellFileView, ReadingChoice, TakingInView
 
@@ -184,7 +184,7 @@ def _lines(
         low, high = (significant(float(x), 2) for x in (sigmas.min(), sigmas.max()))
         spread = f"Uncertainties {low} to {high} GPa." if low != high else (
             f"Uncertainties {low} GPa.")  # fmt: skip
-    others = (fact for fact in facts if "as entered" not in fact)
+    others = (fact for fact in facts if not is_about_class(fact))
     return about, *(sentence(fact) for fact in others), spread
 
 

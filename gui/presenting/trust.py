@@ -17,7 +17,7 @@ from core.numbers import full_precision, significant
 from core.state import BenchState, Specimen, claimed_class, stiffness_of
 from core.study.trust.findings import Entered, Findings, examine
 from core.study.trust.support import Support
-from core.study.trust.symmetry_verdict import vector_text
+from core.study.trust.symmetry_verdict import claim_sentence, vector_text
 from core.study.uncertainty.deviations import eigenstiffness_deviation
 from core.study.uncertainty.draws import MonteCarlo, StabilityChance, monte_carlo
 from core.study.uncertainty.propagation import Contribution
@@ -25,8 +25,8 @@ from core.task import Ticker
 from core.tensor.closest import Share
 from core.tensor.hidden_axes import HiddenAxes
 from core.tensor.stability import assess, criteria
-from core.tensor.symmetry import crystal_class
-from gui.presenting.ledger import ledger_specimen, verdict_view
+from core.tensor.symmetry import CLASS_KEYS, crystal_class, distance
+from gui.presenting.ledger import is_about_class, ledger_specimen, verdict_view
 from gui.presenting.sigmas import number_text, sentence
 from gui.presenting.spread import (
     STIFFNESS,
@@ -44,9 +44,12 @@ _EXACT = 1e-7  # percent
 _NAMED = 3  # constants that are named as worth measuring better
 _LEAST_SHARE = 0.05
 _TENABLE = 10.0  # of Schwarz's criterion: more than that behind the best is hardly tenable
+_MUCH = 1.0  # percent: making a class exact that changes more is worth a warning
+_FAR_BETTER = 0.5  # of the change as entered: when turning first is the better advice
+_SAME_CHANCE = 0.02  # the normal law knows one strain only: said where it agrees with draws
 _DRAW_LEVEL = 4  # 1,281 directions
 _CHAINS = {"trigonal_6": "trigonal", "trigonal_7": "trigonal", "cubic": "cubic"}
-HEADER = ("class", "free", "as entered", "turned", "by", "about", "log", "")
+HEADER = ("class", "free", "as entered", "turned", "by", "about x, y, z", "log", "")
 
 
 # ------------------------------------------------------------------ requests
@@ -104,7 +107,6 @@ def trust_view(
     findings: Findings | None,
     spread: PinSpread | None = None,
     drawn: MonteCarlo | None = None,
-    pending: bool = False,
 ) -> TrustView:
     """Return the trust sheet of the ledger's crystal.
 
@@ -112,46 +114,66 @@ def trust_view(
     ----------
     state : BenchState
     findings : Findings or None
-        Perhaps those of an earlier table, then `pending`; None while there are none.
+        Of this very table; None while they are being found.
     spread : PinSpread, optional
         Uncertainties at this pin.
     drawn : MonteCarlo, optional
         Draws over all directions for this table.
-    pending : bool
-        Whether newer findings are on their way.
     """
     specimen = ledger_specimen(state)
-    symmetry = None if findings is None else findings.symmetry
     suggested = ""
-    if symmetry is not None:
+    chance = None if findings is None else findings.chance
+    if findings is not None:
+        symmetry = findings.symmetry
         hidden = symmetry.hidden
         suggested = symmetry.as_entered.key if hidden is None else hidden.class_key
-    shown = findings if not pending else None
     return TrustView(
-        sentence=FINDING if shown is None else sentence(shown.symmetry.sentence),
+        sentence=FINDING if findings is None else _symmetry_sentence(specimen, findings),
         header=HEADER,
-        classes=() if findings is None else _class_rows(specimen, findings, suggested),
+        classes=(
+            _waiting_rows(specimen)
+            if findings is None
+            else _class_rows(specimen, findings, suggested)
+        ),
         suggested=suggested,
-        support="" if shown is None else _support_text(shown.supports),
-        facts=verdict_view(specimen).facts,
-        chance="" if shown is None or shown.chance is None else chance_text(shown.chance),
+        support="" if findings is None else _support_text(findings.supports),
+        facts=tuple(fact for fact in verdict_view(specimen).facts if not is_about_class(fact)),
+        chance="" if chance is None else chance_text(chance),
         strains=_strains(specimen),
         criteria=_criteria(specimen),
-        notes=() if shown is None else shown.notes,
+        notes=() if findings is None else findings.notes,
         shares=_shares(() if findings is None else findings.shares),
         pin=_pin(state, spread),
         draws="" if drawn is None else draws_text(drawn),
-        pending=pending or findings is None,
+        pending=findings is None,
     )
 
 
 # ------------------------------------------------------------------ symmetry
+def _symmetry_sentence(specimen: Specimen, findings: Findings) -> str:
+    """Return what the table claims and what it has the form of."""
+    claimed = claimed_class(specimen)
+    off = distance(np.array(specimen.stiffness), claimed)
+    return sentence(claim_sentence(claimed, off, findings.symmetry))
+
+
 def _class_rows(specimen: Specimen, findings: Findings, suggested: str) -> tuple[ClassRow, ...]:
     best = findings.supports[0].class_key if findings.supports else ""
     return tuple(
         _class_row(specimen, entered, axes, suggested, best)
         for entered, axes in zip(findings.entered, findings.hidden, strict=True)
     )
+
+
+def _waiting_rows(specimen: Specimen) -> tuple[ClassRow, ...]:
+    """Return the classes without numbers: those of another table would mislead."""
+    rows = []
+    for key in CLASS_KEYS:
+        cls = crystal_class(key)
+        claimed = "claimed" if key == specimen.crystal_class else ""
+        cells = (_name(key), str(len(cls.independent)), "…", "…", "", "", "", claimed)
+        rows.append(ClassRow(key, cells, cells, FINDING, False, False))
+    return tuple(rows)
 
 
 def _class_row(
@@ -174,7 +196,7 @@ def _class_row(
     if is_better and (axes.axis_uncertainty_deg or 0.0) > _SEEN_TURN:
         turn = f"{axes.turn_deg:.1f} ± {significant(axes.axis_uncertainty_deg or 0.0, 1)}°"
     cells = (
-        cls.name.split(",")[0] + about,
+        cls.name.split(",")[0] + about.replace(" about", ","),
         str(len(cls.independent)),
         percent_text(entered.percent),
         percent_text(axes.distance_percent),
@@ -200,7 +222,28 @@ def _class_row(
         "which direction those are turned; log: the log-Euclidean distance about them."
     )
     can_exact = entered.percent > _EXACT or cls.key != specimen.crystal_class
-    return ClassRow(cls.key, cells, full, tooltip, is_better, can_exact)
+    change, doubt = _change_words(entered.percent, axes.distance_percent)
+    return ClassRow(cls.key, cells, full, tooltip, is_better, can_exact, change, doubt)
+
+
+def _change_words(entered: float, turned: float) -> tuple[str, str]:
+    """Return by how much making a class exact changes the table, and a warning where much.
+
+    Parameters
+    ----------
+    entered, turned : float
+        The distances to the class, about the axes as entered and about the best, percent.
+    """
+    if entered <= _EXACT:
+        return "The numbers stay as they are.", ""
+    change = f"Changes the table by {significant(entered, 2)} %."
+    if entered < _MUCH:
+        return change, ""
+    doubt = f"Exact as entered changes the table by {significant(entered, 2)} %"
+    if turned < _FAR_BETTER * entered:
+        rest = "not at all" if turned <= _EXACT else f"by {percent_text(turned)}"
+        doubt += f"; once turned to its axes, {rest}"
+    return change, f"{doubt}."
 
 
 def percent_text(percent: float) -> str:
@@ -306,9 +349,12 @@ def chance_text(chance: StabilityChance) -> str:
     if chance.probability <= 0.0:
         return f"Stable in none of {chance.count:,} draws from the uncertainties."
     error = 100 * chance.standard_error
+    normal = ""
+    if abs(chance.normal - chance.probability) < _SAME_CHANCE:
+        normal = f"; {significant(100 * chance.normal, 3)} % by the normal law"
     return (
         f"Stable with a probability of {number_text(100 * chance.probability, error)} % "
-        f"({chance.count:,} draws; {significant(100 * chance.normal, 3)} % by the normal law)."
+        f"({chance.count:,} draws{normal})."
     )
 
 

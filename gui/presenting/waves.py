@@ -11,7 +11,6 @@ import numpy as np
 from core import live
 from core.arrays import BoolArray, FloatArray
 from core.crystal.cell import CrystalFrame
-from core.crystal.directions import nearest_indices
 from core.directional import waves
 from core.directional.acoustic_axes import AcousticAxis
 from core.directional.medium import Medium
@@ -22,12 +21,11 @@ from core.numbers import full_precision, significant
 from core.state import BenchState, Specimen, Vector3
 from core.task import Ticker
 from gui.presenting.axes import Axes
-from gui.presenting.reading import place_words
+from gui.presenting.near import axis_words, place_words
 from gui.presenting.stage import NO_DENSITY, SHEET_NAMES, sides, unit_vector
 from gui.viewdata import LinkedRow, LinkedView, WaveRow, WavesView, WaveTable
 
 _DUST = 1e-9
-_ANGLE_DUST = 5e-3  # degrees off a lattice direction that are not worth a word
 _AIM = 1e-4  # degrees to which the search for a wave normal is to be trusted on a fold
 FINDING = "being found …"
 Text = Callable[[float | None], str]
@@ -150,17 +148,12 @@ def _three(numbers: list[float], text: Text) -> tuple[str, str, str]:
 
 def _near_words(found: WavesAlong, turn: FloatArray, frame: CrystalFrame) -> str:
     """Return the low-index directions that the rays are near."""
-    named = [
-        (name, nearest_indices(turn.T @ ray, frame))
+    words = [
+        f"{name} {axis_words(turn.T @ ray, frame)}"
         for name, ray in zip(SHEET_NAMES, found.ray, strict=True)
         if np.isfinite(ray).all()
     ]
-    words = [
-        f"{name} {near.text}"
-        + (f" {significant(near.angle_deg, 2)}° off" if near.angle_deg > _ANGLE_DUST else "")
-        for name, near in named
-    ]
-    return f"Rays near: {', '.join(words)}.".replace("-", "−") if words else ""
+    return f"Rays near: {', '.join(words)}." if words else ""
 
 
 def _notes(found: WavesAlong) -> tuple[str, ...]:
@@ -314,7 +307,7 @@ def axes_view(
 def _axis_row(specimen: Specimen, turn: FloatArray, axis: AcousticAxis) -> LinkedRow:
     kind, tooltip = _KINDS[axis.kind]
     vector = axis.direction
-    place = "" if axis.kind == "all" else place_words(vector, specimen)
+    place = "" if axis.kind == "all" else place_words(vector, specimen.frame, turn)
     tooltip += f"\n{', '.join(full_precision(x) for x in vector.tolist())} in crystal axes"
     cone = axis.half_angle_deg if axis.kind == "conical" else None
     return LinkedRow(

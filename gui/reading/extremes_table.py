@@ -7,7 +7,7 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from gui.reading.link_table import GO, GoLink, Link, LinkTable
 from gui.viewdata import ExtremeRow, ExtremesView
-from gui.widgets.forms import label, set_or_hide
+from gui.widgets.forms import ElidedLabel, label, set_or_hide
 from gui.widgets.text_table import Column, Line
 
 COLUMNS = (
@@ -26,10 +26,13 @@ class ExtremesTable(QWidget):
     def __init__(self) -> None:
         super().__init__()
         self._notice = label(role="secondary", wrap=True)
+        self._whose = ElidedLabel(role="secondary")
+        self._whose.hide()
         self.table = LinkTable("Extremes over all directions")
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(3)
+        column.addWidget(self._whose)
         column.addWidget(self.table)
         column.addWidget(self._notice)
         self._notice.hide()
@@ -48,6 +51,8 @@ class ExtremesTable(QWidget):
         self.table.show_links(COLUMNS, lines, [_link(row) for row in view.rows], view.pending)
         self.table.setAccessibleName(view.title)
         set_or_hide(self._notice, view.notice)
+        self._whose.setText(view.whose)
+        self._whose.setVisible(bool(view.whose))
 
     def link(self, row: int) -> GoLink | None:
         """Return the link at the end of a line, if it leads anywhere."""

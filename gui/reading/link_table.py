@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QPushButton
+from PySide6.QtWidgets import QPushButton, QWidget
 
 from gui.viewdata import Vector3
 from gui.widgets.text_table import Column, Line, TextTable
@@ -53,7 +54,7 @@ class LinkTable(TextTable):
     go = Signal(object)
 
     def __init__(self, name: str) -> None:
-        super().__init__(name)
+        super().__init__(name, is_small=True)
         self._links: tuple[Link | None, ...] = ()
         self.opened.connect(self._follow)
 
@@ -70,8 +71,18 @@ class LinkTable(TextTable):
         """
         self._links = tuple(links)
         self.show_lines(columns, lines, dimmed=pending)
+        before = self._buttons()
         for row, link in enumerate(links):
             self._place(row, link, not pending)
+        after = self._buttons()
+        if after != before:  # new ones would come last in the window
+            for first, second in pairwise((self, *after)):
+                QWidget.setTabOrder(first, second)
+
+    def _buttons(self) -> list[QWidget]:
+        """Return the links that lead anywhere, from the top."""
+        found = (self.link(row) for row in range(len(self._links)))
+        return [button for button in found if button is not None]
 
     def link(self, row: int) -> GoLink | None:
         """Return the link at the end of a line, if it leads anywhere."""

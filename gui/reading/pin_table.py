@@ -71,7 +71,7 @@ class PinTable(QWidget):
             "to a plane, or three components along the crystal axes.",
         )
         self.direction.setPlaceholderText("go to  [1 0 2]  (1 0 2)  0.3 0.4 0.87")
-        self.table = TextTable("Quantities at the pin")
+        self.table = TextTable("Quantities at the pin", is_small=True)
         self._notice = label(role="secondary", wrap=True)
         self._notice.hide()
         self._lay_out()
@@ -111,6 +111,7 @@ class PinTable(QWidget):
             lines.append(_line(row, view.has_b))
             keys.append(row.key)
         self._keys = tuple(keys)
+        self.table.about = view.about
         self.table.show_lines(BOTH if view.has_b else ONE[view.side], tuple(lines))
         set_or_hide(self._notice, view.notice)
 

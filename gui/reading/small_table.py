@@ -20,7 +20,7 @@ class SmallTable(QWidget):
     def __init__(self, name: str = "Table") -> None:
         super().__init__()
         self._notice = label(role="secondary", wrap=True)
-        self.table = TextTable(name)
+        self.table = TextTable(name, is_small=True)
         column = QVBoxLayout(self)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(3)

@@ -102,7 +102,7 @@ class WavesPanel(QWidget):
 
     def __init__(self) -> None:
         super().__init__()
-        self.table = TextTable("Waves along the pin")
+        self.table = TextTable("Waves along the pin", is_small=True)
         self._notes = label(role="secondary", wrap=True)
         self._notes.hide()
         self.arrivals = LinkedList(ARRIVALS, ("label", "number", "number", "number", "number"))

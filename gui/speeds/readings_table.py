@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import Any
 
 from PySide6.QtCore import (
@@ -37,6 +38,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from core.numbers import MINUS
 from gui.ledger.constants_cells import CellDelegate
 from gui.speeds.marks import DIMMED
 from gui.speeds.viewdata import SpeedsTableView
@@ -52,7 +54,29 @@ from gui.widgets.forms import (
 Index = QModelIndex | QPersistentModelIndex
 ROW_HEIGHT = 23
 PADDING = 4  # left and right of a text, pixels
+FIGURE_SPACE, POINT_SPACE = "\N{FIGURE SPACE}", "\N{PUNCTUATION SPACE}"
+_HYPHEN = re.compile(r"-(?=[\d.])")  # of a number
+_PLAIN = re.compile(rf"[-+{MINUS}]?\d*\.?\d*")
 _NOWHERE = QModelIndex()
+
+
+def _most_decimals(view: SpeedsTableView, column: int) -> int:
+    """Return the digits after the point of the longest number that a column shows."""
+    texts = [row[column] for row in view.rows]
+    texts += [ghost for (_, place), ghost in view.ghosts.items() if place == column]
+    return max((len(text.partition(".")[2]) for text in texts if _is_plain(text)), default=0)
+
+
+def _aligned(text: str, decimals: int) -> str:
+    """Return a number with blanks after it, as wide as the digits that it lacks."""
+    if not decimals or not _is_plain(text):
+        return text
+    point, lack = "." in text, decimals - len(text.partition(".")[2])
+    return text + ("" if point else POINT_SPACE) + lack * FIGURE_SPACE
+
+
+def _is_plain(text: str) -> bool:
+    return bool(_PLAIN.fullmatch(text))
 
 
 class ReadingsModel(QAbstractTableModel):
@@ -67,6 +91,7 @@ class ReadingsModel(QAbstractTableModel):
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self.view: SpeedsTableView | None = None
+        self._decimals: tuple[int, ...] = ()
 
     def show_view(self, view: SpeedsTableView) -> None:
         """Take other rows; the current cell stays where the shape is the same."""
@@ -77,6 +102,10 @@ class ReadingsModel(QAbstractTableModel):
         if is_reshaped:
             self.beginResetModel()
         self.view = view
+        self._decimals = tuple(
+            _most_decimals(view, place) if column.is_number else 0
+            for place, column in enumerate(view.columns)
+        )
         if is_reshaped:
             self.endResetModel()
         else:
@@ -95,6 +124,14 @@ class ReadingsModel(QAbstractTableModel):
         """Return the text of a cell."""
         view = self.view
         return view.rows[row][column] if view and row < len(view.rows) else ""
+
+    def shown(self, row: int, column: int) -> str:
+        """Return a cell as it is drawn, typed or taken for: true minus, points in line.
+
+        Digits that nobody typed are left blank rather than filled with zeros.
+        """
+        text = self.text(row, column) or self.ghost(row, column)
+        return _aligned(_HYPHEN.sub(MINUS, text), self._decimals[column])
 
     def ghost(self, row: int, column: int) -> str:
         """Return what an empty cell is taken for."""
@@ -124,7 +161,9 @@ class ReadingsModel(QAbstractTableModel):
         row, column = index.row(), index.column()
         if self.view is None:
             return None
-        if role in (Qt.ItemDataRole.DisplayRole, Qt.ItemDataRole.EditRole):
+        if role == Qt.ItemDataRole.DisplayRole:
+            return self.shown(row, column)
+        if role == Qt.ItemDataRole.EditRole:
             return self.text(row, column)
         if role in (Qt.ItemDataRole.ToolTipRole, Qt.ItemDataRole.AccessibleDescriptionRole):
             return self.fault(row, column) or self._hint(row, column)
@@ -191,7 +230,7 @@ class ReadingDelegate(CellDelegate):
         painter.setFont(_cell_font(option.font, not text or model.mark(place[0]) == "planned"))
         painter.setPen(_cell_pen(model, *place, theme))
         column = model.view.columns[place[1]]
-        _draw_text(painter, rect, text or model.ghost(*place), column.is_number)
+        _draw_text(painter, rect, model.shown(*place), column.is_number)
         if option.state & QStyle.StateFlag.State_HasFocus:
             painter.setPen(QPen(theme.colour("alert" if is_wrong else "a"), 2))
             painter.drawRect(rect.adjusted(1, 1, -1, -1))

@@ -3,7 +3,14 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QGridLayout, QLabel, QPushButton, QVBoxLayout, QWidget
+from PySide6.QtWidgets import (
+    QGridLayout,
+    QHBoxLayout,
+    QLabel,
+    QPushButton,
+    QVBoxLayout,
+    QWidget,
+)
 
 from gui.speeds.result_grid import ResultGrid
 from gui.speeds.viewdata import Fact, ResultView
@@ -86,6 +93,45 @@ class SentenceList(QWidget):
         return [made.text() for made in self._labels if made.text()]
 
 
+class UnseenQuestion(QWidget):
+    """Asks in place about constants that nobody measured; `agreed()` is the answer yes."""
+
+    agreed = Signal()
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._words = label(role="doubt", wrap=True)
+        self.yes = QPushButton("Use with large uncertainties")
+        self.no = QPushButton("Cancel")
+        buttons = QHBoxLayout()
+        for button in (self.yes, self.no):
+            buttons.addWidget(button)
+            button.clicked.connect(self.hide)
+        self.yes.clicked.connect(self.agreed)
+        column = QVBoxLayout(self)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(6)
+        column.addWidget(self._words)
+        column.addLayout(buttons)
+        self.hide()
+
+    @property
+    def has_words(self) -> bool:
+        """Whether there is something to ask."""
+        return bool(self._words.text())
+
+    def show_words(self, words: str) -> None:
+        """Take the question, which is asked later; another one takes back what was asked."""
+        if words != self._words.text():
+            self._words.setText(words)
+            self.hide()
+
+    def ask(self) -> None:
+        """Ask."""
+        self.show()
+        self.yes.setFocus()
+
+
 class ResultPanel(QWidget):
     """The upper part of the right column: `use_wanted()` hands the constants to the ledger."""
 
@@ -102,7 +148,9 @@ class ResultPanel(QWidget):
             "Give the ledger these constants with their covariance, the density and the"
             " symmetry they rest on, and go back to the bench. Undo takes it back."
         )
-        self.use.clicked.connect(self.use_wanted)
+        self.question = UnseenQuestion()
+        self.question.agreed.connect(self.use_wanted)
+        self.use.clicked.connect(self._use)
         self._notice = label(role="secondary", wrap=True)
         self._unseen_part = Section("Not seen", self.unseen, "kept as at the start of the fit")
         self._notes_part = Section("Remarks", self.notes)
@@ -120,7 +168,7 @@ class ResultPanel(QWidget):
         column = QVBoxLayout(body)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(6)
-        for part in (self._notice, self.grid, self.facts, self.use):
+        for part in (self._notice, self.grid, self.facts, self.use, self.question):
             column.addWidget(part)
         return body
 
@@ -138,6 +186,14 @@ class ResultPanel(QWidget):
         self._unseen_part.setVisible(bool(view.unseen))
         self._notes_part.setVisible(bool(view.notes))
         self.use.setEnabled(view.can_use and not view.pending)
+        self.question.show_words(view.question if self.use.isEnabled() else "")
+
+    def _use(self) -> None:
+        """Hand the constants over, or first ask about those that nobody measured."""
+        if self.question.has_words:
+            self.question.ask()
+        else:
+            self.use_wanted.emit()
 
 
 def _gathered(combinations: tuple[str, ...]) -> tuple[str, ...]:

@@ -88,6 +88,7 @@ class ResultView:
     can_use: bool
     pending: bool = False
     notice: str = ""  # why there is no result
+    question: str = ""  # to be agreed to before the constants are used
 
 
 # ---------------------------------------------------------------- plots

@@ -59,7 +59,7 @@ def scene_rect(
 ) -> QRectF:
     """Return the part of a pane the scene fills: between the title and the colour bar."""
     title = QFontMetricsF(theme.font("title", scale, bold=True)).height()
-    above = math.ceil(title + 0.4 * _MARGIN * scale)
+    above = math.ceil(title + 0.8 * _MARGIN * scale)
     below = math.ceil(bar_height(theme, scale) + 6.0 * scale) if has_bar else 0
     height = max(rect.height() - above - below, 1.0)
     return QRectF(rect.left(), rect.top() + above, rect.width(), height)

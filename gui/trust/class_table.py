@@ -68,6 +68,7 @@ class ClassPanel(QWidget):
         self._suggested = ""
         self.table = ClassesTable()
         self.support = label(role="secondary", wrap=True)
+        self.doubt = label(role="doubt", wrap=True)
         self.buttons: dict[str, QPushButton] = {}
         row = QHBoxLayout()
         row.setSpacing(6)
@@ -83,9 +84,11 @@ class ClassPanel(QWidget):
         column.setSpacing(5)
         column.addWidget(self.table)
         column.addLayout(row)
+        column.addWidget(self.doubt)
         column.addWidget(self.support)
         column.addStretch(1)
         self.support.hide()
+        self.doubt.hide()
         self.table.chosen.connect(self._offer)
 
     @property
@@ -119,7 +122,11 @@ class ClassPanel(QWidget):
             button = self.buttons[action]
             allowed = row is not None and (row.can_exact if action == "exact" else row.can_turn)
             button.setEnabled(is_ready and allowed)
-            button.setToolTip(tooltip.format(row.cells[0] if row is not None else "chosen"))
+            words = tooltip.format(row.cells[0] if row is not None else "chosen")
+            change = row.change if row is not None and action == "exact" else ""
+            button.setToolTip(f"{words} {change}".rstrip())
+        doubt = row.doubt if row is not None and is_ready and row.can_exact else ""
+        set_or_hide(self.doubt, f"▲ {doubt}" if doubt else "")
 
     def _ask(self) -> None:
         row, action = self.chosen, self.sender().property("action")

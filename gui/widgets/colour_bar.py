@@ -17,6 +17,8 @@ from gui.theme import Theme, colour_table
 from gui.viewdata import ScaleView
 
 _STOPS = 33  # colours along the strip; between them the gradient is straight
+_LEAST_SHRINK = 0.75  # of the letters of a long title
+_EVERYWHERE = "the same in every direction"
 _LONGEST = 320.0  # a longer strip is no easier to read
 
 
@@ -24,13 +26,14 @@ def colour_range(scale: ScaleView) -> tuple[float, float]:
     """Return the values at the two ends of the colour table.
 
     A diverging table is centred on zero, so its ends are ± the greater magnitude; any other
-    table runs from `low` to `high`. The ends of an empty range are set one apart.
+    table runs from `low` to `high`. The ends of an empty range are set one apart about its
+    value, which then has the colour in the middle.
     """
     low, high = scale.low, scale.high
     if scale.diverging:
         greatest = max(abs(low), abs(high))
         low, high = -greatest, greatest
-    return (low, high) if high > low else (low, low + 1.0)
+    return (low, high) if high > low else (low - 0.5, low + 0.5)
 
 
 def is_logarithmic(scale: ScaleView) -> bool:
@@ -82,11 +85,12 @@ def draw_colour_bar(
     metrics = QFontMetricsF(font)
     strip = _strip(rect, view, metrics, scale)
     painter.setPen(theme.colour("secondary"))
-    title = metrics.elidedText(view.title, Qt.TextElideMode.ElideRight, rect.width())
+    title = _fitted_title(painter, view.title, rect.width(), theme, scale)
     top = QRectF(
         rect.left(), strip.top() - metrics.height() - 2 * scale, rect.width(), metrics.height()
     )
     painter.drawText(top, Qt.AlignmentFlag.AlignCenter, title)
+    painter.setFont(font)
     painter.setPen(QPen(theme.colour("hairline"), scale))
     painter.setBrush(_gradient(strip, view))
     painter.drawRect(strip)
@@ -94,10 +98,22 @@ def draw_colour_bar(
     painter.restore()
 
 
+def _fitted_title(
+    painter: QPainter, text: str, width: float, theme: Theme, scale: float
+) -> str:
+    """Set the painter to letters in which a title fits; return it, shortened if none do."""
+    wanted = QFontMetricsF(painter.font()).horizontalAdvance(text)
+    if wanted > width:
+        painter.setFont(theme.font("small", scale * max(_LEAST_SHRINK, width / wanted)))
+    metrics = QFontMetricsF(painter.font())
+    return metrics.elidedText(text, Qt.TextElideMode.ElideRight, width)
+
+
 def _strip(rect: QRectF, view: ScaleView, metrics: QFontMetricsF, scale: float) -> QRectF:
     """Return where the coloured strip goes: centred, between its two lines of text."""
     texts = (metrics.horizontalAdvance(text) / 2 for text in (view.low_text, view.high_text))
     beside = max(metrics.averageCharWidth() * 4, *texts)  # the numbers reach past its ends
+    beside += metrics.averageCharWidth()
     width = min(rect.width() - 2.0 * beside, _LONGEST * scale)
     width = max(width, 24.0 * scale)
     height = 7.0 * scale
@@ -124,6 +140,9 @@ def _draw_numbers(
 ) -> None:
     """Write the two ends under the strip, and the ticks that do not touch a neighbour."""
     metrics = QFontMetricsF(painter.font())
+    if view.low == view.high:
+        _write_one_value(painter, strip, view, theme, scale)
+        return
     taken: list[tuple[float, float]] = []
     entries = [(view.low, view.low_text), (view.high, view.high_text), *view.ticks]
     places = _places(view, [value for value, _ in entries])
@@ -144,9 +163,19 @@ def _draw_numbers(
         painter.drawText(QPointF(x - half, baseline), text)
 
 
+def _write_one_value(
+    painter: QPainter, strip: QRectF, view: ScaleView, theme: Theme, scale: float
+) -> None:
+    """Write the one value of a constant quantity under the middle of the strip."""
+    metrics = QFontMetricsF(painter.font())
+    text = f"{view.low_text}, {_EVERYWHERE}"
+    baseline = strip.bottom() + 4.0 * scale + metrics.ascent()
+    painter.setPen(QPen(theme.colour("ink"), scale))
+    left = strip.center().x() - metrics.horizontalAdvance(text) / 2
+    painter.drawText(QPointF(left, baseline), text)
+
+
 def _places(view: ScaleView, values: list[float]) -> list[float]:
     """Return where values stand along the strip, 0 at the least and 1 at the greatest."""
     low, high, *rest = table_position(view, np.array([view.low, view.high, *values]))
-    if not high > low:  # one value only: its two texts stand at the two ends
-        return [0.0, 1.0] + [-1.0] * (len(values) - 2)
     return [float((place - low) / (high - low)) for place in rest]

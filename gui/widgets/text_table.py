@@ -251,9 +251,11 @@ class TextTable(QTableView):
 
     opened = Signal(int)
 
-    def __init__(self, name: str) -> None:
+    def __init__(self, name: str, is_small: bool = False) -> None:
         super().__init__()
+        self._is_small = is_small  # whatever the room: tables that stand together look alike
         self.lines = LinesModel(self)
+        self.about = ""  # the first line of a copy of the whole table
         self.setModel(self.lines)
         self.setItemDelegate(LineDelegate(self))
         self.setHorizontalHeader(ColumnsHeader(self, self.lines))
@@ -291,7 +293,7 @@ class TextTable(QTableView):
         room = self.width()
         font = Theme.font("body")
         wanted = self._wanted_widths(font)
-        if sum(wanted) > room:
+        if self._is_small or sum(wanted) > room:
             font = Theme.font("small")
             wanted = self._wanted_widths(font)
         widths = self._share(wanted, room)
@@ -400,7 +402,8 @@ class TextTable(QTableView):
         columns = [
             i for i, column in enumerate(self.lines.columns) if column.kind != "link"
         ]
-        rows = [[self.lines.columns[i].title for i in columns]]
+        rows = [[self.about]] if self.about else []
+        rows.append([self.lines.columns[i].title for i in columns])
         for row, line in enumerate(self.lines.lines):
             if line.is_heading:
                 rows.append([line.cells[0]])

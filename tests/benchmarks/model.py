@@ -129,7 +129,7 @@ def search_lines(mesh: SphereMesh) -> Iterator[Line]:
     )
 
 
-def no_axes(state, side):
+def no_axes(specimen):
     """As while B turns: axes of degeneracy are found at rest, on the worker."""
     return ()
 

@@ -92,7 +92,7 @@ def frame_lines(app, built, window) -> Iterator[Line]:
         yield Line("   ... with every panel and plot of the window", whole)
 
 
-def no_axes(state, side):
+def no_axes(specimen):
     """As while the constants move: axes of degeneracy are found at rest, on the worker."""
     return ()
 

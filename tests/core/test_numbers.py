@@ -174,3 +174,8 @@ def test_what_is_shown_has_the_digits_asked_for(value):
 def test_brackets_hold_the_uncertainty_of_the_last_digits(value, deviation, text):
     # The notation of the Guide to the Expression of Uncertainty, 7.2.2.
     assert bracketed(value, deviation) == text
+
+
+@pytest.mark.parametrize("value", [1.234e-7, -9.99e12, 6.02e23])
+def test_what_is_shown_with_a_power_of_ten_reads_back(value):
+    assert parse_number(significant(value)) == pytest.approx(value, rel=1e-3)

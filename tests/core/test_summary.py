@@ -73,7 +73,7 @@ def test_a_summary_has_the_keys_that_are_promised(specimen, density):
     found = strict(summarise(dataclasses.replace(specimen, density=density)))
     assert set(found) == {"name", "stable", "verdict", "eigenstiffness_gpa", "averages",
                           "anisotropy", "symmetry", "density_kg_m3", "debye_speed_km_s",
-                          "extremes"}  # fmt: skip
+                          "extremes", "notes"}  # fmt: skip
     assert type(found["stable"]) is bool
     assert len(found["eigenstiffness_gpa"]) == 6
     assert found["eigenstiffness_gpa"] == sorted(found["eigenstiffness_gpa"])
@@ -343,7 +343,8 @@ def test_engineering_constants_have_the_keys_that_are_promised():
 def test_two_orientations_of_one_crystal():
     turned = OrientationChoice("axis [0 0 1] 15")
     found = strict(compare(COPPER, AS_IT_IS, COPPER, turned))
-    assert set(found) == {"a", "b", "misorientation_deg", "rows"}
+    assert set(found) == {"a", "b", "misorientation_deg", "misorientation_by_symmetry_deg",
+                          "rows"}  # fmt: skip
     assert found["misorientation_deg"] == pytest.approx(15)
     assert found["b"]["orientation"] == "axis [0 0 1] 15"
     rows = {row["key"]: row for row in found["rows"]}
@@ -385,3 +386,23 @@ def test_what_cannot_be_read_is_refused():
         along(ALBITE, "up")
     with pytest.raises(InputError, match="is not an orientation"):
         rotate(ALBITE, OrientationChoice("sideways"), OUR_ROWS, False)
+
+
+def test_a_misorientation_by_the_crystals_own_symmetry():
+    turned = OrientationChoice("bunge 100 0 0")
+    found = compare(COPPER, AS_IT_IS, COPPER, turned)
+    assert found["misorientation_deg"] == pytest.approx(100)
+    assert found["misorientation_by_symmetry_deg"] == pytest.approx(10)  # 90° bring a cube back
+    assert compare(COPPER, AS_IT_IS, GLASS, turned)["misorientation_by_symmetry_deg"] is None
+    assert compare(GLASS, AS_IT_IS, GLASS, turned)["misorientation_by_symmetry_deg"] == 0.0
+    free = dataclasses.replace(COPPER, crystal_class="triclinic")
+    found = compare(free, AS_IT_IS, free, turned)
+    assert found["misorientation_by_symmetry_deg"] == pytest.approx(100)
+
+
+def test_impossible_magnitudes_are_noted():
+    light = dataclasses.replace(COPPER, density=8.96)
+    notes = summarise(light)["notes"]
+    assert any("in g/cm³ it would be 8960 kg/m³" in note for note in notes)
+    assert summarise(dataclasses.replace(COPPER, density=8960.0))["notes"] == []
+    assert summarise(dataclasses.replace(COPPER, density=None))["notes"] == []

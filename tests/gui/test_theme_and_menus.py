@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 from PySide6.QtCore import QSettings, Qt
-from PySide6.QtGui import QAction
+from PySide6.QtGui import QAction, QColor
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import (
     QAbstractButton,
@@ -23,7 +23,7 @@ from PySide6.QtWidgets import (
 
 from gui.plots.frame import Canvas
 from gui.stage.pane import StagePane
-from gui.theme import LIGHT, NIGHT
+from gui.theme import LIGHT, NIGHT, style_sheet
 from gui.widgets.panel import Disclosure
 from gui.window import _LAYOUT_VERSION
 from tests.gui.driving import (
@@ -288,7 +288,37 @@ def test_the_window_can_be_small_and_large(app, size):
     for name, image in pictures(app).items():
         assert image.shape[0] >= 30, name
         assert image.shape[1] >= 120, name
+    deck, section = app.window.views.deck, app.window.views.section
+    assert abs(deck.width() - section.width()) <= 2  # equal halves
     for panel in (app.window.ledger_panel, app.window.reading_panel):
         right = panel.mapTo(app.window, panel.rect().bottomRight())
         assert right.x() <= size[0]
         assert right.y() <= size[1]
+
+
+@pytest.mark.parametrize("theme", [LIGHT, NIGHT])
+def test_the_words_on_the_progress_bar_are_legible(theme):
+    # WCAG 2.2, success criterion 1.4.3: text has a contrast of 4.5 to 1 with its ground.
+    chunk = style_sheet(theme, ".").split("QProgressBar::chunk {")[1].split("}")[0]
+    ground = QColor(chunk.split(":")[1].strip(" ;"))
+    assert contrast(QColor(theme.ink), ground) >= 4.5
+    assert contrast(ground, QColor(theme.field)) >= 1.3  # and the bar is seen
+
+
+def contrast(one, other):
+    """Return the contrast ratio of two colours, WCAG 2.2, from their relative luminance."""
+    lighter, darker = sorted((luminance(one), luminance(other)), reverse=True)
+    return (lighter + 0.05) / (darker + 0.05)
+
+
+def luminance(colour):
+    parts = np.array([colour.redF(), colour.greenF(), colour.blueF()])
+    linear = np.where(parts <= 0.04045, parts / 12.92, ((parts + 0.055) / 1.055) ** 2.4)
+    return float(linear @ (0.2126, 0.7152, 0.0722))
+
+
+def test_a_message_keeps_off_the_edge_of_the_window(app):
+    app.window.show_message("A sentence.")
+    settle(app)
+    said = app.window._message
+    assert said.mapTo(app.window, said.rect().topLeft()).x() >= 10

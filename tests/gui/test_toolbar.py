@@ -6,7 +6,7 @@ from pathlib import Path
 
 import pytest
 from PySide6.QtCore import QPoint, QRect, QSize, Qt
-from PySide6.QtWidgets import QToolButton
+from PySide6.QtWidgets import QLabel, QToolButton
 
 from gui.theme import LIGHT, style_sheet
 from gui.toolbar import MARGIN, OPTIONS, Group, StageToolbar, flow
@@ -179,3 +179,13 @@ def test_flow_fills_rows():
     assert [place.top() == places[0].top() for place in places] == [True, True, False]
     assert places[2] == QRect(QPoint(MARGIN, places[2].top()), QSize(100, 20))
     assert height >= places[2].bottom()
+
+
+def test_words_and_cut_open_stay_where_two_rows_have_room(bar, qtbot):
+    bar.show_view(replace(WAVES, planes=()))
+    bar.resize(456, bar.heightForWidth(456))
+    qtbot.wait(1)
+    words = {label.text() for label in bar.findChildren(QLabel) if label.isVisible()}
+    assert "Sheets" in words
+    assert button(bar, "Cut open").isVisible()
+    assert not button(bar, "Turn together").isVisible()

@@ -203,28 +203,42 @@ def test_a_pasted_table_replaces_all_and_what_is_copied_pastes_back(app):
     assert np.array_equal(table_of(app), wanted)
 
 
-BAD_BLOCKS = {
-    "not symmetric": ("100\t20\n25\t90", "25"),
+ODD_TABLES = {
     "five rows of six and one of five": (
-        rows_text(np.ones((5, 6))) + "\n" + rows_text(np.ones((1, 5))), ""),
-    "seven rows": (rows_text(np.ones((7, 6))), ""),
-    "letters": ("86.1\tabc\n31.4\t120", ""),
-    "NaN": (rows_text(np.full((6, 6), np.nan)), ""),
-}  # fmt: skip
+        rows_text(np.ones((5, 6))) + "\n" + rows_text(np.ones((1, 5)))),
+    "seven rows": rows_text(np.ones((7, 6))),
+    "letters": "86.1\tabc\n31.4\t120",
+}
 
 
-def test_bad_blocks_are_refused_in_place(app):
+@pytest.mark.parametrize(
+    ("text", "word"),
+    [("100\t20\n25\t90", "25"), (rows_text(np.full((6, 6), np.nan)), "number")],
+    ids=["not symmetric", "NaN"],
+)
+def test_what_cannot_go_in_is_refused_under_the_grid(app, text, word):
     start = app.bench.state
-    for kind, (text, word) in BAD_BLOCKS.items():
-        type_cell(app, 1, 1, "121.8")  # takes the mark of the last one away
-        assert sentences(grid(app)) == []
-        paste(app, 1, 1, text)
-        (sentence,) = sentences(grid(app))
-        assert word in sentence, kind
-        assert len(sentence) < 250, kind
-        assert app.bench.state == start, kind
+    paste(app, 1, 1, text)
+    (sentence,) = sentences(grid(app))
+    assert word in sentence
+    assert grid(app).cells.faults() == ()  # no cell is a bad one
+    assert app.bench.state == start
     assert app.bench.history.count() == 0
     assert shown_cell(app, 0, 0) == "86.10"
+    grid(app).table.setCurrentIndex(grid(app).cells.index(2, 2))
+    assert sentences(grid(app)) == []
+
+
+@pytest.mark.parametrize("kind", ODD_TABLES)
+def test_what_is_no_plain_block_goes_to_the_dialog_of_tables(app, kind):
+    start = app.bench.state
+    paste(app, 1, 1, ODD_TABLES[kind])
+    dialog = app.intake.dialog
+    assert dialog.isVisible()
+    assert dialog.text.toPlainText() == ODD_TABLES[kind].replace("\r", "")
+    dialog.reject()
+    assert sentences(grid(app)) == []
+    assert app.bench.state == start
 
 
 def test_a_whole_table_that_is_not_symmetric_is_asked_about_and_changes_nothing(app):
@@ -248,7 +262,7 @@ def test_a_guess_about_a_pasted_table_is_said(app):
     wanted = table_of(app) * 1.5
     paste(app, 0, 0, rows_text(10 * wanted))  # kbar, by the size of the numbers
     assert np.allclose(table_of(app), wanted, rtol=1e-4)
-    assert "unit taken as kbar" in app.window._message.text()
+    assert "Unit taken as kbar and converted" in app.window._message.text()
 
 
 # ------------------------------------------------------------------ what else is known

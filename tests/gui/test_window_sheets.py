@@ -222,7 +222,7 @@ def test_a_row_of_the_reading_puts_its_quantity_on_the_stage(app):
     table = app.window.views.pin.table
     rows = [row[0] for row in lines(table)]
     table.setFocus()
-    table.setCurrentIndex(table.lines.index(rows.index("power flow off"), 0))
+    table.setCurrentIndex(table.lines.index(rows.index("ψ flow"), 0))
     QTest.keyClick(table, Qt.Key.Key_Return)
     assert app.bench.state.quantity == "power_flow"
     settle(app)

@@ -7,8 +7,9 @@ import numpy as np
 import pytest
 from PySide6.QtCore import QRectF, Qt
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QApplication, QPushButton
+from PySide6.QtWidgets import QApplication, QLabel, QPushButton
 
+from core import live
 from core.editing.readings import understand
 from core.files.bench import read_bench
 from core.files.speeds import read_speeds
@@ -55,9 +56,13 @@ def test_the_page_is_changed_by_its_buttons_keys_and_menu(app, page):
     assert page.isVisible()
     assert app.bench.state.display.page == "speeds"
     assert not app.window.ledger_panel.isVisible()
+    # What is judged there is not what is measured here.
+    name, band = app.bench.state.specimen.name, app.window.views.verdict
+    assert band._view.headline == f"{name}, on the bench: Stable"
     QTest.keyClick(app.window, Qt.Key.Key_F5)
     assert not page.isVisible()
     assert app.window.ledger_panel.isVisible()
+    assert band._view.headline == "Stable"
     menu(app, "Measured speeds")
     assert page.isVisible()
     assert app.window.switch.button("speeds").isChecked()
@@ -123,11 +128,36 @@ def test_the_blind_demo_names_what_it_does_not_see_and_what_to_cut_next(app, pag
     n = np.array(planned[0].direction)
     assert 0.2 < abs(n[1]) < 0.98
     assert "3 planned" in page.readings.readings.view.summary
+    before = app.bench.state.specimen
+    turn = live.rotation(app.bench.state.orientation_b, before)
     page.result.use.click()
+    assert app.bench.state.specimen is before
+    question = page.result.question
+    assert question.isVisible()
+    assert "3 constants were not seen: C12, C23, C25." in spoken(question)
+    question.no.click()
+    assert not question.isVisible()
+    assert app.bench.state.specimen is before
+    page.result.use.click()
+    question.yes.click()
     settle(app)
     specimen = app.bench.state.specimen
     assert specimen.crystal_class == "monoclinic"
     assert specimen.stiffness_std[0][1] > 20.0 > specimen.stiffness_std[0][0]
+    # The ledger held another crystal, a triclinic one with a cell and a temperature.
+    assert specimen.name == "Constants from speeds_lm26_blind"
+    assert (specimen.cell, specimen.temperature_c) == (None, None)
+    # B was said by lattice directions; the same turn goes on without them.
+    assert "[" not in app.bench.state.orientation_b.text
+    assert live.rotation(app.bench.state.orientation_b, specimen) == pytest.approx(turn)
+    assert "C12, C23, C25" in specimen.notes
+    said = [one.text() for one in app.window.findChildren(QLabel)
+            if one.accessibleName() == "Message"]  # fmt: skip
+    assert "not kept" in said[0]
+
+
+def spoken(widget):
+    return " ".join(label.text() for label in widget.findChildren(QLabel))
 
 
 def test_a_planned_blank_is_seen_on_the_hemisphere(app, page):

@@ -94,6 +94,7 @@ class TableText:
 
 
 _COMMENT = re.compile(r"\s*(?:#|(?<!\\)%|!|//)\s*(.*)")
+_HEAD = re.compile(r"\s*Stiffness, [^;]+; rows (?:\d\d ?){6}\s*")
 _LATEX: tuple[tuple[re.Pattern[str], str], ...] = tuple(
     (re.compile(pattern), replacement)
     for pattern, replacement in (
@@ -122,6 +123,11 @@ _NAME = re.compile(
     r"([CcSs])(?:\^\{?[A-Z]\}?)?\s*_?\s*\{?\s*([1-6])\s*,?\s*([1-6])\s*\}?"
     r"(?:\s*\^\s*\{?[A-Z]\}?)?(?![\d.])"
 )
+_NO_NAME = re.compile(
+    r"(?<![A-Za-z0-9_])(?P<name>[CcSs]_?\{?\d{2,}\}?)\s*[=:≈]\s*[(+-]?\.?\d"
+    r"|^\s*(?P<first>[CcSs]_?\{?\d{2,}\}?)[\s,;|&]+[(+-]?\.?\d"
+)
+_RULE = re.compile(r"[\s|:+-]*-{3,}[\s|:+-]*")  # between the head and the body of a table
 _SUBSCRIPTS = str.maketrans("₁₂₃₄₅₆", "123456")
 _LABEL = re.compile(r"[xyz]{2}|[XYZ]{2}")
 _WITH_SIGMA = re.compile(
@@ -144,12 +150,29 @@ def read_cells(text: str, where: str = "") -> TableText:
     if len(text) > LONGEST_TEXT:
         raise InputError(f"The text has {len(text):,} characters; a table has some hundreds.",
                          where=where)
-    pieces, comments = _pieces(text)
+    pieces, comments = _pieces(headed_block(text))
+    _refuse_false_names(pieces, where)
     if any(_names_value(piece) for _, piece in pieces):
         table = _named_text(pieces, where)
     else:
         table = _named_columns(pieces, where) or _block_text(pieces, where)
     return replace(table, comments=tuple(comments))
+
+
+def headed_block(text: str) -> str:
+    """Return the text with only the stiffnesses of a page that gives several tables.
+
+    Such are the pages of `tricline rotate` and `recover`: "Stiffness, GPa; rows 11 22 …" and
+    six rows below it. The other lines become empty, so that lines keep their numbers.
+    """
+    lines = text.splitlines()
+    heads = [k for k, line in enumerate(lines) if _HEAD.fullmatch(line)]
+    if len(heads) != 1:
+        return text
+    kept = range(heads[0], heads[0] + 7)
+    return "\n".join(
+        line if k in kept or _COMMENT.match(line) else "" for k, line in enumerate(lines)
+    )
 
 
 def place(where: str, line: int) -> str:
@@ -165,13 +188,20 @@ def _pieces(text: str) -> tuple[list[tuple[int, str]], list[tuple[int, str]]]:
     plain = re.sub(r"\+/-|\+-", "±", plain).translate(_SUBSCRIPTS)
     pieces, comments = [], []
     for line, content in enumerate(plain.splitlines(), start=1):
-        data = content
+        data = "" if _RULE.fullmatch(content) else _without_frame(content)
         comment = _COMMENT.search(content)
         if comment:
-            data = content[: comment.start()]
+            data = data[: comment.start()]
             comments.append((line, comment.group(1).strip()))
         pieces += [(line, part) for part in _row_parts(data) if part.strip(" ,;")]
     return pieces, comments
+
+
+def _without_frame(content: str) -> str:
+    """Return a line without the bars at both its ends: "| 1 | 2 |" is "1 | 2"."""
+    bare = content.strip()
+    framed = len(bare) > 2 and bare.startswith("|") and bare.endswith("|")
+    return bare[1:-1].replace("**", "") if framed else content
 
 
 def _row_parts(content: str) -> list[str]:
@@ -222,6 +252,17 @@ def _names_value(piece: str) -> bool:
     return starts and re.match(r"\s*[=:≈]|\s*[\s,;|&]\s*[(+-]?\.?\d", after) is not None
 
 
+def _refuse_false_names(pieces: list[tuple[int, str]], where: str) -> None:
+    """Refuse C99 = 3: read as words, a slip in a name would lose a constant unseen."""
+    for line, piece in pieces:
+        for found in _NO_NAME.finditer(piece):
+            name = found["name"] or found["first"]
+            if _NAME.fullmatch(name) is None:
+                raise InputError(f"“{name}” is the name of no constant.",
+                                 "The two indices of a name run from 1 to 6: C11 to C66.",
+                                 place(where, line))
+
+
 def _named_text(pieces: list[tuple[int, str]], where: str) -> TableText:
     named: list[Named] = []
     headings, stray = [], []
@@ -255,7 +296,7 @@ def _named_items(piece: str, line: int, where: str) -> tuple[list[Named], list[s
         word = re.split(r"[\s;&|]|,(?!\d)", rest, maxsplit=1)[0]
         rest = rest[len(word):]
         if names:
-            number = _number(word, place(where, line))
+            number = read_value(word, place(where, line))
             found += [Named(letter, cell, number, line) for letter, cell in names]
             names = []
         elif _NUMBERLIKE.match(word) and not re.match(r"1/|10\^|1e", word):
@@ -284,7 +325,7 @@ def _named_columns(pieces: list[tuple[int, str]], where: str) -> TableText | Non
                              where=place(where, line))
         named = tuple(
             Named(name.group(1).upper(), (int(name.group(2)) - 1, int(name.group(3)) - 1),
-                  _number(cell, place(where, line)), line)
+                  read_value(cell, place(where, line)), line)
             for name, cell in zip(names, cells, strict=True) if name is not None
         )
         others = [*pieces[:index], *pieces[index + 2:]]
@@ -306,7 +347,7 @@ def _block_text(pieces: list[tuple[int, str]], where: str) -> TableText:
     for line, words in zip(lines, table, strict=True):
         cells = tuple(
             None if word.lower() in _BLANKS
-            else _number(word, f"{place(where, line)}, number {k}")
+            else read_value(word, f"{place(where, line)}, number {k}")
             for k, word in enumerate(words, start=1)
         )
         rows.append(Row(line, cells))
@@ -419,7 +460,7 @@ def _labels(words: list[str]) -> str | None:
 
 
 # ------------------------------------------------------------------------- numbers
-def _number(word: str, where: str) -> Number:
+def read_value(word: str, where: str = "") -> Number:
     """Return a number such as 86.1, 86.1(4), 86.1(1.2), 86.1±0.4 or (8.61±0.04)e1."""
     shape = _WITH_SIGMA.fullmatch(word)
     if shape is None:
@@ -456,7 +497,7 @@ def read_number_rows(text: str, where: str = "") -> list[list[float]]:
                          "has some hundreds.", where=where)
     pieces, _ = _pieces(text)
     return [
-        [_number(word, f"{place(where, line)}, number {k}").value
+        [read_value(word, f"{place(where, line)}, number {k}").value
          for k, word in enumerate(words, start=1)]
         for (line, _), words in zip(pieces, _flexible_cells([piece for _, piece in pieces]),
                                     strict=True)

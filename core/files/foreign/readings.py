@@ -14,6 +14,7 @@ import numpy as np
 from core.arrays import FloatArray
 from core.errors import InputError
 from core.files.foreign.cells import TableText
+from core.files.foreign.facts import NOTATIONS
 from core.files.foreign.guess import Guess, RawTable, choose
 from core.files.foreign.units import (
     KINDS,
@@ -28,6 +29,7 @@ from core.files.foreign.units import (
 from core.numbers import shortened, significant
 from core.tensor.closest import simplest_class
 from core.tensor.notation import (
+    SHEAR_FACTORS,
     compliance_to_kelvin,
     kelvin_to_stiffness,
     parse_rows,
@@ -38,7 +40,6 @@ from core.tensor.notation import (
 from core.tensor.symmetry import CLASS_KEYS, complete, crystal_class
 
 OUR_ORDER = "11 22 33 23 13 12"
-NOTATIONS = ("Voigt", "Kelvin")
 AS_LISTED = "as listed"
 
 SOFTEST, STIFFEST = 3.0, 1200.0  # GPa: largest constant of nearly all crystals; diamond 1079
@@ -275,7 +276,11 @@ def read_notation(
 
 # --------------------------------------------------------------- classes of lists
 def read_class(
-    components: FloatArray, chosen: str | None, where: str
+    components: FloatArray,
+    chosen: str | None,
+    where: str,
+    claimed: str = "",
+    kind: str = "stiffness",
 ) -> tuple[FloatArray, Guess]:
     """Return the whole table of a list that names some constants, and the class that says so.
 
@@ -285,6 +290,11 @@ def read_class(
         Tensor components, our order, NaN where the list names nothing.
     chosen : str or None
         A class key, "monoclinic x" with the axis, or "as listed".
+    where : str
+    claimed : str
+        The class that the text claims, in the same form; empty where it claims none.
+    kind : "stiffness" or "compliance"
+        For the sentence that refuses a list.
 
     Raises
     ------
@@ -298,11 +308,20 @@ def read_class(
     reason = (f"The constants named are those of {'an' if name[0] in 'aeio' else 'a'} {name} "
               "crystal; the others follow from them." if labels else
               "The constants named are those of no class; the others are taken as zero.")
-    guess = choose(Guess("class", first, reason, False, (*labels, AS_LISTED)), chosen)
+    guess = Guess("class", first, reason, False, (*labels, AS_LISTED))
+    if claimed in labels:
+        guess = replace(guess, value=claimed, reason="The text says so.", certain=True)
+    elif claimed and chosen is None and (said := _contradiction(components, kind, claimed)):
+        raise InputError(said, "Correct one of them, or the class.", where)
+    guess = choose(guess, chosen)
     if guess.value != AS_LISTED:
         return dict(fitting)[guess.value], guess
     missing = [f"{k + 1}{k + 1}" for k in range(6) if np.isnan(components[k, k])]
     if missing:
+        contradiction = _contradiction(components, kind)
+        if contradiction:
+            raise InputError(contradiction, "Correct one of them, or leave out what follows "
+                             "from the others.", where)
         raise InputError(
             f"The list does not name {', '.join(missing)}, and no crystal class gives "
             f"{'it' if len(missing) == 1 else 'them'} from the constants it names.",
@@ -312,15 +331,58 @@ def read_class(
 
 def _fitting_classes(components: FloatArray) -> list[tuple[str, FloatArray]]:
     """Return classes whose independent constants are all named, and that give the others."""
-    found = []
     size = float(np.nanmax(np.abs(components)))
+    return [
+        (label, whole) for label, whole in _named_classes(components)
+        if _gap(components, whole).max() <= _NAMES_FIT * size
+    ]
+
+
+def _named_classes(components: FloatArray) -> list[tuple[str, FloatArray]]:
+    """Return classes whose independent constants are all named, with the table of each."""
+    found = []
     for key in reversed(CLASS_KEYS):
         for axis in "yzx" if key == "monoclinic" else "y":
             cls = crystal_class(key, axis)
-            if any(np.isnan(components[cell]) for cell in cls.independent):
-                continue
-            whole = complete(components, cls)
-            gap = np.nan_to_num(np.abs(whole - components), nan=0.0)
-            if gap.max() <= _NAMES_FIT * size:
-                found.append((f"{key} {axis}" if key == "monoclinic" else key, whole))
+            if not any(np.isnan(components[cell]) for cell in cls.independent):
+                label = f"{key} {axis}" if key == "monoclinic" else key
+                found.append((label, complete(components, cls)))
     return found
+
+
+def _gap(components: FloatArray, whole: FloatArray) -> FloatArray:
+    """Return how far named constants are from those of a whole table; 0 where not named."""
+    return np.asarray(np.nan_to_num(np.abs(whole - components), nan=0.0))
+
+
+def _contradiction(components: FloatArray, kind: str, claimed: str = "") -> str:
+    """Return which named constant breaks the class that all others are named for.
+
+    Empty where more than one does, where it ought to be zero, or no class is named at all.
+    Of a class that is claimed only its own constants count.
+    """
+    size = float(np.nanmax(np.abs(components)))
+    is_compliance = kind == "compliance"
+    factors = np.outer(SHEAR_FACTORS, SHEAR_FACTORS) if is_compliance else np.ones((6, 6))
+    letter = "S" if is_compliance else "C"
+    for label, whole in _named_classes(components):
+        if claimed not in ("", label):
+            continue
+        cells = np.argwhere(np.triu(_gap(components, whole)) > _NAMES_FIT * size).tolist()
+        if len(cells) != 1 or whole[tuple(cells[0])] == 0:
+            continue
+        i, j = cells[0]
+        listed, due = (significant(float(factors[i, j] * table[i, j]))
+                       for table in (components, whole))
+        key = label.split()[0].split("_")[0]
+        rule = "the others" if is_compliance else _RULES.get((key, (i, j)), "the others")
+        return (f"{letter}{i + 1}{j + 1} is {listed} in the list, but by {rule} it would be "
+                f"{due} in {'an' if key[0] in 'aeio' else 'a'} {key} crystal.")
+    return ""
+
+
+_RULES = {
+    ("isotropic", (3, 3)): "(C11 − C12)/2", ("hexagonal", (5, 5)): "(C11 − C12)/2",
+    ("trigonal", (5, 5)): "(C11 − C12)/2",
+}
+"""What a dependent constant follows from, where it is no plain equality."""

@@ -324,18 +324,16 @@ def plan(
         raise ValueError("a plan for wave speeds needs a density")
     basis = basis_of(cls)
     constants = basis.constants(medium.stiffness.voigt)
-    default = candidate_directions(_PLAN_LEVEL)
-    vectors = default if candidates is None else directions(candidates).n
+    vectors = directions(candidates).n if candidates is not None else _simple_ones()
     rows, speed = _rows_along(
         basis, medium.density, constants, vectors, sheets, relative_sigma
     )
     typical = mean_stiffness(basis, constants)
     loose = _prior(basis, typical)
     chosen: list[int] = []
-    fewest = _fewest(basis.size, len(sheets))
     for size in range(1, min(_MOST_BLANKS, vectors.shape[1]) + 1):
         chosen = _grown(rows, chosen, loose)
-        if size < fewest:
+        if size < _fewest(basis.size, len(sheets)):
             continue
         chosen = _exchanged(rows, chosen, loose)
         seen = _spectrum(rows[chosen], speed[chosen], basis, typical)
@@ -346,6 +344,11 @@ def plan(
             found = read_only(vectors[:, chosen])
             return Plan(found, std, basis.names, seen.rank, relative_sigma)
     return None
+
+
+def _simple_ones() -> FloatArray:
+    """Return the candidates (3, K) of a plan where none are given."""
+    return candidate_directions(_PLAN_LEVEL)
 
 
 def _expected_std(rows: FloatArray) -> FloatArray:

@@ -26,6 +26,7 @@ _INCH = 25.4  # millimetres
 _ALIKE = 3.0  # a speed within this factor of the others is of their size
 _SAME_DIRECTION = 1e-6  # on |n1 . n2|
 _DISAGREE = 5.0  # combined standard uncertainties between two values of one wave
+_SHARED, _ROWS_NAMED = 3, 5  # rows that make one slip a sentence; rows it names
 _MOST_REMARKS = 30
 
 
@@ -154,7 +155,9 @@ def remarks(readings: Sequence[Reading]) -> tuple[str, ...]:
     if not readings:
         return ()
     typical = float(np.median([reading.speed for reading in readings]))
-    notes = [note for reading in readings if (note := _odd_size(reading, typical))]
+    notes, named = _shared_slips(readings, typical)
+    notes += [note for reading in readings
+              if reading.row not in named and (note := _odd_size(reading, typical))]
     for group in same_direction(readings):
         ordered = sorted(group, key=lambda reading: (reading.speed, reading.row))
         notes += [note for pair in pairwise(ordered) if (note := _odd_pair(*pair))]
@@ -164,25 +167,57 @@ def remarks(readings: Sequence[Reading]) -> tuple[str, ...]:
     return tuple(notes)
 
 
+def _shared_slips(readings: Sequence[Reading], typical: float) -> tuple[list[str], set[int]]:
+    """Return a sentence for every slip of units that three rows or more share, and the rows."""
+    groups: dict[tuple[float, str], list[Reading]] = defaultdict(list)
+    for reading in readings:
+        slip = _unit_slip(reading, typical)
+        if slip is not None:
+            groups[slip].append(reading)
+    shared = {slip: group for slip, group in groups.items() if len(group) >= _SHARED}
+    rows = {reading.row for group in shared.values() for reading in group}
+    return [_slip_words(group, *slip) for slip, group in shared.items()], rows
+
+
+def _slip_words(group: Sequence[Reading], factor: float, question: str) -> str:
+    """Return "Rows 1, 2, 3, 4, 5 and 9 more: 2.9 to 6.8 m/s would be …"."""
+    rows = ", ".join(str(reading.row) for reading in group[:_ROWS_NAMED])
+    more = len(group) - _ROWS_NAMED
+    speeds = [reading.speed for reading in group]
+    found, meant = (
+        f"{times * min(speeds):.4g} to {times * max(speeds):.4g} m/s" for times in (1.0, factor)
+    )
+    return (f"Rows {rows}{f' and {more} more' if more > 0 else ''}: {found} would be {meant} if"
+            f" multiplied by {factor:g}: {question}")
+
+
 def _odd_size(reading: Reading, typical: float) -> str:
     """Say what is odd about the size of a speed, on its own and among the others."""
-    usual = SLOWEST <= reading.speed <= FASTEST
-    if usual and typical / (2 * _ALIKE) <= reading.speed <= typical * 2 * _ALIKE:
+    if _is_usual(reading, typical):
         return ""
     where = f"Row {reading.row}: {reading.speed:.4g} m/s"
-    reason = _unit_slip(reading, typical)
-    if reason:
-        return f"{where} {reason}"
-    if not usual:
+    slip = _unit_slip(reading, typical)
+    if slip is not None:
+        factor, question = slip
+        meant = f"{factor * reading.speed:.4g} m/s"
+        return f"{where} would be {meant} if multiplied by {factor:g}: {question}"
+    if not SLOWEST <= reading.speed <= FASTEST:
         return f"{where} is outside the {SLOWEST:.0f} to {FASTEST:.0f} m/s of solid crystals."
     return f"{where} is far from the other speeds, whose middle is {typical:.4g} m/s."
 
 
-def _unit_slip(reading: Reading, typical: float) -> str:
-    """Return what a slip of units would explain, or an empty string.
+def _is_usual(reading: Reading, typical: float) -> bool:
+    in_range = SLOWEST <= reading.speed <= FASTEST
+    return in_range and typical / (2 * _ALIKE) <= reading.speed <= typical * 2 * _ALIKE
+
+
+def _unit_slip(reading: Reading, typical: float) -> tuple[float, str] | None:
+    """Return by which factor and through which slip an odd speed would be like the others.
 
     A slip that every row shares leaves no typical speed to compare with; 5 km/s then serves.
     """
+    if _is_usual(reading, typical):
+        return None
     peers = typical if SLOWEST < typical < FASTEST else 5_000.0
     slips = [(1e3, "was it given in km/s?")]
     if reading.flight is not None:
@@ -194,8 +229,8 @@ def _unit_slip(reading: Reading, typical: float) -> str:
     for factor, question in slips:
         meant = factor * reading.speed
         if peers / _ALIKE < meant < peers * _ALIKE:
-            return f"would be {meant:.4g} m/s if multiplied by {factor:g}: {question}"
-    return ""
+            return factor, question
+    return None
 
 
 def _odd_pair(slower: Reading, faster: Reading) -> str:

@@ -17,6 +17,7 @@ from core.tensor.symmetry import CLASS_KEYS, CrystalClass, crystal_class
 TOLERANCE_PERCENT = 1.0
 _LEAST_TOLERANCE = 0.1  # percent: what rounding to four digits leaves
 _EXACT = 1e-4  # percent
+_MET = 1e-6  # relative: a table so near to its class has the class's form
 _MUCH_BETTER = 0.5  # of the distance as entered: when turning within a class is worth saying
 _SEEN_TURN = 0.5  # degrees
 
@@ -36,6 +37,8 @@ class SymmetryVerdict:
         The axes worth turning to; None where the given ones serve.
     tolerance_percent : float
         What counts as belonging to a class.
+    beyond : str
+        The part of the sentence that goes beyond the axes as entered; may be empty.
     """
 
     sentence: str
@@ -43,6 +46,7 @@ class SymmetryVerdict:
     entered_percent: float
     hidden: HiddenAxes | None
     tolerance_percent: float
+    beyond: str = ""
 
 
 def symmetry_sentence(
@@ -63,7 +67,7 @@ def symmetry_verdict(
     found : tuple of HiddenAxes
         From `nearest_classes`.
     std : ndarray, shape (6, 6), optional
-        Standard uncertainties, GPa; they set the tolerance, which is 1 % without them.
+        Standard uncertainties, GPa; they set the tolerance: see `tolerance_percent`.
     """
     tolerance = tolerance_percent(stiffness, std)
     entered, off = simplest_class(stiffness.voigt, tolerance / 100)
@@ -77,25 +81,60 @@ def symmetry_verdict(
     )
     hidden = best if fewer or nearer else None
     if hidden is not None:
-        sentence = f"{_entered_words(entered, entered_percent)}; {_hidden_words(hidden)}"
+        beyond = _hidden_words(hidden)
+        sentence = f"{_form_words(entered, entered_percent)} as entered; {beyond}"
     elif entered.key == "triclinic":
-        sentence = f"triclinic; {_nothing_nearer(found, tolerance)}"
+        beyond = _nearest_words(found, noise_percent(stiffness, std))
+        sentence = f"triclinic; {beyond}"
     else:
-        sentence = _entered_words(entered, entered_percent)
-    return SymmetryVerdict(sentence, entered, entered_percent, hidden, tolerance)
+        beyond = ""
+        sentence = f"{_form_words(entered, entered_percent)} as entered"
+    return SymmetryVerdict(sentence, entered, entered_percent, hidden, tolerance, beyond)
+
+
+def claim_sentence(claimed: CrystalClass, off: float, found: SymmetryVerdict) -> str:
+    """Return what a table claims beside what it has the form of, without saying either twice.
+
+    Parameters
+    ----------
+    claimed : CrystalClass
+    off : float
+        The relative distance of the table from it, about the axes as entered.
+    found : SymmetryVerdict
+    """
+    form = found.as_entered
+    if (claimed.key, claimed.unique_axis) == (form.key, form.unique_axis):
+        return found.sentence
+    away = "" if off <= _MET else f", {significant(100 * off, 2)} % away in these axes"
+    pieces = [f"claimed {_name_of(claimed)}{away}"]
+    if form.key != "triclinic":
+        pieces.append(f"has the form of {_form_words(form, found.entered_percent)}")
+    return "; ".join(piece for piece in (*pieces, found.beyond) if piece)
 
 
 def tolerance_percent(stiffness: Stiffness, std: FloatArray | None = None) -> float:
     """Return how far from a class a table may be and still belong to it, percent of ‖C‖.
 
-    The expected size of the noise in Kelvin form, √(Σ w² σ²), where uncertainties are given,
-    but never less than 0.1 %; else 1 %.
+    `noise_percent` where uncertainties are given, but never less than 0.1 % and never more
+    than 1 %: large errors make a class tenable, which is no reason to call a table that is far
+    from it by its name.
+    """
+    noise = noise_percent(stiffness, std)
+    if noise is None:
+        return TOLERANCE_PERCENT
+    return min(max(noise, _LEAST_TOLERANCE), TOLERANCE_PERCENT)
+
+
+def noise_percent(stiffness: Stiffness, std: FloatArray | None = None) -> float | None:
+    """Return the expected size of the noise, √(Σ w² σ²) in Kelvin form, percent of ‖C‖.
+
+    None where no uncertainties are given.
     """
     size = float(np.linalg.norm(stiffness.kelvin))
     if std is None or not np.any(std) or size == 0:
-        return TOLERANCE_PERCENT
+        return None
     noise = float(np.linalg.norm(std * np.outer(KELVIN_WEIGHTS, KELVIN_WEIGHTS)))
-    return max(100 * noise / size, _LEAST_TOLERANCE)
+    return 100 * noise / size
 
 
 def entered_distances(stiffness: Stiffness) -> tuple[tuple[CrystalClass, float, float], ...]:
@@ -119,35 +158,41 @@ def _simplest(found: tuple[HiddenAxes, ...], tolerance: float) -> HiddenAxes:
         len(crystal_class(axes.class_key).independent), axes.distance_percent))
 
 
-def _entered_words(cls: CrystalClass, percent: float) -> str:
+def _form_words(cls: CrystalClass, percent: float) -> str:
     about = f" about {cls.unique_axis}" if cls.key == "monoclinic" else ""
-    if percent < _EXACT:
-        return f"{cls.name}{about} as entered"
-    return f"{cls.name}{about} within {significant(percent, 2)} % as entered"
+    return f"{_name_of(cls)}{about}{_within(percent)}"
 
 
 def _hidden_words(axes: HiddenAxes) -> str:
-    name = crystal_class(axes.class_key).name
-    within = "" if axes.distance_percent < _EXACT else (
-        f" within {significant(axes.distance_percent, 2)} %")
+    name = _name_of(crystal_class(axes.class_key))
     spread = "" if axes.axis_uncertainty_deg is None else (
         f" (± {significant(axes.axis_uncertainty_deg, 1)}°)")
-    return (f"{name}{within} once turned {axes.turn_deg:.1f}°{spread} about "
-            f"{vector_text(axes.turn_axis)}")
+    return (f"{name}{_within(axes.distance_percent)} once turned {axes.turn_deg:.1f}°{spread} "
+            f"about x, y, z = {vector_text(axes.turn_axis)}")
 
 
-def _nothing_nearer(found: tuple[HiddenAxes, ...], tolerance: float) -> str:
-    nearest = sorted(
-        (axes for axes in found if axes.class_key in ("monoclinic", "orthorhombic")),
+def _nearest_words(found: tuple[HiddenAxes, ...], noise: float | None) -> str:
+    nearest = min(
+        (axes for axes in found if axes.class_key != "triclinic"),
         key=lambda axes: axes.distance_percent,
     )
-    listed = ", ".join(f"{axes.class_key} {significant(axes.distance_percent, 2)} %"
-                       for axes in nearest)
-    return f"no axes bring it within {significant(tolerance, 2)} % of a higher class ({listed})"
+    spread = "" if noise is None else f" (uncertainty {significant(noise, 2)} %)"
+    return (f"nearest higher class: {_name_of(crystal_class(nearest.class_key))}, "
+            f"{significant(nearest.distance_percent, 2)} % away{spread}")
+
+
+def _within(percent: float) -> str:
+    return "" if percent < _EXACT else f" within {significant(percent, 2)} %"
+
+
+def _name_of(cls: CrystalClass) -> str:
+    return cls.name.replace(",", " with")  # "trigonal with 6 constants"
 
 
 def vector_text(vector: tuple[float, float, float]) -> str:
-    """Return a unit vector to two decimals, as in [0.1 0.2 0.97]."""
-    parts = [f"{component:.2f}".rstrip("0").rstrip(".") for component in vector]
-    return f"[{' '.join('0' if part in ('-0', '') else part for part in parts)}]".replace(
-        "-", MINUS)
+    """Return Cartesian components to two decimals: "0.10, −0.20, 0.97".
+
+    Without brackets, which are those of lattice directions.
+    """
+    parts = (f"{component:.2f}" for component in vector)
+    return ", ".join("0.00" if part == "-0.00" else part for part in parts).replace("-", MINUS)

@@ -92,6 +92,7 @@ def test_directions_follow_each_other_as_they_were_said():
     assert fast[:5] == ["fastest", "4.017", "0.2490", "1.00", "0°"]
     assert line_of(first, "slowest").endswith("(one of a plane)")
     assert "one of a plane" not in line_of(first, "fastest")
+    assert line_of(first, "energy of fastest").split()[3:] == ["4.017", "0", "0", "1.00000"]
 
 
 def test_without_a_density_there_are_no_waves():
@@ -153,3 +154,57 @@ def test_two_parts_side_by_side():
     assert line_of(page, "E along Z").split()[-3:] == ["47.93", "47.93", "0"]  # no dust
     assert line_of(page, "fastest wave along X").split()[-3:] == ["4.017", "–", "–"]
     assert "None" not in page
+
+
+def test_a_symmetry_that_brings_a_part_back_is_said():
+    page = pages.comparison(compare(CUBE, AS_IT_IS, CUBE, OrientationChoice("axis [0 0 1] 90")))
+    turned = "Turned against each other by 90.00° as they stand, 0° by the crystal's symmetry\n"
+    assert turned in page
+
+
+# --- words ----------------------------------------------------------------------------------
+
+
+def test_no_class_claimed_is_said_in_words():
+    free = Specimen("free", CUBE.stiffness)
+    assert line_of(pages.summary(summarise(free)), "Claimed class").endswith(
+        "none claimed; fits cubic exactly"
+    )
+    rough = np.array(CUBE.stiffness) * (1 + 1e-5 * np.diag([1.0, -1, 0, 1, 0, -1]))
+    page = pages.summary(summarise(Specimen("rough", as_matrix(rough))))
+    said = line_of(page, "Claimed class")
+    assert re.search(r"none claimed; fits cubic within 0\.0\d+ %$", said)
+    assert line_of(pages.summary(summarise(ROCK)), "Claimed class").endswith("none claimed")
+
+
+def test_shear_and_poisson_come_with_their_second_direction():
+    page = pages.summary(summarise(CUBE))
+    least = line_of(page, "shear modulus").split()[3:7]
+    across = line_of(page, "sheared towards").split()[2:5]
+    n, m = (np.array([float(x.replace("−", "-")) for x in cells[-3:]])
+            for cells in (least, across))  # fmt: skip
+    assert abs(n @ m) < 2e-3  # across each other
+    S = np.linalg.inv(np.array(CUBE.stiffness))
+    strain = S @ np.array([*(2 * n * m), n[1] * m[2] + n[2] * m[1], n[0] * m[2] + n[2] * m[0],
+                           n[0] * m[1] + n[1] * m[0]])  # of a unit shear stress  # fmt: skip
+    e = np.array([[strain[0], strain[5] / 2, strain[4] / 2],
+                  [strain[5] / 2, strain[1], strain[3] / 2],
+                  [strain[4] / 2, strain[3] / 2, strain[2]]])  # fmt: skip
+    assert 1 / (2 * n @ e @ m) == pytest.approx(float(least[0]), rel=5e-3)
+    assert "contracting along" in page
+
+
+def test_an_unstable_table_says_what_its_least_values_are():
+    assert "least of the positive values" in pages.summary(summarise(UNSTABLE))
+    assert "least of the positive values" not in pages.summary(summarise(CUBE))
+
+
+def test_columns_do_not_run_together_for_odd_magnitudes():
+    odd = Specimen("odd", as_matrix(1e-8 * np.array(CUBE.stiffness)), 2.684, "cubic")
+    page = pages.summary(summarise(odd))
+    assert not re.search(r"[⁻⁰¹²³⁴⁵⁶⁷⁸⁹][−\d]", page.split("Note:")[0])
+    assert "in g/cm³ it would be 2684 kg/m³" in page
+
+
+def test_decimal_points_stand_below_each_other():
+    assert pages.aligned([["1.5", "−20"], ["100", "3.25"]]) == ["  1.5   −20", "100       3.25"]

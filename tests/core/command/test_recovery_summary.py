@@ -34,7 +34,7 @@ def written(tmp_path, text):
     return path
 
 
-def cubic_rows(*cuts, facts=""):
+def cubic_rows(*cuts, facts="", brackets="[]"):
     """Return a file of three exact speeds along each cut of an invented cubic crystal."""
     table = np.zeros((6, 6))
     table[:3, :3] = 64.0
@@ -43,7 +43,8 @@ def cubic_rows(*cuts, facts=""):
     for cut in cuts:
         n = np.array(cut, dtype=float)[:, None] / np.linalg.norm(cut)
         for k, v in enumerate(speeds_along(table, 2329.0, n)[:, 0].tolist()):
-            rows.append(f"[{' '.join(map(str, cut))}],{k + 1},{v!r}")
+            said = f"{brackets[:1]}{' '.join(map(str, cut))}{brackets[1:]}"
+            rows.append(f"{said},{k + 1},{v!r}")
     return facts + "direction,sheet,speed_m_s\n" + "\n".join(rows) + "\n"
 
 
@@ -133,7 +134,7 @@ def test_a_rank_below_the_number_of_constants_is_reported_not_refused(tmp_path):
 
 
 def test_without_a_class_no_symmetry_is_assumed_and_this_is_said(tmp_path):
-    data = run_recover(written(tmp_path, cubic_rows((1, 0, 0))), 2329.0)
+    data = run_recover(written(tmp_path, cubic_rows((1, 0, 0), brackets="")), 2329.0)
     assert data["crystal_class"] == "triclinic"
     assert any("No crystal class was named" in note for note in data["notes"])
 
@@ -154,3 +155,42 @@ def test_an_unknown_class_is_named_with_the_nearest(tmp_path):
 ])  # fmt: skip
 def test_digits_follow_the_uncertainty(value, std, text):
     assert with_uncertainty(value, std).strip() == text
+
+
+def test_indices_without_a_cell_are_refused_and_components_are_not(tmp_path):
+    with pytest.raises(InputError, match=r"Indices need the unit cell.*without brackets"):
+        run_recover(written(tmp_path, cubic_rows((1, 0, 0))), 2329.0, "trigonal_6")
+    rows = cubic_rows((1, 0, 0), brackets="")
+    assert run_recover(written(tmp_path, rows), 2329.0, "trigonal_6")["rank"] > 0
+
+
+def test_what_was_not_measured_is_marked_in_the_table(tmp_path, determined, blind):
+    assert "?" not in recovery_page(determined)
+    block = recovery_page(blind).split("rows 11 22 33 23 13 12\n")[1].splitlines()
+    marked = np.array([["?" in cell for cell in row.split()] for row in block[:6]])
+    unseen = np.zeros((6, 6), dtype=bool)
+    for i, j in ((0, 1), (1, 2), (1, 4)):  # C12, C23 and C25
+        unseen[i, j] = unseen[j, i] = True
+    assert (marked == unseen).all()
+    assert block[6].lstrip().startswith("? not measured")
+
+
+def test_one_is_no_plural(tmp_path):
+    text = "direction,sheet,speed_m_s\n1 0 0,1,5000\n0 1 0,1,5000\n"
+    page = recovery_page(run_recover(written(tmp_path, text), 2329.0, "cubic"))
+    assert "from 2 speeds" in page
+    assert "for 1 degree of freedom\n" in page
+    page = recovery_page(
+        run_recover(written(tmp_path, text.replace("0 1 0,1,5000\n", "")), 2329.0, "cubic")
+    )
+    assert "from 1 speed\n" in page
+
+
+def test_impossible_density_and_speeds_are_noted(tmp_path):
+    rows = cubic_rows((1, 0, 0), (1, 1, 0)).splitlines()
+    cells = [row.split(",") for row in rows[1:]]
+    slow = [f"{cut},{sheet},{float(speed) / 1e3!r}" for cut, sheet, speed in cells]
+    notes = run_recover(written(tmp_path, "\n".join([rows[0], *slow])), 2.329, "cubic")["notes"]
+    assert any("in g/cm³ it would be 2329 kg/m³" in note for note in notes)
+    (note,) = [note for note in notes if "was it given in km/s?" in note]
+    assert note.startswith("Rows 1, 2, 3, 4, 5 and 1 more: ")

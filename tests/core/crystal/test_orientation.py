@@ -11,6 +11,7 @@ from core.crystal.directions import parse_direction
 from core.crystal.orientation import (
     WAYS,
     misorientation,
+    missed_direction,
     orientation_texts,
     parse_orientation,
     turned,
@@ -36,6 +37,43 @@ rotations = st.one_of(
 
 def rotation(text, frame=CUBIC):
     return parse_orientation(text, frame).rotation
+
+
+def test_a_second_direction_that_cannot_be_met_is_told_with_its_angle():
+    """The angle from the vectors of the two statements, by numpy alone."""
+    words = missed_direction("Z=(1 1 0) X=[1 0 0] turn 1 2 3", OBLIQUE)
+    x = rotation("Z=(1 1 0) X=[1 0 0]", OBLIQUE)[0]
+    wanted = np.array(parse_direction("[1 0 0]", OBLIQUE).vector)
+    off = np.degrees(np.arccos(x @ wanted))
+    assert off > 10
+    assert words == f"X lies {off:.1f}° from [1 0 0], which is not in the plane (1 1 0)"
+    other = missed_direction("Z=[1 1 0] Y=[1 0 0]", CUBIC)
+    assert other == "Y lies 45.0° from [1 0 0], which is not at right angles to [1 1 0]"
+
+
+@pytest.mark.parametrize(
+    "text", ["Z=(1 1 0) X=[0 0 1]", "Z=(1 1 0) X=[-1 1 0]", "bunge 1 2 3", "axis [1 1 1] 15"]
+)
+def test_directions_that_are_met_say_nothing(text):
+    assert missed_direction(text, CUBIC) == ""
+
+
+def test_a_miss_below_a_twentieth_of_a_degree_is_none():
+    assert missed_direction("Z=0,0,1 X=1,0,0.0008", CUBIC) == ""
+    assert missed_direction("Z=0,0,1 X=1,0,0.001", CUBIC) != ""
+
+
+@pytest.mark.parametrize(
+    ("loose", "usual"),
+    [
+        ("YXl 35.25", "(YXl) 35.25"),
+        ("YXlw 21.93/33.93", "(YXlw) 21.93/33.93"),
+        ("Euler 10 20 30", "bunge 10 20 30"),
+        ("euler 10, 20, 30", "bunge 10 20 30"),
+    ],
+)
+def test_usual_words_are_read_and_said_back_in_one_form(loose, usual):
+    assert parse_orientation(loose, CUBIC).text == usual
 
 
 # --- reading -------------------------------------------------------------------------------
@@ -324,3 +362,12 @@ def test_sigma_three_twin():
                            laue_rotations(crystal_class("cubic")))  # fmt: skip
     assert found.angle_deg == pytest.approx(60, abs=1e-12)
     np.testing.assert_allclose(np.abs(found.axis), np.ones(3) / np.sqrt(3), atol=1e-14)
+
+
+@pytest.mark.parametrize(
+    "text",
+    ["bunge 1e300 0 0", "axis [1 1 1] 2e6", "(YXl) 3e6", "identity turn 0 -1e7 0"],
+)
+def test_angles_of_which_no_fraction_of_a_turn_is_left_are_refused(text):
+    with pytest.raises(InputError, match="out of reach"):
+        parse_orientation(text, CUBIC)

@@ -230,8 +230,24 @@ def test_what_is_not_seen_is_known_as_loosely_as_a_crystal_is_stiff():
     assert c12 == pytest.approx(typical / 6**0.5, rel=0.02)
     given = measured.with_constants(ROCK, fit, table(cell=None, crystal_class="cubic"))
     assert given.crystal_class == "cubic"
-    assert given.cell == CELL
     assert np.isfinite(np.array(given.covariance)).all()
+    assert given.notes.startswith("1 constant was not seen: C12. ")
+    # ROCK is triclinic: another crystal, of which nothing is kept.
+    assert (given.name, given.cell) == ("Constants from measured speeds", None)
+    assert given.temperature_c is None
+    alike = replace(ROCK, crystal_class="cubic", notes="cut in May")
+    kept = measured.with_constants(alike, fit, table(cell=None, crystal_class="cubic"))
+    assert (kept.name, kept.cell) == ("rock", CELL)
+    assert kept.notes.splitlines()[0] == "cut in May"
+    assert measured.with_constants(kept, fit, table(crystal_class="cubic")).notes == kept.notes
+
+
+def test_what_is_not_seen_is_counted_in_words():
+    assert measured.unseen_words(()) == ""
+    assert measured.unseen_words(("C12", "C23")) == "2 constants were not seen: C12, C23"
+    assert measured.unseen_words(("C12", "C13 + 2 C44")) == (
+        "2 combinations of constants were not seen: C12, C13 + 2 C44"
+    )
 
 
 def test_the_covariance_of_a_determined_fit_is_handed_on_as_it_is():

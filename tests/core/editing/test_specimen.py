@@ -8,11 +8,11 @@ import pytest
 
 from core.crystal.cell import UnitCell
 from core.editing.specimen import (
+    belongs_in_dialog,
     cell_name,
     fits_class,
-    is_open_table,
     make_exact,
-    paste_guesses,
+    paste_words,
     rule_text,
     set_axes,
     set_block,
@@ -216,17 +216,41 @@ def test_a_list_of_named_constants_is_a_whole_table():
     changed = set_block(LOW, "stiffness", 2, 2, text)
     np.testing.assert_array_equal(stiffness(changed), stiffness(CUBE))
     assert np.array(changed.stiffness_std)[2, 2] == pytest.approx(0.5)  # it came with the table
-    assert any("cubic" in guess for guess in paste_guesses("stiffness", text))
+    assert changed.crystal_class == "cubic"  # what the list is of, it claims
+    assert "class taken as cubic" in paste_words(LOW, changed, "stiffness", text)
 
 
-def test_what_is_guessed_about_a_paste_can_be_asked():
+@pytest.mark.parametrize(
+    ("text", "key", "axis"),
+    [
+        ("C11 168.4 C12 121.4 C44 75.4", "cubic", "y"),
+        ("C11 = 168.4 GPa\nC12 = 121.4 GPa\nC44 = 75.4 GPa", "cubic", "y"),
+        ("C11 86.8 C12 7 C13 11.9 C14 -18 C33 105.8 C44 58.2", "trigonal_6", "y"),
+    ],
+)
+def test_the_class_of_a_pasted_list_is_claimed_and_named_in_words(text, key, axis):
+    changed = set_block(LOW, "stiffness", 0, 0, text)
+    assert (changed.crystal_class, changed.unique_axis) == (key, axis)
+    assert fits_class(changed)
+    words = "; ".join(paste_words(LOW, changed, "stiffness", text))
+    assert crystal_class(key).name.split(",")[0] in words
+    assert "_" not in words
+
+
+def test_what_was_made_of_a_paste_is_told():
+    known = dataclasses.replace(CUBE, stiffness_std=as_matrix(np.ones((6, 6))))
     in_pascal = "Pa\n" + text_of(TABLE * 1e9)
-    changed = set_block(LOW, "stiffness", 0, 0, in_pascal)
+    changed = set_block(known, "stiffness", 0, 0, in_pascal)
     np.testing.assert_allclose(stiffness(changed), TABLE, rtol=1e-12)
-    assert any("rows taken as 11 22 33 23 13 12" in guess
-               for guess in paste_guesses("stiffness", in_pascal))  # fmt: skip
-    assert paste_guesses("stiffness", "1 2\n3 4") == ()
-    assert paste_guesses("compliance", text_of(TABLE)) == ()
+    assert paste_words(known, changed, "stiffness", in_pascal) == (
+        "unit taken as Pa and converted",
+        "the claim to be cubic is as before",
+        "the old uncertainties are gone",
+        "rows taken as 11 22 33 23 13 12",
+        "notation taken as Voigt",
+    )
+    assert paste_words(LOW, LOW, "stiffness", "1 2\n3 4") == ()
+    assert paste_words(LOW, LOW, "uncertainty", text_of(TABLE)) == ()
 
 
 def test_what_cannot_be_guessed_about_a_paste_is_refused_with_the_question():
@@ -463,14 +487,19 @@ def test_axes_that_cannot_be_laid_are_refused():
 
 
 @pytest.mark.parametrize(
-    ("text", "is_open"),
+    ("text", "is_asked"),
     [
         ("GPa\n" + "\n".join(" ".join(["1.0"] * 6) for _ in range(6)), False),
         ("100 20\n20 90", False),  # a block, not a table
-        ("C11 = 131 GPa, C12 = 97.4, C12 = 98.0, C44 = 86.2", False),  # refused, not asked
+        ("C11 168.4 C12 121.4 C44 75.4", False),  # a list that leaves no question
+        ("abc", False),
+        ("C11 = 131 GPa, C12 = 97.4, C12 = 98.0, C44 = 86.2", True),  # twice C12
+        ("C11 168.4", True),
+        ("E = 210 GPa", True),
+        ("1 2\n3", True),
         ("\n".join(" ".join(map(str, row)) for row in np.arange(36).reshape(6, 6)), True),
     ],
 )
-def test_only_a_whole_table_with_a_question_is_asked_about(text, is_open):
-    assert is_open_table("stiffness", text) is is_open
-    assert not is_open_table("compliance", text)
+def test_what_is_no_plain_block_and_no_plain_table_belongs_in_the_dialog(text, is_asked):
+    assert belongs_in_dialog("stiffness", text) is is_asked
+    assert not belongs_in_dialog("uncertainty", text)

@@ -88,7 +88,7 @@ def test_display_choices_of_a_later_version_are_left_alone():
         ({"orientation_a": {"text": "up"}}, "orientation_a: 'up' is not an orientation"),
         ({"orientation_b": {"text": "axis [1 1 -2 0] 5"}}, "orientation_b: "),
         ({"orientation_a": {"turn": [0, 0]}}, "Three numbers were expected"),
-        ({"orientation_a": {"turn": [0, 0, True]}}, "A number was expected, not True"),
+        ({"orientation_a": {"turn": [0, 0, True]}}, "A number was expected, not true"),
         ({"pin": [0, 0, 0]}, "pin: A direction of length zero"),
         ({"pin": [0, 0]}, "pin: Three numbers were expected"),
         ({"pin": [0, 0, "1"]}, "pin: A number was expected"),

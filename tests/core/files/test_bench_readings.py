@@ -97,6 +97,7 @@ TABLES = st.builds(
     robust=st.booleans(),
     criterion=st.sampled_from(["determinant", "largest", "functional"]),
     comments=st.lists(TEXT, max_size=2).map(tuple),
+    name=TEXT,
 )
 
 

@@ -352,3 +352,80 @@ def test_blocks(text, rows):
 def test_block_refusals(text):
     with pytest.raises(InputError):
         read_block(text)
+
+
+# --- what a text says of itself -------------------------------------------------------------
+
+LOPSIDED = "168 121 121 0 0 0\n121 168 121 0 0 0\n123 121 168 0 0 0\n" + "".join(
+    " ".join("75" if i == j else "0" for j in range(6)) + "\n" for i in range(3, 6)
+)
+EVEN = LOPSIDED.replace("123", "121")
+
+
+@pytest.mark.parametrize(("way", "c13"), [("mean", 122.0), ("upper", 121.0), ("lower", 123.0)])
+def test_the_advice_about_unequal_cells_can_be_followed(way, c13):
+    with pytest.raises(InputError, match="# symmetry: mean \\(or upper, lower\\)"):
+        read_table(LOPSIDED)
+    found = read_table(f"# symmetry: {way}\n{LOPSIDED}")
+    assert found.stiffness[0, 2] == found.stiffness[2, 0] == c13
+
+
+def test_a_text_chooses_kind_unit_rows_and_notation():
+    compliance = np.linalg.inv(CRYSTAL)
+    rows = "\n".join(" ".join(map(repr, row)) for row in compliance.tolist())
+    said = understand(f"# kind: compliance\n# unit: 1/GPa\n{rows}")
+    assert said.stiffness == pytest.approx(CRYSTAL)
+    assert said.reading("kind").reason == "The text says so."
+    assert said.questions == ()
+    assert understand(f"{EVEN}# unit: kbar\n").stiffness[0, 0] == pytest.approx(16.8)
+    order = [0, 1, 2, 5, 4, 3]
+    swapped = CRYSTAL[np.ix_(order, order)]
+    rows = "\n".join(" ".join(map(repr, row)) for row in swapped.tolist())
+    said = understand(f"# rows: 11 22 33 12 13 23\n# notation: Voigt\n{rows}")
+    assert said.stiffness == pytest.approx(CRYSTAL)
+    assert understand(f"# unit: kbar\n{EVEN}", {"unit": "GPa"}).stiffness[0, 0] == 168.0
+
+
+def test_what_is_not_understood_of_a_text_is_noted():
+    notes = read_table(f"# symmetry: avarage\n{EVEN}").guesses
+    assert any("“symmetry: avarage”, says nothing that is understood" in note for note in notes)
+
+
+@pytest.mark.parametrize(
+    "line",
+    ["# density_kg_m3: 2684", "density: 2684 kg/m3", "# density: 2.684 g/cm³", "rho = 2684(1)"],
+)
+def test_a_text_carries_density_name_and_class(line):
+    facts = read_table(f"{line}\n# name: blank 7\n# crystal_class: cubic\n{EVEN}").facts
+    assert (facts.density, facts.name, facts.class_key) == (2684.0, "blank 7", "cubic")
+    assert read_table(f"C11 = 168\nC12 = 121\nC44 = 75\n{line}\n").facts.density == 2684.0
+
+
+def test_a_density_that_is_none_names_its_line():
+    with pytest.raises(InputError, match="line 1: “heavy” is not a number"):
+        read_table(f"# density_kg_m3: heavy\n{EVEN}")
+
+
+@pytest.mark.parametrize("name", ["C99", "C17", "S_07", "C111"])
+@pytest.mark.parametrize("sign", [" = ", ": ", " "])
+def test_a_name_of_no_constant_is_refused(name, sign):
+    with pytest.raises(InputError, match=f"line 4: “{name}” is the name of no constant"):
+        read_table(f"C11 = 168\nC12 = 121\nC44 = 75\n{name}{sign}3\n")
+
+
+def test_a_constant_that_breaks_the_class_is_named():
+    listed = "C11 = 168\nC12 = 121\nC13 = 100\nC33 = 150\nC44 = 75\nC66 = 30\n"
+    with pytest.raises(InputError) as error:
+        read_table(f"{listed}# crystal_class: hexagonal\n")
+    # (168 − 121)/2
+    said = "C66 is 30.00 in the list, but by (C11 − C12)/2 it would be 23.50"
+    assert said in str(error.value)
+    assert read_table(listed).stiffness[5, 5] == 30.0  # tetragonal, where no class is claimed
+
+
+@pytest.mark.parametrize(
+    "head", ["", "| 11 | 22 | 33 | 23 | 13 | 12 |\n|---|:--:|--:|---|---|---|\n"]
+)
+def test_a_table_in_bars_is_read(head):
+    text = head + "".join(f"| {row.replace(' ', ' | ')} |\n" for row in EVEN.splitlines())
+    assert read_table(text).stiffness == pytest.approx(read_table(EVEN).stiffness)

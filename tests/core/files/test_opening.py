@@ -76,7 +76,7 @@ def test_a_list_of_named_constants_claims_the_class_it_is_of(tmp_path):
         ("a.json", "hello", "this is not JSON"),
         ("a.json", "[1, 2, 3]", "A JSON object"),
         ("a.tricline", "1 2 3", "this is not JSON"),
-        ("a.txt", '{"format": "something"}', "“format” is 'something'"),
+        ("a.txt", '{"format": "something"}', "its “format” is \"something\""),
         ("a.txt", "hello", "no numbers"),
         ("a.txt", "1 2 3", "no table of constants"),
         ("a.txt", '{"format": ', "this is not JSON"),
@@ -97,3 +97,18 @@ def test_a_later_bench_is_refused_as_a_bench(tmp_path):
     data = {"format": "tricline-bench", "version": 7, "specimen": specimen_to_dict(CUBE)}
     with pytest.raises(InputError, match="format version 7"):
         opened(tmp_path, "b.tricline", json.dumps(data))
+
+
+def test_a_text_table_names_itself(tmp_path):
+    said = (
+        "# name: blank 7\n# density_kg_m3: 8120\n"
+        "# crystal_class: monoclinic\n# unique_axis: z\n"
+    )
+    found = opened(tmp_path, "run.txt", said + text_of(TABLE)).specimen
+    assert (found.name, found.density) == ("blank 7", 8120.0)
+    assert (found.crystal_class, found.unique_axis) == ("monoclinic", "z")
+
+
+def test_measured_speeds_are_no_table_of_constants(tmp_path):
+    with pytest.raises(InputError, match=r"tricline recover run\.csv"):
+        opened(tmp_path, "run.csv", "nx;ny;nz;speed_m_s\n1;0;0;5000\n")

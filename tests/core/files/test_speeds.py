@@ -149,11 +149,37 @@ def test_every_fault_is_named():
 
 
 def test_a_table_full_of_faults_is_named_in_part():
-    said = refusal(HEADER + "1 0 0,7,,,5720,5\n" * 100)
+    rows = "".join(f"1 0 0,{sheet},,,5720,5\n" for sheet in range(7, 107))
+    said = refusal(HEADER + rows)
     assert "row 20, column sheet" in said
     assert "row 21" not in said
     assert "80 more faults" in said
 
+
+def test_a_fault_that_many_rows_share_is_one_sentence():
+    said = refusal(HEADER + "1 0 0,7,,,5720,5\n" * 100)
+    assert "rows 1, 2, 3, 4, 5 and 95 more, column sheet: “7” is not a sheet." in said
+    assert "Also" not in said
+
+
+def test_indices_without_a_cell_are_refused_where_nobody_can_give_it():
+    text = "direction,speed_m_s\n[1 0 0],5000\n1 0 0,5000\n(0 0 1),5000\n"
+    with pytest.raises(InputError, match="this crystal is trigonal and no cell") as error:
+        parse_speeds("# crystal_class: trigonal_6\n" + text, needs_cell=True)
+    assert "rows 1, 3, column direction" in str(error.value)
+    for facts in ("# crystal_class: cubic\n", "# cell: 4 4 5 90 90 120\n"):
+        assert len(parse_speeds(facts + text, needs_cell=True).readings) == 3
+    assert len(parse_speeds(text).readings) == 3  # a page on which the cell can still be given
+
+
+def test_a_density_with_its_uncertainty_in_brackets():
+    table = parse_speeds("# density_kg_m3: 2684(1)\ndirection,speed_m_s\n1 0 0,5000\n")
+    assert (table.density, table.density_sigma) == (2684.0, 1.0)
+
+
+def test_a_specimen_is_no_table_of_speeds():
+    with pytest.raises(InputError, match=r"specimen or a bench file.*tricline summary"):
+        parse_speeds('{"format": "tricline-specimen"}')
 
 def test_faults_of_a_table_that_is_being_typed_do_not_hide_the_other_rows():
     rows = [{"direction": "1 0 0", "speed_m_s": "5720"}, {}, {"direction": "0 1 0"}]

@@ -16,6 +16,7 @@ from core.report.captions import (
     needed_sides,
     one_of,
     parse_plane,
+    plain_orientation,
     plane_words,
     state_for,
 )
@@ -46,7 +47,7 @@ def test_a_caption_says_what_belongs_to_its_kind():
     assert "±0.5°" in cost
     assert "equal-area" in cost
     sweep = caption(replace(BENCH, pin=(0.0, 0.6, 0.8)), FigureChoice("sweep", "young", "A"))
-    assert "(0 0.6 0.8)" in sweep
+    assert "from the direction X, Y, Z = 0, 0.6, 0.8 in part axes" in sweep
     assert "B:" not in sweep
     source = caption(BENCH, FigureChoice("source", "wave", "A", time_us=2.5))
     assert "2.5 µs" in source
@@ -98,7 +99,7 @@ def test_what_is_no_plane_is_refused(text):
 
 def test_planes_are_said():
     assert plane_words((0.0, -1.0, 0.0)) == "XZ"
-    assert plane_words((0.6, 0.8, 0.0)) == "normal to (0.6 0.8 0)"
+    assert plane_words((0.6, 0.8, 0.0)) == "normal to X, Y, Z = 0.6, 0.8, 0"
 
 
 def test_patterns_mean_files(tmp_path):
@@ -117,3 +118,39 @@ def test_several_files_want_several_names():
     assert outputs("one.png", files[:1]) == [Path("one.png")]
     with pytest.raises(InputError, match=r"\{name\}"):
         outputs("one.png", files)
+
+
+@pytest.mark.parametrize("kind", FIGURE_KINDS)
+def test_no_direction_looks_like_a_plane(kind):
+    tilted = replace(BENCH, pin=(0.0, 0.6, 0.8), section=(0.6, 0.0, 0.8))
+    for bench in (BENCH, tilted):
+        assert "(0" not in caption(bench, FigureChoice(kind, "young", "A"))
+
+
+def test_lines_and_hatching_are_explained_where_there_are_any():
+    assert "he faster the wave, the thicker its line" in caption(
+        BENCH, FigureChoice("section", "slowness", "A"))
+    assert "thicker" not in caption(BENCH, FigureChoice("section", "young", "AB"))
+    assert "A solid, B dashed" in caption(BENCH, FigureChoice("sweep", "young", "AB"))
+    unstable = BenchState(replace(CELL_LESS, stiffness=as_matrix(
+        materials.cubic(100.0, 40.0, -5.0))))  # fmt: skip
+    assert "Hatched" in caption(unstable, FigureChoice("hemisphere", "young", "A"))
+    assert "Hatched" not in caption(BENCH, FigureChoice("hemisphere", "young", "A"))
+
+
+def test_dots_are_explained_where_curves_are_dotted():
+    # Rays stay in a mirror plane of the cube, and leave a plane that is none.
+    leaves = "dotted where the ray leaves the plane"
+    turned = replace(BENCH, orientation_a=OrientationChoice("bunge 20 30 40"))
+    assert leaves in caption(turned, FigureChoice("section", "wave", "A"))
+    assert leaves not in caption(BENCH, FigureChoice("section", "wave", "A"))
+    # ν of a cubic crystal with C12 < 0 is negative along the cube's axes.
+    spongy = replace(BENCH, specimen=replace(CELL_LESS, stiffness=as_matrix(
+        materials.cubic(100.0, -20.0, 60.0))))  # fmt: skip
+    assert "otted where negative" in caption(spongy, FigureChoice("section", "poisson_least"))
+
+
+def test_orientations_are_read_with_four_decimals():
+    assert plain_orientation("bunge 244.649041837923 15.123 -0.000000012") == (
+        "bunge 244.649 15.123 0")
+    assert plain_orientation("Z=(1 -1 0) X=[0 0 1]") == "Z=(1 −1 0) X=[0 0 1]"

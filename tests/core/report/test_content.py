@@ -2,6 +2,7 @@
 
 import hashlib
 import math
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -21,7 +22,7 @@ from core.report.content import (
     file_note,
     report_content,
 )
-from core.state import BenchState, OrientationChoice, Specimen, as_matrix
+from core.state import BenchState, OrientationChoice, Specimen, as_matrix, rotation_of
 from core.summary import summarise
 from core.task import Cancelled, Ticker
 from tests import materials
@@ -109,6 +110,8 @@ def test_all_sections_stand_in_their_order():
 def test_only_the_sections_wanted():
     report = report_content(BENCH, ReportPlan(("cautions", "verdict")))
     assert [section.key for section in report.sections] == ["verdict", "cautions"]
+    alone = report_content(BENCH, ReportPlan(("verdict",)))
+    assert [section.key for section in alone.sections] == ["verdict", "cautions"]
     with pytest.raises(InputError, match="'verdicts' is no section"):
         report_content(BENCH, ReportPlan(("verdicts",)))
 
@@ -232,3 +235,62 @@ def test_progress_is_told_and_cancelling_heard():
     assert max(told) < 1.0
     with pytest.raises(Cancelled):
         report_content(BENCH, ReportPlan(), Ticker(is_cancelled=lambda: True))
+
+
+def test_what_is_odd_about_a_crystal_stands_under_the_verdict():
+    light = replace(TRICLINIC, density=2.7)  # g/cm³ taken for kg/m³
+    words = [block.text for block in section_of(
+        report_content(BenchState(light), ReportPlan(("verdict",))), "verdict").blocks
+        if isinstance(block, Paragraph)]  # fmt: skip
+    assert any("2.7" in text and "g/cm³" in text for text in words)
+
+
+def cubic_turned(text):
+    """Return a bench with a cubic table written in axes that are not the cube's."""
+    turn = rotation_of(OrientationChoice(text), UNSTABLE)
+    table = materials.rotated(materials.cubic(230.0, 140.0, 120.0), turn)
+    return BenchState(Specimen("turned piece", as_matrix(table), 8000.0, "cubic")), turn
+
+
+def test_axes_that_look_wrong_are_said_and_the_right_ones_given():
+    bench, turn = cubic_turned("bunge 20 15 5")
+    report = report_content(bench, ReportPlan(("symmetry", "cautions")))
+    said = section_of(report, "symmetry").blocks[1]
+    assert said.role == "doubt"
+    assert said.text.startswith("The axes look wrong: turned by ")
+    assert said.text.partition("table is ")[2].startswith("cubic exactly")
+    axes = next(table for table in tables_of(report, "symmetry")
+                if table.title == "Axes in which the table is cubic")  # fmt: skip
+    found = np.array([[float(x.replace("−", "-")) for x in row[1:4]] for row in axes.rows])
+    # v_turned = turn v_cube: each of the cube's axes is a column of the rotation.
+    shares = np.abs(found @ turn)
+    assert np.allclose(np.sort(shares, axis=1), [[0, 0, 1]] * 3, atol=1e-4)
+    assert any("axes look wrong" in block.text
+               for block in section_of(report, "cautions").blocks)  # fmt: skip
+
+
+def test_axes_that_serve_are_left_alone():
+    bench, _ = cubic_turned("identity")
+    report = report_content(bench, ReportPlan(("symmetry",)))
+    assert "look wrong" not in text_of(report)
+    distances = dict(tables_of(report, "symmetry")[-1].rows)
+    assert distances["cubic"] == distances["triclinic"] == "exact"
+    assert float(distances["isotropic"]) > 1.0
+    assert "⁻" not in text_of(report)
+
+
+def test_the_zener_ratio_is_named_only_where_it_is():
+    cubic, _ = cubic_turned("identity")
+    with_zener, without = (
+        next(table for table in tables_of(report_content(bench, ReportPlan(("averages",))),
+                                          "averages") if table.title == "Anisotropy")
+        for bench in (cubic, BENCH))  # fmt: skip
+    assert "Zener" in with_zener.note
+    assert "Zener" not in without.note
+    assert {row[0]: row[1] for row in with_zener.rows}["percent anisotropy of K"] == "0"
+
+
+def test_angles_of_an_orientation_have_few_digits():
+    bench = replace(BENCH, orientation_b=OrientationChoice("axis 1,1,0.2 15.123"))
+    words = text_of(report_content(bench, ReportPlan(("orientation",))))
+    assert re.search(r"\d\.\d{6,}", words) is None

@@ -106,3 +106,12 @@ def test_a_long_table_is_looked_at_quickly_and_its_remarks_are_cut_short():
     notes = remarks([reading(5200.0, row, 1) for row in range(1, 5000)])
     assert len(notes) == 31
     assert notes[-1].startswith("…")
+
+
+def test_a_slip_that_many_rows_share_is_one_sentence():
+    table = [reading(speed, row, sigma=0.01) for row, speed in enumerate((5.2, 3.1, 4.0), 1)]
+    (note,) = [note for note in remarks(table) if "km/s" in note]
+    assert note == (
+        "Rows 1, 2, 3: 3.1 to 5.2 m/s would be 3100 to 5200 m/s if multiplied by 1000: "
+        "was it given in km/s?"
+    )

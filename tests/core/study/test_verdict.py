@@ -187,3 +187,30 @@ def test_an_unstable_table_says_first_what_gives_way():
         symmetry="isotropic; nothing", notes=0,
     ).facts  # fmt: skip
     assert facts[0].startswith("softest strain")
+
+
+@pytest.mark.parametrize(("sigma", "mark"), [(0.82, "doubtful"), (0.05, "unstable")])
+def test_what_is_unstable_only_within_the_uncertainty_is_doubtful(sigma, mark):
+    table = cubic(100.0, 60.0, -0.1)  # 2 C44 = −0.2 in three strains
+    deviations = np.zeros((6, 6))
+    deviations[3, 3] = deviations[4, 4] = deviations[5, 5] = sigma / 2
+    found = verdict(table, deviations=deviations)
+    assert found.mark == mark
+    is_doubtful = mark == "doubtful"
+    assert found.headline == (
+        "Not stable as it stands, but within the uncertainties" if is_doubtful
+        else "Unstable in 3 strains"
+    )
+    assert ("−0.20 ± 0.82 GPa" in found.facts[0]) == is_doubtful
+
+
+def test_one_strain_below_zero_beyond_its_uncertainty_is_enough():
+    table = cubic(100.0, 60.0, -0.1)
+    table[5, 5] = -30.0
+    deviations = np.zeros((6, 6))
+    deviations[3, 3] = deviations[4, 4] = deviations[5, 5] = 0.4
+    assert verdict(table, TRICLINIC, deviations=deviations).mark == "unstable"
+
+
+def test_a_table_that_claims_no_class_says_so():
+    assert "no class claimed" in verdict(cubic(131.0, 97.4, 86.2), TRICLINIC).facts

@@ -179,6 +179,13 @@ def test_ticks_decide_what_goes_in(report):
     assert report.plan().again.startswith("tricline report b.tricline")
 
 
+def test_the_cautions_cannot_be_left_out(report):
+    row = list(SECTIONS).index("cautions")
+    item = report.sections.item(row)
+    assert item.checkState() == Qt.CheckState.Checked
+    assert not item.flags() & Qt.ItemFlag.ItemIsEnabled
+
+
 def test_another_figure_can_be_added(report):
     choose(report.kind, "hemisphere")
     choose(report.shown, "difference")

@@ -1,6 +1,8 @@
 """Figures as files, read back: sizes, pixels, words, vectors."""
 
+import re
 from dataclasses import replace
+from datetime import date
 
 import numpy as np
 import pytest
@@ -16,6 +18,7 @@ from gui.figures.export import (
     figure_bytes,
     format_of,
     text_scale,
+    undated,
 )
 from gui.stage.camera import Camera
 from gui.stage.flat_scene import FlatRenderer
@@ -200,6 +203,22 @@ def test_a_reproducible_pdf_is_the_same_every_time(qapp):
     assert b"D:20000101000000" not in made(choice, "pdf")
 
 
+def test_no_date_is_left_in_a_reproducible_pdf(qapp):
+    year = str(date.today().year).encode()
+    dates = re.findall(rb"/(?:CreationDate|ModDate) \(([^)]*)\)|\w+Date=\"([^\"]*)\"",
+                       made(PLOTS[0], "pdf", replace(SMALL, is_reproducible=True)))
+    assert len(dates) >= 2
+    assert not any(year in b"".join(pair) for pair in dates)
+
+
+def test_dates_are_as_long_as_they_were():
+    given = b"/CreationDate (D:20310517101112Z) /ModDate (D:20310517101112+02'00')"
+    found = undated(given)
+    assert len(found) == len(given)
+    assert b"2031" not in found
+    assert found.count(b"D:20000101000000Z") == 2
+
+
 @pytest.mark.parametrize("kind", ["png", "svg"])
 def test_pictures_and_svgs_are_the_same_every_time(qapp, kind):
     choice = FigureChoice("surface", "young", "A")
@@ -210,8 +229,11 @@ def test_pictures_and_svgs_are_the_same_every_time(qapp, kind):
 
 
 @pytest.mark.parametrize(("form", "words"), [
-    (FigureForm(0.0, 80.0), "longer than zero"),
-    (FigureForm(80.0, -1.0), "longer than zero"),
+    (FigureForm(0.0, 80.0), "15 mm at least"),
+    (FigureForm(80.0, -1.0), "15 mm at least"),
+    (FigureForm(4.0, 4.0, text_pt=0.0), "50 pixels at least"),
+    (FigureForm(text_pt=3.0), "4 to 40 points"),
+    (FigureForm(text_pt=41.0), "4 to 40 points"),
     (FigureForm(9000.0, 80.0), "20,000 pixels"),
     (FigureForm(1600.0, 1600.0), "200 million"),
     (FigureForm(dpi=5.0), "30 to 2400"),

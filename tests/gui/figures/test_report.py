@@ -9,11 +9,12 @@ import pytest
 
 from core.errors import InputError
 from core.numbers import significant
-from core.report.blocks import Table
+from core.report.blocks import Figure, Paragraph, Section, SignOff, Table
 from core.report.captions import FigureChoice
 from core.report.content import ReportPlan, default_figures, report_content
 from core.summary import summarise
-from gui.figures.report import Press, report_steps, run
+from gui.figures.paper import Paper, mm, page_font, wrapped_height
+from gui.figures.report import Press, _lay_section, report_steps, run
 from gui.stage.flat_scene import FlatRenderer
 from tests.gui.figures.benches import (
     BENCH,
@@ -129,6 +130,39 @@ def test_a_reproducible_report_is_the_same_every_time(qapp):
              for _ in range(2)]  # fmt: skip
     first, second = map(run, steps)
     assert first == second
+
+
+TABLE = Table(("a", "b"), tuple((str(k), "x") for k in range(8)), "Title", "A note.")
+FIGURE = Figure(FIGURES[2], "So many words that the caption takes several lines. " * 4, 1)
+BEGINNINGS = {
+    "table": (TABLE,),
+    "sentence and table": (Paragraph("A sentence before the table."), TABLE),
+    "signing": (SignOff(("Prepared",)),),
+    "figure": (FIGURE,),
+}
+
+
+@pytest.mark.parametrize("blocks", BEGINNINGS.values(), ids=BEGINNINGS)
+def test_no_heading_stands_at_the_foot_of_a_page_without_what_follows(qapp, blocks):
+    section = Section("verdict", "Verdict", blocks)
+    turned = 0
+    for used in range(20, 280, 10):
+        paper = Paper(mm(210.0), mm(297.0))
+        paper.y = mm(used)
+        _lay_section(paper, section, press())
+        turned += len(paper.pages) - 1
+        assert len(paper.pages) == 1 or paper.pages[0] == []
+    assert 0 < turned < 26
+
+
+def test_the_caption_of_a_last_odd_figure_stands_below_it(qapp):
+    paper = Paper(mm(210.0), mm(297.0))
+    before = paper.y
+    _lay_section(paper, Section("figures", "Figures", (FIGURE,)), press())
+    (place,) = (paint.rect for paint in paper.pages[0] if hasattr(paint, "rect"))
+    lines = wrapped_height(page_font("small"), FIGURE.caption, place.width())
+    assert lines > 3 * wrapped_height(page_font("small"), "A", place.width())
+    assert paper.y - before >= place.height() + lines
 
 
 def test_a_page_for_a_browser_says_the_same(qapp, content):

@@ -1,5 +1,6 @@
 """The verbs that draw, as a terminal starts them."""
 
+import argparse
 import hashlib
 import json
 import os
@@ -10,6 +11,14 @@ from pathlib import Path
 import pytest
 from PySide6.QtGui import QImage
 
+from core.command.figure_words import (
+    FIGURE_HELP,
+    REPORT_HELP,
+    SECTION_HELP,
+    add_figure,
+    add_report,
+    add_section,
+)
 from core.files.specimen import write_specimen
 from core.numbers import significant
 from core.summary import summarise
@@ -154,7 +163,19 @@ def test_reproducible_figures_are_the_same_bytes(piece, tmp_path):
 
 @pytest.mark.parametrize(("words", "sentence"), [
     (("--quantity", "yuong", "--out", "a.png"), "Did you mean 'young'"),
-    (("--out", "a.png", "--size", "0x100"), "longer than zero"),
+    (("--out", "a.png", "--size", "0x100"), "50 pixels at least"),
+    (("--out", "a.png", "--size", "1x1"), "50 pixels at least"),
+    (("--out", "a.png", "--size", "5x5mm"), "15 mm at least"),
+    (("--out", "a.png", "--size", "nanxinf"), "85x70mm"),
+    (("--out", "a.png", "--text", "2"), "4 to 40 points"),
+    (("--out", "a.png", "--text", "-8"), "4 to 40 points"),
+    (("--out", "a.png", "--kind", "source", "--time", "0"), "From 0.01"),
+    (("--out", "a.png", "--kind", "source", "--time", "-1"), "From 0.01"),
+    (("--out", "a.png", "--kind", "source", "--time", "1e9"), "to 10,000"),
+    (("--out", "{nmae}.png",), "{name} becomes"),
+    (("--out", "a.png", "--kind", "hemisphere", "--shown", "difference"), "no B that differs"),
+    (("--out", "a.png", "--look", "nan,0"), "azimuth,elevation"),
+    (("--out", "a.png", "--a", "bunge 1e300 0 0"), "±1,000,000°"),
     (("--out", "a.png", "--size", "100000x100"), "20,000 pixels"),
     (("--out", "a.png", "--size", "big"), "85x70mm"),
     (("--out", "a.png", "--dpi", "0"), "30 to 2400"),
@@ -230,6 +251,7 @@ def test_reports_are_the_same_bytes_when_asked(piece, tmp_path):
     (("--out", "r.pdf", "--figure", "plot:young"), "kind of figure"),
     (("--out", "r.pdf", "--figure", "section:young:Q"), "A, B, AB"),
     (("--out", "r.pdf", "--figure", "hemisphere:young:cots"), "Did you mean 'cost'"),
+    (("--out", "r.pdf", "--figure", "hemisphere:young:difference"), "no B that differs"),
 ])  # fmt: skip
 def test_reports_that_cannot_be_made(piece, capsys, tmp_path, words, sentence):
     assert sentence in refused(capsys, "report", piece, *words)
@@ -248,30 +270,70 @@ def test_help_teaches(verb, capsys):
 # --- no screen ------------------------------------------------------------------------------
 
 
-def test_screens_that_do_not_answer():
-    assert not verbs.has_screen({})
-    assert not verbs.has_screen({"DISPLAY": ""})
-    assert not verbs.has_screen({"DISPLAY": ":98765"})
-    assert not verbs.has_screen({"DISPLAY": "nonsense"})
-    assert verbs.has_screen({"WAYLAND_DISPLAY": "wayland-0"})
-    if os.environ.get("DISPLAY"):
-        assert verbs.has_screen(os.environ)
+NO_SCREENS = [
+    {}, {"DISPLAY": ":98765"}, {"QT_QPA_PLATFORM": "xcb"}, {"WAYLAND_DISPLAY": "nowhere-0"},
+    {"QT_QPA_PLATFORM": "no such platform", "DISPLAY": "nonsense"},
+]  # fmt: skip
+
+
+def run_alone(words, folder, **screen):
+    """Run a verb in a process of its own, with these variables about a screen."""
+    gone = ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM", "TRICLINE_REQUIRE_OPENGL")
+    environment = {key: value for key, value in os.environ.items() if key not in gone}
+    environment |= {"PYTHONPATH": str(ROOT)} | screen
+    return subprocess.run(
+        [sys.executable, "-m", "gui.launch", *words], cwd=folder, env=environment,
+        capture_output=True, text=True, check=False)  # fmt: skip
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("display", [None, ":98765"])
-def test_a_report_without_any_screen(piece, tmp_path, display):
-    gone = ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM", "TRICLINE_REQUIRE_OPENGL")
-    environment = {key: value for key, value in os.environ.items() if key not in gone}
-    if display:
-        environment["DISPLAY"] = display
-    environment["PYTHONPATH"] = str(ROOT)
+@pytest.mark.parametrize("screen", NO_SCREENS, ids=lambda screen: " ".join(screen) or "none")
+def test_drawing_needs_no_screen_whatever_the_environment_says(piece, tmp_path, screen):
+    words = ["figure", piece, "--kind", "section", "--out", "a.png"]
+    found = run_alone(words, tmp_path, **screen)
+    assert (found.returncode, found.stderr) == (0, "")
+    assert not QImage(str(tmp_path / "a.png")).isNull()
+
+
+@pytest.mark.slow
+def test_a_report_without_any_screen(piece, tmp_path):
     words = ["report", piece, "--figure", "surface:young:A", "--out", "r.pdf"]
-    found = subprocess.run(
-        [sys.executable, "-m", "gui.launch", *words], cwd=tmp_path, env=environment,
-        capture_output=True, text=True, check=False)  # fmt: skip
+    found = run_alone(words, tmp_path)
     assert (found.returncode, found.stderr) == (0, "")
     assert (tmp_path / "r.pdf").read_bytes().startswith(b"%PDF")
+
+
+@pytest.mark.slow
+def test_reproducible_reports_of_several_processes_are_the_same_bytes(piece, tmp_path):
+    # Two fonts, the bold one and the other, whose order in the file hung on chance.
+    words = ["report", piece, "--no-figures", "--reproducible", "--out"]
+    made = []
+    for name in ("a.pdf", "b.pdf", "c.pdf"):
+        assert run_alone([*words, name], tmp_path).returncode == 0
+        made.append((tmp_path / name).read_bytes())
+    assert made[0] == made[1] == made[2]
+
+
+def test_one_file_that_cannot_be_used_does_not_stop_the_others(piece, capsys, tmp_path):
+    (tmp_path / "broken.json").write_text("{")
+    words = ["figure", "broken.json", piece, "--kind", "section", "--out", "{name}.svg"]
+    assert main(words) == 2
+    said = capsys.readouterr().err
+    assert "broken.json" in said
+    assert "1 of 2 files" in said
+    assert (tmp_path / "piece.svg").exists()
+
+
+def test_help_says_nothing_is_above_that_is_not():
+    words = {"--quantity": "A quantity is", "--size": "A size is", "--out": "--out"}
+    for text, add in ((SECTION_HELP, add_section), (FIGURE_HELP, add_figure),
+                      (REPORT_HELP, add_report)):  # fmt: skip
+        verb = argparse.ArgumentParser()
+        add(verb)
+        for action in verb._actions:
+            if "see above" in (action.help or ""):
+                named = action.option_strings[0]
+                assert words.get(named, named) in text
 
 
 def test_columns_of_numbers_need_no_qt(piece, tmp_path):

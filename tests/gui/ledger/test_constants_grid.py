@@ -2,8 +2,9 @@
 
 import pytest
 from PySide6.QtCore import QEvent, QPoint, Qt
-from PySide6.QtGui import QFontMetricsF, QGuiApplication
-from PySide6.QtWidgets import QLineEdit, QPushButton, QVBoxLayout, QWidget
+from PySide6.QtGui import QFontMetricsF, QGuiApplication, QKeyEvent
+from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QApplication, QLineEdit, QPushButton, QVBoxLayout, QWidget
 
 from gui.ledger.constants_cells import PADDING
 from gui.ledger.constants_grid import ConstantsGrid
@@ -311,3 +312,28 @@ def test_the_editor_grows_with_a_long_number(grid, qtbot):
     wide = editor(grid)
     assert wide.width() > wide.fontMetrics().horizontalAdvance(repr(number(0, 2)))
     assert grid.table.viewport().rect().contains(wide.geometry())
+
+
+def test_home_and_end_stay_in_the_grid(grid):
+    """The menus have Home for the camera; over the grid it goes to the first column."""
+    table = grid.table
+    table.setFocus()
+    table.setCurrentIndex(grid.cells.index(2, 3))
+    asked = QKeyEvent(
+        QEvent.Type.ShortcutOverride, Qt.Key.Key_Home, Qt.KeyboardModifier.NoModifier
+    )
+    asked.ignore()
+    QApplication.sendEvent(table, asked)
+    assert asked.isAccepted()
+    QTest.keyClick(table, Qt.Key.Key_Home)
+    assert (table.currentIndex().row(), table.currentIndex().column()) == (2, 0)
+    QTest.keyClick(table, Qt.Key.Key_End)
+    assert (table.currentIndex().row(), table.currentIndex().column()) == (2, 5)
+
+
+def test_a_refusal_stands_under_the_grid_until_something_is_done(grid):
+    grid.show_refusal("That is no table.")
+    assert grid._fault.text() == "That is no table."
+    assert grid.cells.faults() == ()
+    grid.table.setCurrentIndex(grid.cells.index(1, 1))
+    assert not grid._fault.isVisibleTo(grid)

@@ -12,6 +12,8 @@ from gui.widgets.forms import Choice, DragField, TextField
 from gui.widgets.panel import Disclosure
 from tests.gui.ledger.sample_views import ORIENTATION
 
+NO_BREAK = "\N{NO-BREAK SPACE}"
+
 
 class Told:
     def __init__(self, form):
@@ -160,3 +162,14 @@ def test_buttons_between_the_orientations(qtbot):
         with qtbot.waitSignal(buttons.copy_requested) as caught:
             qtbot.mouseClick(button, Qt.MouseButton.LeftButton)
         assert caught.args == [side]
+
+
+def test_a_direction_that_is_missed_is_told_in_the_colour_of_doubt(form):
+    words = "X lies 51.2° from [1 0 0], which is not in the plane (1 1 0)"
+    form.show_view(replace(ORIENTATION, doubt=words))
+    (told,) = (one for one in form.findChildren(QLabel) if one.property("role") == "doubt")
+    assert told.text().replace(NO_BREAK, " ") == f"▲ {words}"
+    assert f"(1{NO_BREAK}1{NO_BREAK}0)" in told.text()  # indices stay on one line
+    assert told.isVisible()
+    form.show_view(ORIENTATION)
+    assert not told.isVisible()

@@ -6,12 +6,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QColor
+from PySide6.QtGui import QColor, QFontMetrics
 
 from core.directional.projection import from_disc, to_disc
 from gui.plots.disc_picture import undefined, value_in
 from gui.plots.hemisphere import HemispherePlot, disc_ground, draw_hemisphere
-from gui.theme import LIGHT, colours_of
+from gui.theme import LIGHT, colours_of, style_sheet
 from gui.viewdata import ScaleView
 from tests.gui.plots.demo_views import (
     difference_hemisphere,
@@ -99,6 +99,28 @@ def test_nothing_defined_says_why(qapp, tmp_path):
     empty = replace(view, picture=np.full((64, 64), np.nan), notice="Needs a density.")
     words = svg_words(draw_svg(draw_hemisphere, empty, tmp_path / "h.svg"))
     assert "Needs a density." in words
+
+
+def test_a_notice_is_whole_in_a_small_frame(qapp):
+    # Written into the small disc the long sentence lost its first and last words.
+    sentence = "Waves want a density. Enter it in the ledger; the stiffness side works without."
+    size = (226, 170)
+    view = replace(hemisphere_of(disc()[0]), picture=np.full((64, 64), np.nan), marks=())
+    ground = disc_ground(QRectF(0, 0, *size), replace(view, notice=sentence), LIGHT)
+    pixels = draw_image(draw_hemisphere, replace(view, notice=sentence), size)
+    columns = np.flatnonzero(near(pixels, LIGHT.secondary, 30).any(axis=0))
+    assert columns.max() - columns.min() > 2 * ground.rim + 20
+    assert columns.min() > 5
+    assert columns.max() < size[0] - 5
+
+
+@pytest.mark.parametrize(("size", "written"), [((520, 400), True), ((240, 180), False)])
+def test_a_small_disc_names_the_axes_only(qapp, tmp_path, size, written):
+    marks = ((0.0, 0.0, "[0 0 1]", "direction"), (0.6, 0.5, "[1 1 1]", "direction"))
+    view = hemisphere_of(disc()[0], marks=marks)
+    words = svg_words(draw_svg(draw_hemisphere, view, tmp_path / "h.svg", size))
+    assert "[0 0 1]" in words
+    assert ("[1 1 1]" in words) == written
 
 
 def test_marks_stand_where_their_directions_fall(qapp):
@@ -191,6 +213,33 @@ def test_faces_ask_and_the_shown_one_is_pressed(plot, qtbot):
         plot.show_view(replace(young_hemisphere(), shown="cost"))
     assert plot.face("cost").isChecked()
     assert not plot.face("A").isChecked()
+
+
+def test_a_narrow_header_has_a_list_of_the_choices(plot, qtbot):
+    assert plot.face("cost").isVisible()
+    assert not plot.short_list.isVisible()
+    plot.resize(240, 220)
+    assert not plot.face("cost").isVisible()
+    assert plot.short_list.isVisible()
+    assert plot.short_list.currentText() == "A"
+    with qtbot.waitSignal(plot.shown_chosen) as caught:
+        qtbot.keyClick(plot.short_list, Qt.Key.Key_Down)
+    assert caught.args == ["B"]
+    with qtbot.assertNotEmitted(plot.shown_chosen):
+        plot.show_view(replace(young_hemisphere(), shown="cost"))
+    assert plot.short_list.currentText() == "Cutting error"
+    assert plot.minimumSizeHint().width() <= 200
+
+
+def test_the_pressed_face_has_room_for_its_bold_words(plot, qapp):
+    qapp_sheet = qapp.styleSheet()
+    qapp.setStyleSheet(style_sheet(LIGHT, "."))
+    try:
+        for key, words in young_hemisphere().choices:
+            bold = QFontMetrics(LIGHT.font(bold=True)).horizontalAdvance(words)
+            assert plot.face(key).width() >= bold + 4
+    finally:
+        qapp.setStyleSheet(qapp_sheet)
 
 
 def test_fewer_choices_take_buttons_away(plot):

@@ -127,6 +127,35 @@ def test_direction_labels_do_not_overlap(qapp, tmp_path):
     assert all(label in text for _, label in apart)
 
 
+def test_a_small_rim_names_no_directions_and_takes_their_room(qapp, tmp_path):
+    view = plain(circle(1.0), directions=((0.3, "[1 −1 1]"), (1.2, "[0 1 1]")))
+    small = (220, 150)
+    text = draw_svg(draw_section, view, tmp_path / "s.svg", small)
+    assert "[1 −1 1]" not in text
+    assert "[0 1 1]" not in text
+    bare = section_ground(QRectF(0, 0, *small), replace(view, directions=()), LIGHT)
+    assert section_ground(QRectF(0, 0, *small), view, LIGHT).rim == pytest.approx(bare.rim)
+
+
+def test_a_free_axis_is_written_in_lines_and_once(qapp, tmp_path):
+    view = replace(plain(circle(1.0)), axis_labels=("0.91 0.28 −0.30", "0 0.73 0.68"),
+                   far_labels=("", ""))  # fmt: skip
+    words = svg_words(draw_svg(draw_section, view, tmp_path / "s.svg"))
+    assert {"0.91", "0.28", "−0.30", "0 0.73 0.68"} <= words
+    assert not any("−0.91" in word or "−0 " in word for word in words)
+    lettered = svg_words(draw_svg(draw_section, plain(circle(1.0)), tmp_path / "l.svg"))
+    assert {"X", "Z", "−X", "−Z"} <= lettered
+
+
+def test_a_narrow_legend_has_the_letters_only(qapp, tmp_path):
+    view = replace(plain(circle(1.0)), legend=(("A", "part axes"), ("B", "turned")))
+    wide = svg_words(draw_svg(draw_section, view, tmp_path / "w.svg"))
+    narrow = svg_words(draw_svg(draw_section, view, tmp_path / "n.svg", (230, 180)))
+    assert {"A", "B", "part axes", "turned"} <= wide
+    assert {"A", "B"} <= narrow
+    assert not any("par" in word or "tur" in word for word in narrow)
+
+
 # ---------------------------------------------------------------- values
 def test_values_at_a_smooth_curve():
     values = 1.0 + 0.3 * np.cos(4.0 * ANGLES)
@@ -293,6 +322,15 @@ def test_copy_gives_columns_at_full_precision(plot, qtbot):
     assert len(rows) == 722
     x, y = young_section().curves[0].points
     assert float(rows[101][1]) == pytest.approx(math.hypot(x[100], y[100]), rel=1e-15)
+
+
+def test_values_of_a_logarithmic_radius_are_read_back(plot, qtbot):
+    # Half way from 0.05 to 20 by decades: √(0.05 · 20) = 1.
+    view = replace(plain(circle(0.5)), radius=1.0, logarithmic=(0.05, 20.0))
+    plot.show_view(view)
+    assert plot.readout(0.3)[1][0].split()[1] == "1.000"
+    rows = plot.copy_text().splitlines()
+    assert float(rows[1].split("\t")[1]) == pytest.approx(1.0, rel=1e-9)
 
 
 def test_hover_tells_every_curve(plot):

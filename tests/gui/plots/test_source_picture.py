@@ -47,7 +47,7 @@ def test_vectors(qapp, tmp_path):
     assert "<image" not in text
     words = svg_words(text)
     assert {"Point source · after 4.000 µs", "30 mm", "X", "Z"} <= words
-    assert "dotted: the energy leaves the plane" in words
+    assert "dotted: energy leaves the plane" in words
     assert draw_pdf(draw_source, wave_source(), tmp_path / "s.pdf").startswith(b"%PDF")
 
 
@@ -107,3 +107,16 @@ def test_the_time_can_be_read_in_the_window_s_dress(qtbot):
     qtbot.waitExposed(widget)
     line = widget.time.lineEdit()
     assert line.width() >= line.fontMetrics().horizontalAdvance("1234.56 µs")
+
+
+def test_the_header_says_what_the_time_is_of(plot):
+    plot.show_view(replace(wave_source(), before_time="wavefronts in part XZ after"))
+    assert plot.before_time.whole() == "wavefronts in part XZ after"
+    assert plot.before_time.geometry().right() < plot.time.geometry().left()
+    plot.resize(340, 300)
+    assert plot.before_time.whole() == "part XZ after"
+
+
+def test_dots_are_explained_in_a_narrow_picture(qapp, tmp_path):
+    words = svg_words(draw_svg(draw_source, wave_source(), tmp_path / "n.svg", (230, 200)))
+    assert "dotted: energy leaves the plane" in words

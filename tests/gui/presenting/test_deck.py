@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from core import live
 from gui.presenting import deck, stage
 from tests.gui.presenting.benches import (
     CUBIC,
@@ -56,6 +57,52 @@ def test_a_tilted_section_lies_in_its_plane():
             young(table_of(STATE), n[:, None])[0], rel=1e-11
         )
     assert view.plane == "other"
+
+
+def test_far_ends_of_axes_are_true_opposites():
+    assert deck.section_view(STATE).far_labels == ("−X", "−Z")
+    # Of the plane of normal 1 2 2 the first axis is X less its share of the normal,
+    # (8, −2, −2)/√72: its numbers stand at one end only.
+    view = deck.section_view(looked_at(STATE, section=TILTED))
+    assert view.axis_labels[0] == "0.94 −0.24 −0.24"
+    assert view.far_labels == ("", "")
+
+
+def test_a_plane_of_the_crystal_is_called_by_its_indices():
+    diagonal = tuple((np.ones(3) / np.sqrt(3)).tolist())
+    words = dict(deck.section_view(looked_at(CUBIC, section=diagonal)).planes)
+    assert words["other"] == "normal (1 1 1) of A's crystal"
+    odd = tuple((np.array([0.41, -0.62, 0.67]) / np.linalg.norm([0.41, -0.62, 0.67])).tolist())
+    words = dict(deck.section_view(looked_at(CUBIC, section=odd)).planes)
+    assert words["other"].startswith("normal 0.4")
+
+
+def test_focusing_stands_on_a_logarithmic_radius():
+    state = looked_at(STATE, quantity="focusing", layout="A", ticks=True)
+    view = deck.section_view(state)
+    low, high = view.logarithmic
+    assert (view.radius, low, high) == (1.0, 0.05, 20.0)
+    assert [text for _, text in view.rings] == ["0.1", "1", "10"]
+    # A ring stands where its decade does: 1 is half way from 1/20 to 20.
+    assert view.rings[1][0] == pytest.approx(0.5)
+    assert view.ticks is None
+    medium = live.part_medium(state.specimen_of("A"), state.orientation_of("A"))
+    true = live.section(medium, "focusing", state.section).values
+    for curve in view.curves:
+        radius = np.hypot(*curve.points)
+        kept = np.isfinite(radius) & (true[curve.sheet] > low)
+        assert kept.sum() > 300
+        expected = true[curve.sheet][kept]
+        assert np.allclose(low * (high / low) ** radius[kept], expected, rtol=1e-9)
+
+
+def test_hidden_sheets_are_said_to_be_hidden():
+    state = looked_at(STATE, quantity="slowness", sheets=(False, False, False))
+    for view in (deck.section_view(state), deck.sweep_view(state), deck.source_view(state, 1.0),
+                 *stage.pane_views(state, fine=False).values()):  # fmt: skip
+        assert view.notice == stage.ALL_HIDDEN
+    empty = without_density(state)
+    assert deck.section_view(empty).notice == stage.NO_DENSITY  # the first thing that lacks
 
 
 def test_three_sheets_make_three_curves_a_side_and_hidden_ones_none():
@@ -344,3 +391,22 @@ def test_wavefronts_are_as_far_as_the_rays_run_in_the_time():
     twice = deck.source_view(CUBIC, 5.0)
     assert np.allclose(twice.curves[0][2], 2 * view.curves[0][2])
     assert view.rings[-1][0] >= np.nanmax(np.hypot(*fast))
+
+
+@pytest.mark.parametrize(("shown", "text"), [
+    ("A", "1.961"), ("cost", "0"), ("difference", "0"),
+])  # fmt: skip
+def test_the_hemisphere_of_a_constant_is_one_flat_colour(shown, text):
+    turned = replace(CUBIC, quantity="compressibility", orientation_b=STATE.orientation_b)
+    view = deck.hemisphere_view(looked_at(turned, layout="AB", hemisphere=shown))
+    assert view.scale.low == view.scale.high
+    assert view.scale.low_text == view.scale.high_text == text
+    assert view.contours == ()
+
+
+def test_the_hemisphere_and_the_stage_say_the_same_ends():
+    state = looked_at(STATE, hemisphere="A", layout="A")
+    disc, pane = deck.hemisphere_view(state), stage.pane_views(state, True)["A"]
+    assert disc.scale.low == pytest.approx(pane.scale.low, rel=1e-6)
+    assert disc.scale.high == pytest.approx(pane.scale.high, rel=1e-6)
+    assert disc.scale.high_text == pane.scale.high_text

@@ -40,7 +40,7 @@ def test_the_grid_holds_the_table_at_full_precision():
     assert view.editable
     assert kinds(view)[0] == ["independent"] * 6
     assert kinds(view)[5] == ["dependent"] * 5 + ["independent"]
-    assert view.cells[5][0].tooltip == "equal to C16"
+    assert view.cells[5][0].tooltip.startswith("equal to C16: −16.6")
 
 
 def test_of_a_cubic_table_three_cells_are_free():
@@ -48,7 +48,7 @@ def test_of_a_cubic_table_three_cells_are_free():
     free = {(i, j) for i in range(6) for j in range(6) if kinds(view)[i][j] == "independent"}
     assert free == {(0, 0), (0, 1), (3, 3)}
     assert texts(view)[0][3] == "·"
-    assert view.cells[1][1].tooltip == "C22 = C11"
+    assert view.cells[1][1].tooltip == "C22 = C11: 230.0 GPa"
 
 
 def test_a_number_that_breaks_the_class_is_shown_and_named():
@@ -57,7 +57,7 @@ def test_a_number_that_breaks_the_class_is_shown_and_named():
     broken[1, 1] += 3.0
     view = ledger.constants_view(replace(CUBIC.specimen, stiffness=as_rows(broken)),
                                  "stiffness")  # fmt: skip
-    assert texts(view)[0][4] == "7.500"
+    assert texts(view)[0][4] == "7.5"  # to the place of 230.0
     assert kinds(view)[0][4] == "independent"
     assert "7.5" in view.cells[0][4].tooltip
     assert kinds(view)[1][1] == "independent"
@@ -127,6 +127,20 @@ def test_a_missing_or_impossible_density_is_a_fact():
         assert "density" not in facts(density)
 
 
+def test_without_uncertainties_all_numbers_have_the_decimals_of_the_largest():
+    table = np.array(CUBIC.specimen.stiffness)
+    table[0, 0], table[0, 4], table[4, 0] = 57.344, -2e-7, -2e-7
+    table[0, 1] = table[1, 0] = 9.7031
+    low = replace(CUBIC.specimen, stiffness=as_rows(np.clip(table, -1e9, 60)),
+                  crystal_class="triclinic")  # fmt: skip
+    shown = texts(ledger.constants_view(low, "stiffness"))
+    assert (shown[0][0], shown[0][1], shown[0][4]) == ("57.34", "9.70", "0.00")
+    numbers = [text for row in shown for text in row]
+    assert {len(text.partition(".")[2]) for text in numbers} == {2}
+    view = ledger.constants_view(low, "stiffness")
+    assert view.cells[0][4].tooltip.endswith("−2e-07 GPa".replace("-", "−"))
+
+
 # ------------------------------------------------------------------ forms
 def test_the_specimen_form_writes_what_is_known():
     view = ledger.specimen_view(replace(STATE, specimen=replace(
@@ -169,8 +183,17 @@ def test_the_angle_between_a_and_b_is_said():
 def test_a_turn_of_the_crystal_s_own_symmetry_is_none():
     turned = replace(CUBIC, orientation_b=OrientationChoice("axis [0 0 1] 80"))
     assert ledger.orientation_view(turned, "B").note == (
-        "80.00° from A, 10.00° by the crystal's symmetry"
+        "80.00° from A as they stand, 10.00° by the crystal's symmetry"
     )
+
+
+def test_a_part_axis_that_misses_its_direction_is_doubted():
+    missed = replace(CUBIC, orientation_a=OrientationChoice("Z=(1 1 0) X=[1 0 0]"))
+    # In a cubic crystal [1 0 0] is 45° from (1 1 0), so X stays 45° from it.
+    assert ledger.orientation_view(missed, "A").doubt == (
+        "X lies 45.0° from [1 0 0], which is not in the plane (1 1 0)"
+    )
+    assert ledger.orientation_view(CUBIC, "A").doubt == ""
 
 
 def test_every_way_of_saying_is_listed_and_the_axes_are_named():

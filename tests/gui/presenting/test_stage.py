@@ -243,3 +243,33 @@ def test_planes_are_known_by_their_normals():
 def test_fine_and_coarse_meshes(fine):
     rows = panes(STATE, fine)["A"].sheets[0].rows
     assert rows.shape == (7, 10242 if fine else 2562)
+
+
+def test_a_quantity_that_is_the_same_everywhere_has_one_value_on_its_scale():
+    # β of a cubic crystal is 1/(C11 + 2 C12) in every direction.
+    scale = panes(replace(CUBIC, quantity="compressibility"), fine=True)["A"].scale
+    assert scale.low == scale.high == pytest.approx(1e3 / (230.0 + 2 * 140.0), rel=1e-6)
+    assert scale.low_text == scale.high_text == "1.961"
+    assert scale.ticks == ()
+
+
+def test_at_rest_the_scale_ends_at_the_extremes_between_the_vertices():
+    # E of a cubic crystal is least along <100>, greatest along <111>, which are no vertices of
+    # a mesh that stands in turned axes.
+    state = replace(CUBIC, orientation_a=STATE.orientation_a)
+    s = np.linalg.inv(table_of(CUBIC))
+    slope = s[0, 0] - s[0, 1] - s[3, 3] / 2
+    scale = panes(state, fine=True)["A"].scale
+    assert scale.low == pytest.approx(1 / s[0, 0], rel=1e-6)
+    assert scale.high == pytest.approx(1 / (s[0, 0] - 2 / 3 * slope), rel=1e-6)
+
+
+def test_ends_that_differ_little_have_the_digits_that_tell_them_apart():
+    scale = stage.scale_view(stage.ColourOf("E"), 100.0, 100.00012)
+    assert (scale.low_text, scale.high_text) == ("100.0000", "100.0001")
+
+
+def test_angles_that_are_all_zero_but_for_rounding_are_zero():
+    about = stage.ColourOf("ψ, °", size=90.0)
+    assert stage.scale_view(about, 0.0, 4e-14).high_text == "0"
+    assert stage.scale_view(stage.ColourOf("x"), 0.0, 4e-14).high_text != "0"

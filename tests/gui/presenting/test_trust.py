@@ -9,7 +9,7 @@ from core.state import BenchState, Specimen, as_matrix
 from core.study.uncertainty.draws import MonteCarlo, Spread, StabilityChance
 from core.study.uncertainty.propagation import Contribution
 from core.task import Ticker
-from core.tensor.symmetry import CLASS_KEYS
+from core.tensor.symmetry import CLASS_KEYS, crystal_class, distance
 from gui.presenting import ledger, spread, trust
 from tests.gui.presenting.benches import CUBIC, UNSTABLE
 from tests.materials import cubic, random_rotation, rotated
@@ -45,6 +45,22 @@ def test_hidden_axes_are_the_sentence_and_the_suggestion():
     assert "claimed" in row_of(view, "triclinic").cells[-1]
 
 
+def test_making_a_class_exact_far_from_its_axes_is_doubted_with_both_changes():
+    row = row_of(trust.trust_view(HIDDEN, found_for(HIDDEN)), "cubic")
+    table, claimed = np.array(HIDDEN.specimen.stiffness), crystal_class("cubic")
+    change = f"{100 * distance(table, claimed):.2g} %"
+    assert row.change == f"Changes the table by {change}."
+    assert row.doubt == (
+        f"Exact as entered changes the table by {change}; once turned to its axes, "
+        "not at all."
+    )
+    whole = row_of(trust.trust_view(CUBIC, found_for(CUBIC)), "cubic")
+    assert (whole.change, whole.doubt) == ("The numbers stay as they are.", "")
+    isotropic = row_of(trust.trust_view(CUBIC, found_for(CUBIC)), "isotropic").doubt
+    assert isotropic.startswith("Exact as entered changes the table by ")
+    assert "turned" not in isotropic  # no axes make it better
+
+
 def test_a_class_as_entered_has_nothing_to_turn_or_to_mend():
     view = trust.trust_view(CUBIC, found_for(CUBIC))
     assert view.sentence == "Cubic as entered."
@@ -64,15 +80,37 @@ def test_the_band_says_the_sentence_and_counts_the_notes():
     assert facts[0] == "1 note"
 
 
-def test_while_it_is_searched_the_old_rows_stay_and_nothing_is_claimed():
-    view = trust.trust_view(HIDDEN, found_for(CUBIC), pending=True)
+def test_while_it_is_searched_the_classes_stand_without_numbers():
+    view = trust.trust_view(HIDDEN, None)
     assert view.pending
     assert view.sentence == trust.FINDING
-    assert len(view.classes) == len(CLASS_KEYS)
-    assert (view.notes, view.support, view.chance) == ((), "", "")
-    first = trust.trust_view(HIDDEN, None)
-    assert first.pending
-    assert first.classes == ()
+    assert [row.key for row in view.classes] == list(CLASS_KEYS)
+    assert {row.cells[2:7] for row in view.classes} == {("…", "…", "", "", "")}
+    assert not any(row.can_turn or row.can_exact for row in view.classes)
+    assert (view.notes, view.support, view.chance, view.suggested) == ((), "", "", "")
+
+
+def test_a_claim_and_a_form_that_differ_are_one_fact_of_band_and_sheet():
+    claimed = replace(CUBIC, specimen=replace(CUBIC.specimen, crystal_class="triclinic"))
+    findings = found_for(claimed)
+    facts = ledger.verdict_view(claimed.specimen, findings).facts
+    assert "claimed triclinic; has the form of cubic" in facts
+    assert sum("triclinic" in fact or "cubic" in fact for fact in facts) == 1
+    view = trust.trust_view(claimed, findings)
+    assert view.sentence == "Claimed triclinic; has the form of cubic."
+    assert not any("triclinic" in fact or "cubic" in fact for fact in view.facts)
+
+
+def test_a_crystal_that_draws_find_unstable_is_doubtful():
+    findings = found_for(uncertain(CUBIC, 0.5))
+    assert ledger.verdict_view(CUBIC.specimen, findings).mark == "stable"
+    doubted = replace(findings, chance=StabilityChance(0.47, 0.008, 4000, 1.0))
+    view = ledger.verdict_view(CUBIC.specimen, doubted)
+    assert view.mark == "doubtful"
+    assert view.headline == "Stable, but not beyond the uncertainties"
+    assert view.facts[0] == "stable in 47 % of the draws"
+    assert "100 %" not in trust.chance_text(doubted.chance)
+    assert "normal law" not in trust.chance_text(doubted.chance)
 
 
 def test_criteria_hold_or_fail_with_their_numbers():

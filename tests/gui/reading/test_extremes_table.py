@@ -5,6 +5,7 @@ from dataclasses import replace
 import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
+from PySide6.QtWidgets import QLabel, QPushButton, QVBoxLayout, QWidget
 
 from gui.reading.extremes_table import ExtremesTable
 from gui.viewdata import ExtremeRow, ExtremesView
@@ -37,6 +38,38 @@ def test_links_lead_to_their_directions(table, qtbot):
         qtbot.mouseClick(table.link(row), Qt.MouseButton.LeftButton)
     assert table.gone == [(0.0, 1.0, 0.0), (0.6, 0.0, 0.8)]
     assert table.link(2) is None
+
+
+def test_the_links_come_right_after_their_table(qtbot):
+    page = QWidget()
+    qtbot.addWidget(page)
+    tables, button = [ExtremesTable(), ExtremesTable()], QPushButton("last")
+    column = QVBoxLayout(page)
+    for widget in (*tables, button):
+        column.addWidget(widget)
+    page.show()
+    qtbot.waitExposed(page)
+    for made in tables:
+        made.show_view(replace(VIEW, rows=VIEW.rows[:1]))
+    for made in reversed(tables):  # made later than the button, and in another order
+        made.show_view(VIEW)
+    tables[0].table.setFocus()
+    order = [
+        widget
+        for made in tables
+        for widget in (made.table, made.link(0), made.link(1))
+    ]
+    for widget in (*order[1:], button):
+        page.focusNextChild()
+        assert page.focusWidget() is widget
+
+
+def test_which_of_two_crystals_it_is_stands_above(table):
+    assert [one.text() for one in table.findChildren(QLabel) if one.isVisible()] == []
+    table.show_view(replace(VIEW, whose="crystal of B: blank"))
+    shown = [one for one in table.findChildren(QLabel) if one.isVisible()]
+    assert [one.text() for one in shown] == ["crystal of B: blank"]
+    assert shown[0].y() < table.table.y()
 
 
 def test_enter_on_a_line_leads_there(table, qtbot):

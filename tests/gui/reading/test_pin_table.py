@@ -109,6 +109,14 @@ def test_copying_gives_the_whole_numbers(table, qtbot):
     assert QGuiApplication.clipboard().text() == "-14.308019"
 
 
+def test_a_copy_of_the_whole_table_says_whose_it_is(table):
+    table.show_view(replace(VIEW, about="A: blank, orientation identity; pin θ 34.1°"))
+    table.table.copy_table()
+    lines = QGuiApplication.clipboard().text().split("\n")
+    assert lines[0] == "A: blank, orientation identity; pin θ 34.1°"
+    assert lines[1].split("\t")[1] == "A"
+
+
 @pytest.mark.parametrize("width", [280, 300, 330, 500])
 def test_no_number_is_cut(table, qtbot, width):
     table.resize(width, 300)

@@ -82,3 +82,12 @@ def test_the_cutting_error_is_told_once(qtbot):
     assert panel.field.error_label.isVisible()
     qtbot.keyClick(panel.field, Qt.Key.Key_Escape)
     assert panel.field.text() == "0.5"
+
+
+def test_tables_that_stand_together_have_one_size_of_type(qtbot):
+    panels = CuttingErrorPanel(), SmallTable("wide")
+    for panel, columns in zip(panels, (2, 9), strict=True):
+        qtbot.addWidget(panel)
+        panel.resize(300, 100)
+        panel.show_view(TableView("t", ("",) * columns, (("1.234567",) * columns,), ()))
+    assert panels[0].table.table.font() == panels[1].table.font()

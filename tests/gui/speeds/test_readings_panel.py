@@ -4,6 +4,7 @@ from dataclasses import replace
 
 import pytest
 from PySide6.QtCore import Qt
+from PySide6.QtGui import QFontMetrics
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QLabel, QLineEdit, QPushButton
 
@@ -186,3 +187,23 @@ def test_ten_thousand_rows_are_shown_at_once(panel):
     panel.select_row(9_999)
     assert panel.readings.rowCount() == 10_001
     assert panel.table.currentIndex().row() == 9_998
+
+
+def test_points_stand_in_line_and_minus_signs_are_true(panel):
+    rows = (("[1 -1 0]", "1", "6792.4", "0.3"), ("0.31 -0.87", "2", "6792.43", ""),
+            ("well-known", "", "6792", ""))  # fmt: skip
+    panel.show_table(replace(TABLE, rows=rows, ghosts={}, faults={}))
+    shown = [[panel.readings.shown(row, column) for column in (0, 2)] for row in range(3)]
+    assert [row[0] for row in shown] == ["[1 −1 0]", "0.31 −0.87", "well-known"]
+    metrics = QFontMetrics(panel.table.font())
+    after = [metrics.horizontalAdvance(row[1]) - metrics.horizontalAdvance(row[1].split(".")[0])
+             for row in shown[:2]]  # fmt: skip
+    assert after[0] == pytest.approx(after[1], abs=1)
+    assert len({len(row[1]) for row in shown}) == 1
+    assert shown[1][1] == "6792.43"
+    # What is typed and copied has neither.
+    assert panel.readings.text(0, 0) == "[1 -1 0]"
+    assert panel.readings.data(panel.readings.index(0, 2), Qt.ItemDataRole.EditRole) == "6792.4"
+    go_to(panel, 0, 2)
+    panel.table.copy()
+    assert QApplication.clipboard().text() == "6792.4"

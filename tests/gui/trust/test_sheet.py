@@ -8,12 +8,14 @@ from PySide6.QtTest import QTest
 from gui.trust.sheet import NO_NOTES, TrustSheet
 from gui.viewdata import ClassRow, TableView, TrustView
 
-HEADER = ("class", "free", "as entered", "turned", "by", "about", "log", "")
+HEADER = ("class", "free", "as entered", "turned", "by", "about x, y, z", "log", "")
 
 
 def row(key, entered, turned, can_turn=True, can_exact=True):
-    cells = (key, "9", entered, turned, "42.4°", "[0 0 1]", "0.1", "")
-    return ClassRow(key, cells, cells, f"tip of {key}", can_turn, can_exact)
+    cells = (key, "9", entered, turned, "42.4°", "0.00, 0.00, 1.00", "0.1", "")
+    change = f"Changes the table by {entered}."
+    doubt = f"That is much: {entered}." if key == "orthorhombic" else ""
+    return ClassRow(key, cells, cells, f"tip of {key}", can_turn, can_exact, change, doubt)
 
 
 def view(pending=False, suggested="orthorhombic", notes=("The density is odd.",), **known):
@@ -95,6 +97,16 @@ def test_another_class_is_chosen_with_the_arrows(sheet, qtbot):
     assert "cubic" in sheet.classes.buttons["turn"].toolTip()
     qtbot.mouseClick(sheet.classes.buttons["exact"], Qt.MouseButton.LeftButton)
     assert asked == [("exact", "cubic")]
+
+
+def test_the_size_of_the_change_stands_at_the_button_and_a_large_one_is_doubted(sheet):
+    assert "Changes the table by 12 %." in sheet.classes.buttons["exact"].toolTip()
+    assert "Changes" not in sheet.classes.buttons["turn"].toolTip()
+    assert sheet.classes.doubt.text() == "▲ That is much: 12 %."
+    assert sheet.classes.doubt.property("role") == "doubt"
+    assert sheet.classes.doubt.isVisibleTo(sheet)
+    QTest.keyClick(sheet.classes.table, Qt.Key.Key_Down)
+    assert not sheet.classes.doubt.isVisibleTo(sheet)
 
 
 def test_what_makes_no_sense_is_not_offered(sheet):

@@ -3,11 +3,17 @@
 import numpy as np
 import pytest
 from PySide6.QtCore import QRectF
-from PySide6.QtGui import QImage, QPainter
+from PySide6.QtGui import QFontMetricsF, QImage, QPainter
 
 from gui.theme import LIGHT, NIGHT, colour_table
 from gui.viewdata import ScaleView
-from gui.widgets.colour_bar import bar_height, colour_range, draw_colour_bar, table_position
+from gui.widgets.colour_bar import (
+    _fitted_title,
+    bar_height,
+    colour_range,
+    draw_colour_bar,
+    table_position,
+)
 from tests.gui.stage.images import rgba
 
 LINEAR = ScaleView(20.0, 120.0, "20.0", "120.0", "E, GPa", False, ((70.0, "70.0"),))
@@ -87,3 +93,25 @@ def test_the_title_is_cut_short_rather_than_drawn_beyond(qapp):
     ground = pixels[0, 0]
     assert np.abs(pixels[:14, -1] - ground).max() < 12
     assert np.abs(pixels[:14] - ground).max() > 40
+
+
+@pytest.mark.parametrize("is_diverging", [False, True])
+def test_one_value_is_one_colour_and_said_once(qapp, is_diverging):
+    view = scale(3.0, 3.0) if not is_diverging else scale(0.0, 0.0, diverging=True)
+    assert table_position(view, np.array([view.low])) == pytest.approx([0.5])
+    pixels = draw(view)
+    row = pixels[_strip_row(pixels)]
+    colours = np.unique(row[60:300], axis=0)
+    assert len(colours) == 1
+
+
+def test_a_long_title_gets_smaller_letters_before_it_is_cut(qapp):
+    title = "change of Young's modulus E, GPa within ±0.5°"
+    image = QImage(400, 60, QImage.Format.Format_RGB32)
+    painter = QPainter(image)
+    painter.setFont(LIGHT.font("small"))
+    wide = QFontMetricsF(painter.font()).horizontalAdvance(title)
+    assert _fitted_title(painter, title, 0.85 * wide, LIGHT, 1.0) == title
+    assert QFontMetricsF(painter.font()).horizontalAdvance(title) <= 0.87 * wide
+    assert _fitted_title(painter, title, 0.3 * wide, LIGHT, 1.0).endswith("…")
+    painter.end()
