@@ -43,6 +43,7 @@ from gui.theme import Theme
 from gui.toolbar import StageToolbar
 from gui.trust.sheet import TrustSheet
 from gui.verdict_band import VerdictBand
+from gui.widgets.frames import framed, scrolled, stacked
 from gui.widgets.panel import Section
 
 LEDGER_WIDTH = 360  # the least in which nothing of either panel is cut
@@ -131,7 +132,7 @@ class Window(QMainWindow):
         self.setAcceptDrops(True)
         self.setMinimumSize(1120, 680)
         self.resize(1440, 900)
-        self._pane_frames = {side: _framed(pane) for side, pane in views.panes.items()}
+        self._pane_frames = {side: framed(pane) for side, pane in views.panes.items()}
         self.switch = PageSwitch()
         self._pages = QStackedWidget()
         self._columns = QSplitter(Qt.Orientation.Horizontal)
@@ -139,8 +140,8 @@ class Window(QMainWindow):
         self._stage = QSplitter(Qt.Orientation.Horizontal)
         self._plots = QSplitter(Qt.Orientation.Horizontal)
         self._sheet = QSplitter(Qt.Orientation.Vertical)
-        self.ledger_panel = _side_panel(_ledger(views), LEDGER_WIDTH, "Ledger")
-        self.reading_panel = _side_panel(_reading(views), READING_WIDTH, "Reading")
+        self.ledger_panel = _side_panel(_ledger(views), LEDGER_WIDTH)
+        self.reading_panel = _side_panel(_reading(views), READING_WIDTH)
         self._place()
         self._message = QLabel()
         self._note = QLabel()
@@ -151,8 +152,8 @@ class Window(QMainWindow):
     def _place(self) -> None:
         for frame in self._pane_frames.values():
             self._stage.addWidget(frame)
-        self._plots.addWidget(_framed(self.views.section))
-        self._plots.addWidget(_framed(self.views.deck))
+        self._plots.addWidget(framed(self.views.section))
+        self._plots.addWidget(framed(self.views.deck))
         for splitter in (self._stage, self._plots):
             splitter.setSizes([500, 500])
             splitter.setChildrenCollapsible(False)
@@ -166,7 +167,7 @@ class Window(QMainWindow):
         column = QVBoxLayout(middle)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(6)
-        column.addWidget(_framed(self.views.toolbar))
+        column.addWidget(framed(self.views.toolbar))
         column.addWidget(self._centre, 1)
         for part in (self.ledger_panel, middle, self.reading_panel):
             self._columns.addWidget(part)
@@ -339,56 +340,21 @@ class Window(QMainWindow):
             self.files_dropped.emit([str(Path(path)) for path in paths])
 
 
-def _framed(widget: QWidget) -> QFrame:
-    frame = QFrame()
-    frame.setProperty("role", "panel")
-    box = QVBoxLayout(frame)
-    box.setContentsMargins(1, 1, 1, 1)
-    box.addWidget(widget)
-    return frame
-
-
-def _side_panel(content: QWidget, width: int, name: str) -> QFrame:
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-    area.setAccessibleName(name)
-    area.setWidget(content)
-    frame = _framed(area)
+def _side_panel(content: QScrollArea, width: int) -> QFrame:
+    frame = framed(content)
     frame.setMinimumWidth(width)
     return frame
 
 
-def _column(*parts: QWidget) -> QWidget:
-    content = QWidget()
-    column = QVBoxLayout(content)
-    column.setContentsMargins(11, 8, 11, 8)
-    column.setSpacing(2)
-    for part in parts:
-        column.addWidget(part)
-    column.addStretch(1)
-    return content
-
-
-def _stacked(*parts: QWidget) -> QWidget:
-    box = QWidget()
-    column = QVBoxLayout(box)
-    column.setContentsMargins(0, 0, 0, 0)
-    column.setSpacing(7)
-    for part in parts:
-        column.addWidget(part)
-    return box
-
-
-def _ledger(views: Views) -> QWidget:
-    return _column(
+def _ledger(views: Views) -> QScrollArea:
+    return scrolled(
+        "Ledger",
         Section("Ledger", views.specimen, ruled=False),
         Section("Constants", views.constants),
         Section("Strain spectrum", views.spectrum, "eigenstiffness, GPa (Kelvin)"),
         Section(
             "Orientations of the part",
-            _stacked(
+            stacked(
                 views.orientations["A"], views.orientations["B"], views.orientation_buttons
             ),
         ),
@@ -396,8 +362,9 @@ def _ledger(views: Views) -> QWidget:
     )
 
 
-def _reading(views: Views) -> QWidget:
-    return _column(
+def _reading(views: Views) -> QScrollArea:
+    return scrolled(
+        "Reading",
         Section("Reading", views.pin, ruled=False),
         Section("Waves", views.waves, "along the pin", is_open=False),
         Section("Extremes", views.extremes),

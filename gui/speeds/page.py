@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QFrame, QHBoxLayout, QScrollArea, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QSplitter, QWidget
 
 from gui.plots.hemisphere import HemispherePlot
 from gui.speeds.blanks_panel import BlanksPanel
@@ -11,6 +11,7 @@ from gui.speeds.plots import FitPlots
 from gui.speeds.readings_panel import ReadingsPanel
 from gui.speeds.result_panel import ResultPanel
 from gui.theme import Theme
+from gui.widgets.frames import framed, scrolled
 
 READINGS_WIDTH, RESULT_WIDTH = 476, 356
 
@@ -33,11 +34,11 @@ class SpeedsPage(QWidget):
 
     def _place(self) -> None:
         for plot in (self.plots, self.sphere):
-            self.middle.addWidget(_framed(plot))
+            self.middle.addWidget(framed(plot))
         self.middle.setSizes([360, 400])
-        left = _framed(self.readings)
+        left = framed(self.readings)
         left.setMinimumWidth(396)
-        right = _framed(_scrolled(self.result, self.blanks))
+        right = framed(scrolled("Result", self.result, self.blanks))
         right.setMinimumWidth(RESULT_WIDTH - 14)
         for part in (left, self.middle, right):
             self.columns.addWidget(part)
@@ -54,29 +55,3 @@ class SpeedsPage(QWidget):
         """Hand the theme to what paints itself."""
         self.plots.set_theme(theme)
         self.sphere.set_theme(theme)
-
-
-def _framed(widget: QWidget) -> QFrame:
-    frame = QFrame()
-    frame.setProperty("role", "panel")
-    box = QVBoxLayout(frame)
-    box.setContentsMargins(1, 1, 1, 1)
-    box.addWidget(widget)
-    return frame
-
-
-def _scrolled(*parts: QWidget) -> QScrollArea:
-    content = QWidget()
-    column = QVBoxLayout(content)
-    column.setContentsMargins(11, 8, 11, 8)
-    column.setSpacing(2)
-    for part in parts:
-        column.addWidget(part)
-    column.addStretch(1)
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-    area.setAccessibleName("Result")
-    area.setWidget(content)
-    return area

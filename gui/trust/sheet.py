@@ -9,7 +9,6 @@ from PySide6.QtWidgets import (
     QHBoxLayout,
     QLabel,
     QPushButton,
-    QScrollArea,
     QVBoxLayout,
     QWidget,
 )
@@ -18,8 +17,10 @@ from gui.trust.class_table import ClassPanel
 from gui.trust.kind_table import KindTable
 from gui.viewdata import TrustView
 from gui.widgets.forms import ElidedLabel, label, set_or_hide
+from gui.widgets.frames import scrolled, stacked
 from gui.widgets.panel import Section
 
+_MARGINS = (0, 0, 8, 4)
 TITLE = "Can this table be trusted?"
 WIDTHS = (46, 26, 28)  # shares of the three columns
 LEAST_HEIGHT = 180
@@ -92,10 +93,10 @@ class TrustSheet(QFrame):
             name: Section(title, part, ruled=is_ruled)
             for name, title, part, is_ruled in (
                 ("notes", "Notes", self.notes, False),
-                ("pin", "Uncertainty at the pin", _stack(self.pin, self.draws), True),
+                ("pin", "Uncertainty at the pin", stacked(self.pin, self.draws), True),
                 ("shares", "What the anisotropy is made of", self.shares, True),
                 ("facts", "Verdict", self.facts, False),
-                ("strains", "Strain spectrum", _stack(self.chance, self.strains), True),
+                ("strains", "Strain spectrum", stacked(self.chance, self.strains), True),
                 ("criteria", "Stability criteria", self.criteria, True),
             )
         }
@@ -116,9 +117,13 @@ class TrustSheet(QFrame):
         body = QHBoxLayout()
         body.setSpacing(10)
         columns = (
-            _scrolled("Symmetry", self.classes),
-            _scrolled("Stability", *self._sections("facts", "strains", "criteria")),
-            _scrolled("Notes", *self._sections("notes", "pin", "shares")),
+            scrolled("Symmetry", self.classes, margins=_MARGINS),
+            scrolled(
+                "Stability",
+                *self._sections("facts", "strains", "criteria"),
+                margins=_MARGINS,
+            ),
+            scrolled("Notes", *self._sections("notes", "pin", "shares"), margins=_MARGINS),
         )
         for area, share in zip(columns, WIDTHS, strict=True):
             body.addWidget(area, share)
@@ -158,31 +163,3 @@ class TrustSheet(QFrame):
             self.closed.emit()
         else:
             super().keyPressEvent(event)
-
-
-def _stack(*parts: QWidget) -> QWidget:
-    box = QWidget()
-    column = QVBoxLayout(box)
-    column.setContentsMargins(0, 0, 0, 0)
-    column.setSpacing(4)
-    for part in parts:
-        column.addWidget(part)
-    return box
-
-
-def _scrolled(name: str, *parts: QWidget) -> QScrollArea:
-    content = QWidget()
-    column = QVBoxLayout(content)
-    column.setContentsMargins(0, 0, 8, 4)
-    column.setSpacing(2)
-    for part in parts:
-        column.addWidget(part)
-    column.addStretch(1)
-    area = QScrollArea()
-    area.setWidgetResizable(True)
-    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    area.setFrameShape(QFrame.Shape.NoFrame)
-    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
-    area.setAccessibleName(name)
-    area.setWidget(content)
-    return area
