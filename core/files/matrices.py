@@ -151,9 +151,9 @@ def understand(
     components = tensor_components(raw.values, kind.value, rows.value, notation.value)
     listed = None
     if np.isnan(components).any():
+        claimed = _class_label(facts)
         components, listed = read_class(
-            components, chosen.get("class"), where, _class_label(facts), kind.value
-        )
+            components, chosen.get("class"), where, claimed, kind.value)
     factor = parse_unit(unit.value).factor
     is_compliance = kind.value == "compliance"
     stiffness = _stiffness(components * factor, is_compliance)
@@ -163,13 +163,10 @@ def understand(
         std = read_only(_std(sigmas, stiffness if is_compliance else None, listed))
     found = (shape, symmetry, kind, unit, rows, notation, listed)
     readings = tuple(
-        guess if guess.field in by_hand else as_said(guess, facts)
-        for guess in found if guess is not None
+        guess if guess.field in by_hand else as_said(guess, facts) for guess in found if guess
     )
-    notes = facts.notes + _notes(
-        tuple(head for head in table.headings if head[0] not in facts.lines),
-        raw, kind.value, stiffness,
-    )
+    headings = tuple(head for head in table.headings if head[0] not in facts.lines)
+    notes = facts.notes + _notes(headings, raw, kind.value, stiffness)
     return Understood(stiffness.voigt, std, readings, notes, facts)
 
 

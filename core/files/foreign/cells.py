@@ -127,6 +127,7 @@ _NO_NAME = re.compile(
     r"(?<![A-Za-z0-9_])(?P<name>[CcSs]_?\{?\d{2,}\}?)\s*[=:≈]\s*[(+-]?\.?\d"
     r"|^\s*(?P<first>[CcSs]_?\{?\d{2,}\}?)[\s,;|&]+[(+-]?\.?\d"
 )
+_LONG_BLANK = re.compile(r"([^\S\n]{64})[^\S\n]+")  # patterns would try each blank anew
 _RULE = re.compile(r"[\s|:+-]*-{3,}[\s|:+-]*")  # between the head and the body of a table
 _SUBSCRIPTS = str.maketrans("₁₂₃₄₅₆", "123456")
 _LABEL = re.compile(r"[xyz]{2}|[XYZ]{2}")
@@ -186,6 +187,7 @@ def _pieces(text: str) -> tuple[list[tuple[int, str]], list[tuple[int, str]]]:
     plain = text.replace("\N{NO-BREAK SPACE}", " ").replace("\ufeff", "")
     plain = plain.replace("\N{MINUS SIGN}", "-").replace("\N{EN DASH}", "-")
     plain = re.sub(r"\+/-|\+-", "±", plain).translate(_SUBSCRIPTS)
+    plain = _LONG_BLANK.sub(r"\1", plain)
     pieces, comments = [], []
     for line, content in enumerate(plain.splitlines(), start=1):
         data = "" if _RULE.fullmatch(content) else _without_frame(content)
@@ -220,7 +222,7 @@ def _row_parts(content: str) -> list[str]:
 
 
 def _without_latex(part: str) -> str:
-    for pattern, replacement in _LATEX:
+    for pattern, replacement in _LATEX if part else ():
         part = pattern.sub(replacement, part)
     return part
 
