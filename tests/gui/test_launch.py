@@ -48,7 +48,7 @@ sys.exit(app.run(sys.argv[1:]))
 
 
 def run_without_screen(words, tmp_path, **more):
-    hidden = {"DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"}
+    hidden = {"TRICLINE_REQUIRE_OPENGL", "DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"}
     environment = {key: value for key, value in os.environ.items() if key not in hidden}
     environment |= {"HOME": str(tmp_path), "XDG_CONFIG_HOME": str(tmp_path), **more}
     return subprocess.run(
